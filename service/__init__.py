@@ -1,0 +1,3 @@
+"""Blinkline: laser hazard evaluation as a web service."""
+
+__version__ = "0.1.0"

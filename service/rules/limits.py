@@ -1,0 +1,186 @@
+"""Exposure limits for arrays of exposures: a compiled rule set.
+
+Conventions (all rule sets): bands hold for lower <= x < upper, the last includes its end; the
+subtense counts as at least alpha_min; limits are for the exposure from the whole source at the
+cornea. Everything is structure of arrays: 1-d arrays of equal length, one element per exposure.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from functools import lru_cache
+from pathlib import Path
+
+import numpy as np
+from numpy.typing import NDArray
+
+from service.rules.additivity import additivity_classes
+from service.rules.apertures import Apertures
+from service.rules.factors import Factor, compile_factors
+from service.rules.grid import SMALL_SOURCE_MRAD, Grid
+from service.rules.repetition import RepetitionFactor
+from service.rules.ruleset import RuleSet, load_all
+from service.rules.tables import TableError
+
+__all__ = ["CompiledRules", "Conditions", "compiled_rules"]
+
+Floats = NDArray[np.float64]
+Ints = NDArray[np.intp]
+
+
+@dataclass(slots=True)
+class Conditions:
+    """What a limit needs to know of each line: 1-d arrays, one element per line.
+
+    `wavelength_nm`, `subtense_mrad` (at least alpha_min), `extended` (1 above alpha_min),
+    `long_break_s` (T2), `photochemical_break_s` (T1, or None) and the wavelength factors by name.
+    """
+
+    wavelength_nm: Floats
+    subtense_mrad: Floats
+    extended: Ints
+    long_break_s: Floats
+    first_break_s: Floats | None
+    factors: dict[str, Floats]
+
+
+class CompiledRules:
+    """One rule set ready for arrays. Raises TableError where its tables do not fit together."""
+
+    def __init__(self, rules: RuleSet) -> None:
+        self.rules = rules
+        self.factors = compile_factors(rules)
+        for role, name in rules.roles.items():
+            if name not in self.factors:
+                raise TableError(rules.path / "factors.csv", 1, f"no factor {name!r} for role {role}")
+        self.grid = Grid(rules, self.factors)
+        self.repetition = RepetitionFactor(rules, self.factors)
+        rows = rules.limits
+        self.coefficient = np.array([r.coefficient for r in rows])
+        irradiance = np.array([r.quantity == "E" for r in rows])
+        self.time_power = np.array([r.time_power for r in rows]) + irradiance
+        self.powers = [p for p in np.unique(self.time_power) if p != 0.0]
+        self.cap_power = irradiance.astype(float)
+        self.cap = np.array([np.inf if r.cap is None else r.cap for r in rows])
+        self.capped = np.isfinite(self.cap)
+        self.tokens = self._tokens()
+        self.apertures = Apertures(rules)
+        self.additivity = additivity_classes(rules)
+        self.line_factors = sorted(
+            {name for name, _, _ in self.tokens if name in self.factors}
+            & {n for n, f in self.factors.items() if f.variable == "wavelength_nm"}
+        )
+        self._check_factor_bands()
+
+    def _tokens(self) -> list[tuple[str, float, NDArray[np.bool_]]]:
+        """Every factor used, with its exponent and the rows that use it."""
+        special = (self.rules.subtense.symbol, self.rules.field.symbol)
+        uses: dict[tuple[str, float], NDArray[np.bool_]] = {}
+        for k, row in enumerate(self.rules.limits):
+            for token in row.factors.split():
+                name, _, exponent = token.partition("^")
+                if name not in self.factors and name not in special:
+                    raise TableError(self.rules.path / "limits.csv", row.line, f"unknown factor {name!r}")
+                key = (name, float(exponent or 1))
+                uses.setdefault(key, np.zeros(len(self.rules.limits), dtype=bool))[k] = True
+        return [(name, exponent, rows) for (name, exponent), rows in uses.items()]
+
+    def _check_factor_bands(self) -> None:
+        """Each wavelength factor must be tabled over the whole band of each row that uses it."""
+        for name, _, rows in self.tokens:
+            factor = self.factors.get(name)
+            if factor is None or factor.variable != "wavelength_nm":
+                continue
+            end = factor.rows[-1].to or np.inf
+            for row in (r for r, used in zip(self.rules.limits, rows, strict=True) if used):
+                if row.wavelength_from_nm < factor.rows[0].from_ or row.wavelength_to_nm > end:
+                    raise TableError(
+                        self.rules.path / "limits.csv", row.line, f"{name} is not tabled over the whole band"
+                    )
+
+    def factor(self, role: str) -> Factor:
+        """The factor that plays a role of the engine (alpha_min, alpha_max, field_angle, ...)."""
+        return self.factors[self.rules.roles[role]]
+
+    def conditions(self, wavelength_nm: Floats, subtense_mrad: Floats) -> Conditions:
+        """Conditions of each line from wavelength [nm] and subtense [mrad], 1-d arrays."""
+        alpha = np.maximum(subtense_mrad, SMALL_SOURCE_MRAD)
+        t1 = self.factors["T1"](wavelength_nm) if self.grid.uses[0] else None
+        return Conditions(
+            wavelength_nm=wavelength_nm,
+            subtense_mrad=alpha,
+            extended=(alpha > SMALL_SOURCE_MRAD).astype(np.intp),
+            long_break_s=self.factor("long_break")(alpha),
+            first_break_s=t1,
+            factors={name: self.factors[name](wavelength_nm) for name in self.line_factors},
+        )
+
+    def cells(self, at: Conditions, line: Ints, time_s: Floats) -> Ints:
+        """Grid cell of each exposure: `line` indexes the conditions, `time_s` is its duration."""
+        t1 = None if at.first_break_s is None else time_s >= at.first_break_s[line]
+        t2 = time_s >= at.long_break_s[line] if self.grid.uses[1] else None
+        return self.grid.cells(at.wavelength_nm[line], time_s, at.extended[line], (t1, t2))
+
+    def radiant_exposure(self, row: NDArray[np.int16], at: Conditions, line: Ints, time_s: Floats) -> Floats:
+        """Limit [J/m2] of each exposure: coefficient x t^power x factors, irradiance rows x t.
+
+        Parameters
+        ----------
+        row : (n,) row numbers; line : (n,) index into the conditions; time_s : (n,) duration [s].
+        """
+        limit: Floats = self.coefficient[row]
+        power = self.time_power[row]
+        for p in self.powers:
+            k = np.flatnonzero(power == p)
+            if k.size:
+                limit[k] *= time_s[k] if p == 1.0 else time_s[k] ** p
+        for name, exponent, rows in self.tokens:
+            k = np.flatnonzero(rows[row])
+            if not k.size:
+                continue
+            value = self._value(name, at, line[k], time_s[k])
+            limit[k] *= value if exponent == 1.0 else value**exponent
+        k = np.flatnonzero(self.capped[row])
+        if k.size:
+            cap = self.cap[row[k]] * time_s[k] ** self.cap_power[row[k]]
+            limit[k] = np.minimum(limit[k], cap)
+        return limit
+
+    def _value(self, name: str, at: Conditions, line: Ints, time_s: Floats) -> Floats:
+        """One factor for each exposure."""
+        if name in at.factors:
+            return at.factors[name][line]
+        if name == self.rules.subtense.symbol:
+            return self.subtense_factor(at.subtense_mrad[line], time_s)
+        if name == self.rules.field.symbol:
+            return self.field_factor(at.subtense_mrad[line], time_s)
+        if name == self.rules.roles["long_break"]:
+            return at.long_break_s[line]
+        return self.factors[name](time_s)
+
+    def subtense_factor(self, alpha_mrad: Floats, time_s: Floats) -> Floats:
+        """C_E (C6): alpha / alpha_min, beyond alpha_max(t) alpha^2 / (alpha_min alpha_max)."""
+        value: Floats = alpha_mrad / SMALL_SOURCE_MRAD
+        k = np.flatnonzero(alpha_mrad > SMALL_SOURCE_MRAD)
+        if k.size:
+            alpha = alpha_mrad[k]
+            value[k] *= np.maximum(1.0, alpha / self.factor("alpha_max")(time_s[k]))
+        return value
+
+    def field_factor(self, alpha_mrad: Floats, time_s: Floats) -> Floats:
+        """(alpha / gamma(t))^2 for a source wider than the photochemical field angle, else 1."""
+        return np.maximum(1.0, alpha_mrad / self.factor("field_angle")(time_s)) ** 2
+
+    def default_duration(self, wavelength_nm: Floats) -> tuple[Floats, Ints]:
+        """Conventional duration [s] for an unintended exposure, and its row's number."""
+        index = [k for k, r in enumerate(self.rules.durations) if r.kind == "default"]
+        edges = np.array([self.rules.durations[k].wavelength_from_nm for k in index])
+        at = np.searchsorted(edges, wavelength_nm, "right") - 1
+        seconds = np.array([self.rules.durations[k].duration_s for k in index])
+        return seconds[at], np.array(index)[at]
+
+
+@lru_cache(maxsize=4)
+def compiled_rules(data: Path) -> dict[str, CompiledRules]:
+    """Every rule set under a data folder, compiled once. Raises TableError."""
+    return {key: CompiledRules(rules) for key, rules in load_all(data).items()}
