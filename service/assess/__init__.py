@@ -1,0 +1,1 @@
+"""Rules and beams to criteria, hazard distances and optical density. Pure: numpy and the standard library."""

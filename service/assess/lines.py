@@ -1,0 +1,49 @@
+"""Emission lines of one or many lasers as arrays."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from service.optics.beams import Beams
+
+__all__ = ["CW", "MODES", "PULSE", "TRAIN", "Lines"]
+
+Floats = NDArray[np.float64]
+Ints = NDArray[np.intp]
+
+MODES = ("cw", "pulse", "train")
+CW, PULSE, TRAIN = range(3)
+
+
+@dataclass(slots=True)
+class Lines:
+    """Structure of arrays, one element per emission line; the lines of a laser stand together.
+
+    `laser` numbers the lasers from 0 without a gap, in order. `mode` is CW, PULSE or TRAIN.
+    `emitted` is the power [W] of a CW line and the energy per pulse [J] of the others. `pulse_s`
+    and `rate_hz` are 1 where they do not apply. `exposure_s` is the exposure duration T [s],
+    `subtense_mrad` the angular subtense of the apparent source.
+    """
+
+    laser: Ints
+    wavelength_nm: Floats
+    mode: Ints
+    emitted: Floats
+    pulse_s: Floats
+    rate_hz: Floats
+    exposure_s: Floats
+    subtense_mrad: Floats
+    beams: Beams
+
+    @property
+    def count(self) -> int:
+        """Number of lines."""
+        return len(self.laser)
+
+    @property
+    def lasers(self) -> int:
+        """Number of lasers."""
+        return int(self.laser[-1]) + 1 if len(self.laser) else 0
