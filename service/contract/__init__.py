@@ -1,0 +1,1 @@
+"""Requests, results and problems: the only words the outside hears."""

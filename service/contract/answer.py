@@ -1,0 +1,228 @@
+"""Requests to answers: the one way in for pages and for the API."""
+
+from __future__ import annotations
+
+import hashlib
+import json
+from typing import Any, cast
+
+import numpy as np
+
+from service import __version__
+from service.assess.criteria import AVERAGE, EXPOSURE, RULES, TRAIN_RULE
+from service.assess.evaluate import Evaluation, TargetResult, evaluate, optical_density
+from service.assess.steps import Step
+from service.assess.viewing import ratios_at
+from service.assess.working import working
+from service.contract.convert import lines_of
+from service.contract.notices import notices_of
+from service.contract.problem import FieldError, InvalidRequest
+from service.contract.request import EvaluationRequest
+from service.contract.result import (
+    AtDistance,
+    Comparison,
+    Criterion,
+    Duration,
+    EvaluationResult,
+    Provenance,
+    RulesInfo,
+    SumOfLines,
+    TargetAnswer,
+    WorkingStep,
+)
+from service.files import DATA
+from service.rules.limits import CompiledRules, compiled_rules
+from service.rules.tables import read_toml
+
+__all__ = ["answer", "cautions", "compare", "rule_set", "rule_sets"]
+
+
+def rule_sets() -> dict[str, CompiledRules]:
+    """Every compiled rule set by id, the default first."""
+    return compiled_rules(DATA)
+
+
+def cautions() -> list[str]:
+    """The cautions that every result carries."""
+    return list(read_toml(DATA / "phrases" / "en.toml")["cautions"].values())
+
+
+CAUTIONS = cautions()
+
+
+def rule_set(rules_id: str) -> CompiledRules:
+    """The rule set of a request. Raises InvalidRequest naming the ids there are."""
+    found = rule_sets().get(rules_id)
+    if found is None:
+        allowed = ", ".join(rule_sets())
+        error = FieldError(
+            field="rules",
+            value=rules_id,
+            allowed=allowed,
+            message="unknown rule set",
+            remedy="Choose one of the rule sets listed, or leave the field out.",
+        )
+        raise InvalidRequest(f"rules: there is no rule set {rules_id!r}", [error])
+    return found
+
+
+def answer(request: EvaluationRequest) -> EvaluationResult:
+    """Evaluate one request. Raises InvalidRequest where its rule set is unknown."""
+    rules = rule_set(request.rules)
+    lines, duration_rows = lines_of([request], rules)
+    with np.errstate(over="ignore", under="ignore"):
+        evaluation = evaluate(lines, rules)
+        return _result(request, evaluation, duration_rows.tolist())
+
+
+def compare(request: EvaluationRequest) -> Comparison:
+    """The same request under every rule set."""
+    rule_set(request.rules)
+    return Comparison(results=[answer(request.model_copy(update={"rules": key})) for key in rule_sets()])
+
+
+def _result(request: EvaluationRequest, evaluation: Evaluation, duration_rows: list[int]) -> EvaluationResult:
+    published = evaluation.rules.rules
+    exposure = evaluation.lines.exposure_s
+    durations = [_duration(evaluation, k, row) for k, row in enumerate(duration_rows)]
+    same = float(exposure[0]) if (exposure == exposure[0]).all() else None
+    inputs = request.model_copy(update={"exposure_s": same}).model_dump(mode="json", exclude_none=True)
+    inputs.setdefault("exposure_s", None)
+    canonical = json.dumps(inputs, sort_keys=True, separators=(",", ":"), allow_nan=False)
+    first = [Step("T", d.basis, d.exposure_s, "s", d.source, d.known, d.line) for d in durations]
+    return EvaluationResult(
+        rules=RulesInfo(
+            id=published.id,
+            title=published.title,
+            standing=published.standing,
+            standing_text=published.standing_text,
+            digest=published.digest,
+        ),
+        eye=_target(request, evaluation, evaluation.eye),
+        skin=_target(request, evaluation, evaluation.skin),
+        inputs=inputs,
+        durations=durations,
+        working=[_step(s) for s in working(evaluation, 0, first)],
+        notices=notices_of(request, evaluation, 0),
+        cautions=CAUTIONS,
+        provenance=Provenance(
+            service_version=__version__,
+            rules_digest=published.digest,
+            request_digest=f"sha256:{hashlib.sha256(canonical.encode()).hexdigest()}",
+        ),
+    )
+
+
+def _duration(evaluation: Evaluation, line: int, row: int) -> Duration:
+    seconds = float(evaluation.lines.exposure_s[line])
+    if row < 0:
+        return Duration(
+            line=line, exposure_s=seconds, basis="exposure duration as chosen", source="", known="entered"
+        )
+    published = evaluation.rules.rules
+    entry = published.durations[row]
+    return Duration(
+        line=line,
+        exposure_s=seconds,
+        basis=f"none was chosen, so the rule set's conventional duration holds: {entry.words}",
+        source=published.source_text(entry.source, entry.locator),
+        known=cast(Any, entry.known),
+    )
+
+
+def _step(step: Step) -> WorkingStep:
+    return WorkingStep(
+        symbol=step.symbol,
+        text=step.text,
+        value=step.value,
+        unit=step.unit,
+        source=step.source,
+        known=cast(Any, step.known),
+        line=step.line,
+        target=cast(Any, step.target),
+        criterion=step.criterion,
+    )
+
+
+def _finite(x: float) -> float | None:
+    """Infinity is told as null."""
+    return float(x) if np.isfinite(x) else None
+
+
+def _target(request: EvaluationRequest, evaluation: Evaluation, result: TargetResult) -> TargetAnswer:
+    far = _finite(result.far_m[0])
+    worst = float(result.worst_ratio[0])
+    sums = result.sums
+    return TargetAnswer(
+        hazard_distance_m=far,
+        hazard_zone_m=None if far == 0.0 else (float(result.near_m[0]), far),
+        hazard_ratio=worst,
+        optical_density=float(optical_density(result.worst_ratio)[0]),
+        worst_place_m=float(result.place_m[0]),
+        governing=int(result.governing[0]),
+        criteria=[_criterion(evaluation, result, k) for k in range(len(result.hazard_ratio))],
+        sums=[]
+        if sums is None
+        else [
+            SumOfLines(
+                tissues=sorted(
+                    {evaluation.rules.rules.limits[result.criteria.row[k]].tissue for k in members}
+                ),
+                lines=sorted({int(result.criteria.line[k]) for k in members}),
+                criteria=[int(k) for k in members],
+                hazard_ratio=float(sums.hazard_ratio[n]),
+                hazard_distance_m=_finite(sums.far_m[n]),
+            )
+            for n, members in enumerate(sums.members)
+        ],
+        at_distance=_at_distance(request, evaluation, result),
+    )
+
+
+def _at_distance(
+    request: EvaluationRequest, evaluation: Evaluation, result: TargetResult
+) -> AtDistance | None:
+    distance = request.viewing.distance_m
+    if distance is None:
+        return None
+    each, worst = ratios_at(evaluation, result, np.array([distance]))
+    return AtDistance(
+        distance_m=distance,
+        hazard_ratio=float(worst[0]),
+        optical_density=float(optical_density(worst)[0]),
+        exceeded=bool(worst[0] > 1.0),
+        criteria_hazard_ratio=each.tolist(),
+    )
+
+
+def _criterion(evaluation: Evaluation, result: TargetResult, k: int) -> Criterion:
+    criteria, found, lines = result.criteria, evaluation.exposures, evaluation.lines
+    e, line = int(criteria.exposure[k]), int(criteria.line[k])
+    rule = int(found.rule[e])
+    row = evaluation.rules.rules.limits[criteria.row[k]]
+    limit = float(criteria.limit_j_m2[k])
+    if rule == EXPOSURE:
+        per_second = 1.0 / float(lines.exposure_s[line])
+    elif lines.mode[line] == 1:
+        per_second = 1.0 / float(lines.pulse_s[line])
+    else:
+        per_second = float(lines.rate_hz[line])
+    return Criterion(
+        line=line,
+        rule=cast(Any, RULES[rule]),
+        tissue=row.tissue,
+        effect=row.effect,
+        row=row.row,
+        limit_j_m2=limit,
+        limit_w_m2=limit * per_second,
+        aperture_mm=float(criteria.aperture_m[k]) * 1e3,
+        duration_s=float(found.time_s[e]),
+        exposure_j_m2=float(result.hazard_ratio[k]) * limit,
+        pulses=float(found.count[e]) if rule in (AVERAGE, TRAIN_RULE) else None,
+        pulse_factor=float(found.c_p[e]) if rule == TRAIN_RULE else None,
+        hazard_ratio=float(result.hazard_ratio[k]),
+        hazard_distance_m=_finite(result.distance_m[k]),
+        source=evaluation.rules.rules.source_text(row.source, row.locator),
+        known=cast(Any, row.known),
+        note=row.note,
+    )

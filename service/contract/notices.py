@@ -1,0 +1,181 @@
+"""Notices: what a careful reader would ask about, above all slips of units."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+import numpy as np
+
+from service.assess.evaluate import Evaluation
+from service.contract.request import Cw, EvaluationRequest, Line, Pulse, Train
+from service.contract.result import Notice
+from service.optics.beams import SQRT2
+from service.rules.grid import TARGETS
+
+__all__ = ["notices_of"]
+
+#: Above these a value is asked about (common practice, no source).
+WIDE_BEAM_MM = 1000.0
+WIDE_ANGLE_MRAD = 500.0
+STRONG_W = 1e5
+FAINT_W = 1e-9
+PEAK_W = 1e16
+#: The large-area rule of the skin limits beyond 1400 nm starts at this exposed area [m2].
+LARGE_AREA_M2 = 0.01
+
+
+def notices_of(request: EvaluationRequest, evaluation: Evaluation, laser: int) -> list[Notice]:
+    """Every notice for one laser of an evaluation, in the order of its fields."""
+    members = np.flatnonzero(evaluation.lines.laser == laser)
+    found: list[Notice] = []
+    for number, (line, k) in enumerate(zip(request.lines, members, strict=True)):
+        found += _line_notices(f"lines.{number}", line, float(evaluation.lines.exposure_s[k]))
+    found += _result_notices(evaluation, laser, members)
+    return found
+
+
+def _line_notices(path: str, line: Line, exposure_s: float) -> Iterator[Notice]:
+    emission = line.emission
+    yield from _beam_notices(path, line)
+    if isinstance(emission, Cw):
+        if not FAINT_W <= emission.power_w <= STRONG_W:
+            yield Notice(
+                code="unusual-power",
+                field=f"{path}.emission.power_w",
+                text=f"{emission.power_w:g} W is unusual for a continuous beam. The field is in watts: "
+                "5 mW is 0.005.",
+            )
+        return
+    if emission.pulse_s > exposure_s:
+        yield Notice(
+            code="pulse-longer-than-exposure",
+            field=f"{path}.emission.pulse_s",
+            text=f"The pulse ({emission.pulse_s:g} s) lasts longer than the exposure ({exposure_s:g} s). "
+            "The whole pulse is judged, which is stricter.",
+        )
+    energy = emission.energy_j if isinstance(emission, Pulse) else emission.pulse_energy_j
+    if energy / emission.pulse_s > PEAK_W:
+        yield Notice(
+            code="unusual-peak-power",
+            field=f"{path}.emission.pulse_s",
+            text=f"The peak power comes to {energy / emission.pulse_s:.3g} W. Check energy and duration.",
+        )
+    if isinstance(emission, Train):
+        yield from _train_notices(path, emission, energy, exposure_s)
+
+
+def _train_notices(path: str, emission: Train, energy_j: float, exposure_s: float) -> Iterator[Notice]:
+    duty = emission.pulse_s * emission.rate_hz
+    if duty > 1.0:
+        yield Notice(
+            code="duty-cycle-above-one",
+            field=f"{path}.emission.pulse_s",
+            text=f"Pulse duration x rate is {duty:.3g}: the pulses would overlap. Check the units of both.",
+        )
+        name = "average_power_w" if emission.average_power_w is not None else "energy_j"
+        yield Notice(
+            code="average-power-exceeds-peak",
+            field=f"{path}.emission.{name}",
+            text=f"The average power ({energy_j * emission.rate_hz:.3g} W) exceeds the peak power "
+            f"({energy_j / emission.pulse_s:.3g} W), which no pulse train can do.",
+        )
+    if emission.rate_hz * exposure_s < 1.0:
+        yield Notice(
+            code="less-than-one-pulse",
+            field=f"{path}.emission.rate_hz",
+            text=f"Fewer than one pulse falls into {exposure_s:g} s; one whole pulse is judged.",
+        )
+
+
+def _beam_notices(path: str, line: Line) -> Iterator[Notice]:
+    beam = line.beam
+    narrower = 1.0 if beam.profile == "tophat" or beam.level == "1/e2" else SQRT2
+    for diameter, divergence in {*zip(beam.diameter_mm, beam.divergence_mrad, strict=True)}:
+        least = 4e-3 * line.wavelength_nm / (np.pi * diameter * narrower) / narrower
+        if 0.0 < divergence < least * (1.0 - 1e-3):
+            yield Notice(
+                code="below-diffraction-limit",
+                field=f"{path}.beam.divergence_mrad",
+                text=f"{divergence:g} mrad is below the diffraction limit of {least:.3g} mrad for a waist of "
+                f"{diameter:g} mm at {line.wavelength_nm:g} nm (4 lambda / (pi d) for 1/e2 values). No beam "
+                "spreads less: check both values and whether they are half or full angles.",
+            )
+    if 0.0 in beam.divergence_mrad:
+        yield Notice(
+            code="zero-divergence",
+            field=f"{path}.beam.divergence_mrad",
+            text="No beam has zero divergence. The distance given is the longest that can be; "
+            "enter the divergence of the data sheet or the diffraction limit.",
+        )
+    if max(beam.divergence_mrad) > WIDE_ANGLE_MRAD:
+        yield Notice(
+            code="wide-angle",
+            field=f"{path}.beam.divergence_mrad",
+            text=f"{max(beam.divergence_mrad):g} mrad is a wide cone. The beam is taken to spread in "
+            "proportion to the angle, which is stricter than its tangent. The field is in milliradians: "
+            "1 degree is 17.45.",
+        )
+    if max(beam.diameter_mm) > WIDE_BEAM_MM:
+        yield Notice(
+            code="beam-wider-than-a-metre",
+            field=f"{path}.beam.diameter_mm",
+            text=f"The beam is {max(beam.diameter_mm) / 1000:g} m wide. The field is in millimetres.",
+        )
+    if beam.waist_m > 0.0:
+        yield Notice(
+            code="waist-downstream",
+            field=f"{path}.beam.waist_m",
+            text=f"The diameter is the waist's, {beam.waist_m:g} m downstream of the exit. The beam is most "
+            "hazardous there, not at the exit.",
+        )
+
+
+def _result_notices(evaluation: Evaluation, laser: int, members: np.ndarray) -> Iterator[Notice]:
+    rules = evaluation.rules.rules
+    told: set[str] = set()
+    for target in TARGETS:
+        result = evaluation.target(target)
+        if np.isinf(result.far_m[laser]):
+            yield Notice(
+                code="unbounded",
+                field=None,
+                text=f"For the {target} the beam never falls below its limit: there is no hazard distance.",
+            )
+        criteria = np.flatnonzero(np.isin(result.criteria.line, members))
+        for k in criteria:
+            row = rules.limits[result.criteria.row[k]]
+            number = int(evaluation.exposures.c_p_row[result.criteria.exposure[k]])
+            notes = [row.note] + ([evaluation.rules.repetition.rows[number].note] if number >= 0 else [])
+            for note in (n for n in notes if n.startswith("uncertain") and n not in told):
+                told.add(note)
+                line = int(result.criteria.line[k] - members[0])
+                yield Notice(
+                    code="uncertain-value",
+                    field=f"lines.{line}",
+                    text=f"{rules.title}, row {row.row}: {note}.",
+                )
+    yield from _large_area(evaluation, laser)
+
+
+def _large_area(evaluation: Evaluation, laser: int) -> Iterator[Notice]:
+    """The skin limits beyond 1400 nm fall for exposed areas above 100 cm2; that is not applied."""
+    result = evaluation.skin
+    k = int(result.governing[laser])
+    line = int(result.criteria.line[k])
+    time = float(evaluation.exposures.time_s[result.criteria.exposure[k]])
+    if evaluation.lines.wavelength_nm[line] < 1400.0 or time < 10.0:
+        return
+    far = float(result.far_m[laser])
+    beams = evaluation.lines.beams.take(np.array([line]))
+    x, y = beams.diameters_m(np.array([far if np.isfinite(far) else 0.0]))
+    if np.pi / 4.0 * x[0] * y[0] <= LARGE_AREA_M2:
+        return
+    reach = beams.reach_m(result.criteria.aperture_m[k : k + 1], 0.1 / result.criteria.strength[k : k + 1])[1]
+    where = f"out to {float(reach[0]):.3g} m" if np.isfinite(reach[0]) else "at any distance"
+    yield Notice(
+        code="large-skin-area",
+        field=f"lines.{line - int(np.flatnonzero(evaluation.lines.laser == laser)[0])}",
+        text="Where more than 100 cm2 of skin is exposed beyond 1400 nm for longer than 10 s, the published "
+        "skin limit falls from 1000 W/m2 to as little as 100 W/m2 (from memory). That rule is not in the "
+        f"distance above; at 100 W/m2 the skin would be at risk {where}.",
+    )

@@ -1,0 +1,255 @@
+"""Problem documents after RFC 9457: what was wrong, where, what is allowed and what to do.
+
+Problem
+ +-- InvalidRequest   422  a field is missing, unknown or outside its range
+ +-- MalformedBody    400  the body is no JSON document
+ +-- BodyTooLarge     413  the body is larger than the service reads
+ +-- UnsupportedMedia 415  the body is not declared as JSON
+ +-- NotFound         404  no such resource
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterable
+from functools import cache
+from typing import Any
+
+from pydantic import BaseModel, Field, ValidationError
+
+from service.contract.request import EvaluationRequest
+
+__all__ = [
+    "BodyTooLarge",
+    "FieldError",
+    "InvalidRequest",
+    "MalformedBody",
+    "NotFound",
+    "Problem",
+    "ProblemDocument",
+    "UnsupportedMedia",
+    "invalid_request",
+]
+
+MODES = ("cw", "pulse", "train")
+UNITS = {"nm": "nm", "w": "W", "j": "J", "s": "s", "hz": "Hz", "mm": "mm", "mrad": "mrad", "m": "m"}
+SHOWN = 120
+
+
+class FieldError(BaseModel):
+    """One field that cannot be used."""
+
+    field: str = Field(description="Path of the field, for example lines.0.wavelength_nm.")
+    value: Any = Field(description="The value received; null where there was none.")
+    allowed: str = Field(description="What the field may hold.")
+    message: str
+    remedy: str
+
+
+class ProblemDocument(BaseModel):
+    """The body of every error answer (application/problem+json)."""
+
+    type: str
+    title: str
+    status: int
+    detail: str
+    errors: list[FieldError] = []
+
+
+class Problem(Exception):
+    """An error that the outside sees, with its document."""
+
+    slug = "problem"
+    title = "The request cannot be answered"
+    status = 400
+
+    def __init__(self, detail: str, errors: Iterable[FieldError] = ()) -> None:
+        super().__init__(detail)
+        self.detail = detail
+        self.errors = list(errors)
+
+    def document(self) -> ProblemDocument:
+        """The document to send."""
+        return ProblemDocument(
+            type=f"/problems/{self.slug}",
+            title=self.title,
+            status=self.status,
+            detail=self.detail,
+            errors=self.errors,
+        )
+
+
+class InvalidRequest(Problem):
+    """A field is missing, unknown or outside its range."""
+
+    slug = "invalid-request"
+    title = "A field of the request cannot be used"
+    status = 422
+
+
+class MalformedBody(Problem):
+    """The body is no JSON document."""
+
+    slug = "malformed-body"
+    title = "The body is not a JSON document"
+    status = 400
+
+
+class BodyTooLarge(Problem):
+    """The body is larger than the service reads."""
+
+    slug = "body-too-large"
+    title = "The body is too large"
+    status = 413
+
+
+class UnsupportedMedia(Problem):
+    """The body is not declared as JSON."""
+
+    slug = "unsupported-media"
+    title = "The body is not declared as JSON"
+    status = 415
+
+
+class NotFound(Problem):
+    """No such resource."""
+
+    slug = "not-found"
+    title = "There is nothing at this address"
+    status = 404
+
+
+REMEDIES = {
+    "missing": "Add this field.",
+    "extra_forbidden": "Remove it, or check its spelling and its place.",
+    "float_type": "Give a JSON number, without quotes and without a unit.",
+    "finite_number": "Give a finite number.",
+    "too_short": "Add the missing part.",
+    "too_long": "Send fewer, or several requests.",
+}
+OUTSIDE = ("greater_than", "greater_than_equal", "less_than", "less_than_equal")
+PAIRS = ("diameter_mm", "divergence_mrad")
+RANGE_REMEDY = "Check the unit: the name of the field ends with it."
+HINTS = {
+    "wavelength_nm": "Check the unit: nanometres, so 1.064 µm is 1064.",
+    "pulse_s": "Check the unit: seconds, so 10 ns is 1e-8. Limits are published from 1e-13 s (100 fs) on.",
+    "exposure_s": "Leave it out for the conventional duration. Limits are published from 1e-13 s to 3e4 s.",
+    "bench": "Send an empty list: elements in the beam are not evaluated by this version.",
+    "profile": "Fibre ends are not evaluated by this version; enter the beam as it leaves the last optic.",
+}
+
+
+@cache
+def _properties() -> dict[str, dict[str, Any]]:
+    """JSON schema of every field of the request by name."""
+    schema = EvaluationRequest.model_json_schema()
+    found = dict(schema["properties"])
+    for definition in schema["$defs"].values():
+        found.update(definition.get("properties", {}))
+    return found
+
+
+def _numbers(schema: dict[str, Any]) -> str:
+    low = schema.get("minimum", schema.get("exclusiveMinimum"))
+    more = "above " if "exclusiveMinimum" in schema else ""
+    return f"{more}{low:g} to {schema['maximum']:g}"
+
+
+def _allowed(path: list[str]) -> str:
+    """What the field at `path` may hold, in words."""
+    name = next((p for p in reversed(path) if not p.isdigit()), "")
+    if name == "mode":
+        return ", ".join(MODES)
+    if name == "emission":
+        return "an object with mode cw, pulse or train"
+    schema = _properties().get(name)
+    if schema is None:
+        return "no such field"
+    if "anyOf" in schema:
+        schema = next((s for s in schema["anyOf"] if s.get("type") == "number"), schema)
+    if schema.get("type") == "number":
+        unit = UNITS.get(name.rsplit("_", 1)[-1], "")
+        pair = ", or a list of two" if name in PAIRS else ""
+        return f"a number, {_numbers(schema)} {unit}".rstrip() + pair
+    if "enum" in schema:
+        return ", ".join(map(str, schema["enum"]))
+    if schema.get("type") == "array":
+        low, high = schema.get("minItems", 0), schema["maxItems"]
+        return f"a list of {low} to {high} items" if high else "an empty list"
+    if schema.get("type") == "string":
+        return f"text of at most {schema['maxLength']} characters"
+    return "an object"
+
+
+def shown(value: Any) -> Any:
+    """A received value as it may be sent back: finite, short, never nested."""
+    if value is None or isinstance(value, bool):
+        return value
+    if isinstance(value, int | float):
+        fits = abs(value) < 1e300 if isinstance(value, int) else math.isfinite(value)
+        return value if fits else str(value)[:SHOWN]
+    if isinstance(value, str):
+        return value if len(value) <= SHOWN else value[:SHOWN] + "..."
+    if isinstance(value, list | tuple):
+        return f"a list of {len(value)} items"
+    return "an object" if isinstance(value, dict) else type(value).__name__
+
+
+def _path(loc: tuple[int | str, ...]) -> list[str]:
+    """Path of a field as the sender knows it: without the tag of the emission mode."""
+    parts = [str(p) for p in loc]
+    return [p for k, p in enumerate(parts) if not (k and parts[k - 1] == "emission" and p in MODES)]
+
+
+def _one_for_both_axes(errors: list[FieldError]) -> list[FieldError]:
+    """A number that stands for both axes is named once, without the axis."""
+    fields = {e.field: e for e in errors}
+    kept = []
+    for e in errors:
+        stem, _, axis = e.field.rpartition(".")
+        twin = fields.get(f"{stem}.{1 - int(axis)}") if axis in ("0", "1") else None
+        if twin is None or stem.rpartition(".")[2] not in PAIRS or twin.value != e.value:
+            kept.append(e)
+        elif axis == "0":
+            kept.append(e.model_copy(update={"field": stem}))
+    return kept
+
+
+def invalid_request(error: ValidationError) -> InvalidRequest:
+    """The problem for a request that failed validation."""
+    errors = []
+    for item in error.errors(include_url=False):
+        kind, path = item["type"], _path(item["loc"])
+        if kind in ("union_tag_invalid", "union_tag_not_found"):
+            path.append("mode")
+        name = next((p for p in reversed(path) if not p.isdigit()), "")
+        given = item["input"]
+        if kind in ("missing", "union_tag_not_found"):
+            value, message = None, "this field is missing"
+        elif kind == "union_tag_invalid":
+            value = given.get("mode") if isinstance(given, dict) else given
+            message = "unknown mode"
+        elif kind == "extra_forbidden":
+            value, message = given, "unknown field"
+        elif kind in OUTSIDE:
+            value, message = given, "outside the allowed range"
+        elif isinstance(given, list | tuple) and name in PAIRS:
+            value, message = given, "neither a number nor a list of two numbers"
+        else:
+            value, message = given, item["msg"].removeprefix("Value error, ").lower()
+        remedy = REMEDIES.get(kind, RANGE_REMEDY if kind in OUTSIDE else "Correct it.")
+        if kind not in ("missing", "extra_forbidden", "float_type", "finite_number"):
+            remedy = HINTS.get(name, remedy)
+        errors.append(
+            FieldError(
+                field=".".join(path) or "body",
+                value=shown(value),
+                allowed="no such field" if kind == "extra_forbidden" else _allowed(path),
+                message=message,
+                remedy=remedy,
+            )
+        )
+    errors = _one_for_both_axes(errors)
+    first = errors[0]
+    more = f" ({len(errors) - 1} more)" if len(errors) > 1 else ""
+    return InvalidRequest(f"{first.field}: {first.message}{more}", errors)
