@@ -1,0 +1,65 @@
+"""The application: routes, error answers and headers put together."""
+
+from __future__ import annotations
+
+from collections.abc import Awaitable, Callable
+
+from fastapi import FastAPI, Request
+from fastapi.exceptions import RequestValidationError
+from starlette.exceptions import HTTPException
+from starlette.responses import Response
+
+from service import __version__
+from service.contract.answer import rule_sets
+from service.contract.problem import NotFound, Problem
+from service.settings import Settings
+from service.web import api, health, pages, rules_pages, static
+from service.web.headers import SecurityHeaders
+from service.web.openapi import describe
+from service.web.problems import PlainProblem, problem_response
+
+__all__ = ["create_app"]
+
+
+def create_app(settings: Settings | None = None) -> FastAPI:
+    """The application. Raises TableError where a rule table cannot be used."""
+    rule_sets()
+    app = FastAPI(
+        title="Blinkline",
+        version=__version__,
+        openapi_url="/api/v1/openapi.json",
+        docs_url=None,
+        redoc_url=None,
+    )
+    app.state.settings = settings or Settings()
+    for router in (api.router, health.router, pages.router, rules_pages.router, static.router):
+        app.include_router(router)
+    app.add_middleware(SecurityHeaders)
+    describe(app)
+
+    async def on_problem(request: Request, error: Exception) -> Response:
+        assert isinstance(error, Problem)
+        return problem_response(request, error)
+
+    async def on_http(request: Request, error: Exception) -> Response:
+        assert isinstance(error, HTTPException)
+        if error.status_code == 404:
+            return problem_response(request, NotFound(f"{request.url.path} is no address of this service"))
+        problem = PlainProblem(error.status_code, str(error.detail))
+        return problem_response(request, problem, dict(error.headers or {}))
+
+    async def on_failure(request: Request, error: Exception) -> Response:
+        problem = PlainProblem(
+            500, "The service failed on this request. Nothing was computed; please report it."
+        )
+        return problem_response(request, problem)
+
+    handlers: dict[int | type[Exception], Callable[[Request, Exception], Awaitable[Response]]] = {
+        Problem: on_problem,
+        HTTPException: on_http,
+        RequestValidationError: on_failure,
+        Exception: on_failure,
+    }
+    for kind, handler in handlers.items():
+        app.add_exception_handler(kind, handler)
+    return app

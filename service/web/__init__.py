@@ -1,0 +1,1 @@
+"""Routes: pages and API, and how an answer is presented."""

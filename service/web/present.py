@@ -1,0 +1,129 @@
+"""How an answer is put into words and rows for pages."""
+
+from __future__ import annotations
+
+from service.assess.steps import factor_expression, limit_expression
+from service.contract.result import Criterion, EvaluationResult, TargetAnswer
+from service.rules.ruleset import RuleSet
+from service.rules.tables import FactorRow, LimitRow, RepetitionRow
+from service.web.numbers import plain, shown_down, shown_up
+
+__all__ = [
+    "KNOWN",
+    "RULE_NAMES",
+    "band",
+    "documents",
+    "duration",
+    "exactly",
+    "factor_band",
+    "factor_text",
+    "governing",
+    "headline",
+    "limit_text",
+    "repetition_text",
+    "rows_of",
+]
+
+RULE_NAMES = {
+    "exposure": "whole exposure",
+    "single": "single pulse",
+    "average": "average power",
+    "train": "pulse train",
+}
+KNOWN = {"read": "read", "memory": "from memory", "computed": "computed", "entered": "entered"}
+TIMES = ((1.0, "s", 1.0), (1e-3, "ms", 1e3), (1e-6, "µs", 1e6), (1e-9, "ns", 1e9), (1e-12, "ps", 1e12))
+
+
+def exactly(value: float | None) -> str:
+    """A number as the JSON answer gives it, for machine-readable attributes."""
+    return "" if value is None else repr(value)
+
+
+def duration(seconds: float) -> str:
+    """A duration in the unit people say it in."""
+    for least, unit, factor in TIMES:
+        if seconds >= least * (1 - 1e-12):
+            return f"{plain(float(f'{seconds * factor:.10g}'))} {unit}"
+    return f"{plain(float(f'{seconds * 1e15:.10g}'))} fs"
+
+
+def governing(target: TargetAnswer) -> Criterion:
+    """The criterion that governs."""
+    return target.criteria[target.governing]
+
+
+def headline(name: str, target: TargetAnswer, result: EvaluationResult) -> str:
+    """One sentence for the eye or the skin."""
+    exposures = {d.exposure_s for d in result.durations}
+    pulsed = governing(target).rule in ("single", "train")
+    time = f" for {duration(exposures.pop())}" if len(exposures) == 1 and not pulsed else ""
+    if pulsed:
+        time = " for a pulse" if governing(target).rule == "single" else " for the pulse train"
+    looking = "Looking into the beam" if name == "eye" else "The beam on bare skin"
+    if target.hazard_zone_m is None:
+        return f"{looking} exceeds no limit at any distance{time}."
+    near, far = target.hazard_zone_m
+    if far is None:
+        return f"{looking} is unsafe at every distance{time}: the beam does not spread."
+    if near > 0.0:
+        return f"{looking} is unsafe between {shown_down(near)} m and {shown_up(far)} m{time}."
+    return f"{looking} is unsafe out to {shown_up(far)} m{time}."
+
+
+def limit_text(row: LimitRow) -> str:
+    """A limit row as printed: H = 18 t^0.75 C_E."""
+    expression = limit_expression(row.coefficient, row.time_power, row.factors, "t")
+    cap = f", at most {row.cap:g}" if row.cap is not None else ""
+    return f"{row.quantity} = {expression}{cap} {'J/m²' if row.quantity == 'H' else 'W/m²'}"
+
+
+def factor_text(row: FactorRow) -> str:
+    """A piece of a factor as printed."""
+    names = {"wavelength_nm": "λ", "time_s": "t", "subtense_mrad": "α"}
+    return factor_expression(row, names[row.variable])
+
+
+def factor_band(row: FactorRow) -> str:
+    """The band of a piece of a factor."""
+    unit = {"wavelength_nm": "nm", "time_s": "s", "subtense_mrad": "mrad"}[row.variable]
+    return band(row.from_, row.to, unit)
+
+
+def band(low: float | str | None, high: float | str | None, unit: str) -> str:
+    """A band in words; blank ends are open."""
+
+    def end(value: float | str) -> str:
+        return value if isinstance(value, str) else f"{value:g}"
+
+    if low is None and high is None:
+        return "all"
+    if low is None:
+        return f"up to {end(high or 0.0)} {unit}"
+    if high is None:
+        return f"above {end(low)} {unit}"
+    return f"{end(low)} to {end(high)} {unit}"
+
+
+def repetition_text(row: RepetitionRow) -> str:
+    """A row of the repetitive-pulse factor as printed."""
+    floor = f", at least {row.floor:g}" if row.floor else ""
+    return limit_expression(row.coefficient, row.count_power, "", "N") + floor
+
+
+def documents(rules: RuleSet) -> list[str]:
+    """Keys of the documents that the rule set's rows name, in the order of sources.toml."""
+    tables = (
+        rules.limits,
+        rules.factors,
+        rules.apertures,
+        rules.durations,
+        rules.repetition,
+        rules.additivity,
+    )
+    named = {rules.document} | {row.source for table in tables for row in table}
+    return [key for key in rules.sources if key in named]
+
+
+def rows_of(rules: RuleSet, target: str) -> list[LimitRow]:
+    """Limit rows of one target, in printed order."""
+    return [row for row in rules.limits if row.target == target]
