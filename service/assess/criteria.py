@@ -14,7 +14,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from service.assess.lines import CW, TRAIN, Lines
-from service.rules.limits import CompiledRules, Conditions
+from service.rules.compiled import CompiledRules
+from service.rules.limits import Conditions
 
 __all__ = ["AVERAGE", "EXPOSURE", "RULES", "SINGLE", "TRAIN_RULE", "Criteria", "Exposures", "exposures"]
 
@@ -130,7 +131,7 @@ class Criteria:
         e, slot = np.nonzero(rows >= 0)
         row = rows[e, slot]
         line = found.line[e]
-        limit = rules.radiant_exposure(row, at, line, found.time_s[e]) * found.share[e]
+        limit = rules.values(row, at, line, found.time_s[e]) * found.share[e]
         aperture = rules.apertures(row, at.wavelength_nm[line], found.aperture_s[e])
         strength = found.dose[e] / (np.pi / 4.0 * aperture * aperture * limit)
         return cls(e, line, row, limit, aperture, strength)

@@ -12,8 +12,9 @@ from service.assess.distance import falling_root
 from service.assess.groups import Groups
 from service.assess.lines import Lines
 from service.optics.encircled import encircled_fraction
-from service.rules.grid import TARGETS
-from service.rules.limits import CompiledRules, Conditions
+from service.rules.compiled import CompiledRules
+from service.rules.limits import Conditions
+from service.rules.ruleset import TARGETS
 
 __all__ = ["Evaluation", "Sums", "TargetResult", "evaluate", "optical_density"]
 

@@ -10,7 +10,8 @@ from service.assess.evaluate import Evaluation
 from service.assess.steps import Step, factor_expression, number
 from service.assess.working_target import target_steps
 from service.rules.factors import Factor
-from service.rules.grid import SMALL_SOURCE_MRAD, TARGETS
+from service.rules.grid import SMALL_SOURCE_MRAD
+from service.rules.ruleset import TARGETS
 
 __all__ = ["working"]
 

@@ -31,7 +31,7 @@ from service.contract.result import (
     WorkingStep,
 )
 from service.files import DATA
-from service.rules.limits import CompiledRules, compiled_rules
+from service.rules.compiled import CompiledRules, compiled_rules
 from service.rules.tables import read_toml
 
 __all__ = ["answer", "cautions", "compare", "rule_set", "rule_sets"]

@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 from service.assess.lines import MODES, Lines
 from service.contract.request import Cw, EvaluationRequest, Train
 from service.optics.beams import SQRT2, Beams
-from service.rules.limits import CompiledRules
+from service.rules.compiled import CompiledRules
 
 __all__ = ["lines_of"]
 

@@ -10,7 +10,7 @@ from service.assess.evaluate import Evaluation
 from service.contract.request import Cw, EvaluationRequest, Line, Pulse, Train
 from service.contract.result import Notice
 from service.optics.beams import SQRT2
-from service.rules.grid import TARGETS
+from service.rules.ruleset import TARGETS
 
 __all__ = ["notices_of"]
 

@@ -8,7 +8,7 @@ from itertools import pairwise
 import numpy as np
 from numpy.typing import NDArray
 
-from service.rules.ruleset import RuleSet
+from service.rules.ruleset import LimitSet
 from service.rules.tables import FactorRow, TableError
 
 __all__ = ["Factor", "compile_factors"]
@@ -78,7 +78,7 @@ class Factor:
         return value
 
 
-def compile_factors(rules: RuleSet) -> dict[str, Factor]:
+def compile_factors(rules: LimitSet) -> dict[str, Factor]:
     """All factors of a rule set by name.
 
     Raises TableError where the pieces of one factor leave a gap, overlap or change variable.

@@ -1,8 +1,8 @@
 """Which rows hold where: the limit rows painted once into a lookup grid.
 
 The grid has one cell per printed boundary and one per band between two boundaries, in wavelength
-and time, times small or extended source, times before or after the break times T1 and T2 where
-rows use them. A lookup is then one binary search per value and one gather. Painting also proves
+and time, times small or extended source, times before or after each break time (T1, T2) that
+rows use as a bound. A lookup is then one binary search per value and one gather. Painting also proves
 that the tables tile: a gap or an unintended overlap refuses to load, naming file and line.
 """
 
@@ -15,15 +15,13 @@ import numpy as np
 from numpy.typing import NDArray
 
 from service.rules.factors import Factor
-from service.rules.ruleset import RuleSet
+from service.rules.ruleset import LimitSet
 from service.rules.tables import LimitRow, TableError
 
-__all__ = ["SMALL_SOURCE_MRAD", "TARGETS", "Grid"]
+__all__ = ["SMALL_SOURCE_MRAD", "Grid"]
 
-TARGETS = ("eye", "skin")
 #: Sources up to this subtense are small sources (alpha_min of every rule set, tables of t >= 10 s).
 SMALL_SOURCE_MRAD = 1.5
-BREAKS = ("T1", "T2")
 
 Ints = NDArray[np.intp]
 Floats = NDArray[np.float64]
@@ -42,7 +40,7 @@ class Grid:
     repetitive-pulse factor applies) and one column per slot, -1 where empty.
     """
 
-    def __init__(self, rules: RuleSet, factors: dict[str, Factor]) -> None:
+    def __init__(self, rules: LimitSet, factors: dict[str, Factor]) -> None:
         self._path = rules.path / "limits.csv"
         rows = rules.limits
         bounds = [
@@ -53,9 +51,9 @@ class Grid:
         printed = {t for r in rows for t in (r.time_from_s, r.time_to_s) if not isinstance(t, str)}
         self.times = np.array(sorted(float(t) for t in printed))
         self.exact = bool(rules.shared_wavelengths_nm or rules.shared_times_s)
-        used = {b for r in rows for b in (r.time_from_s, r.time_to_s) if b in BREAKS}
-        self.uses = tuple(name in used for name in BREAKS)
-        self._shape = (2, 2 * len(self.wavelengths), 2 * len(self.times), 2, *(1 + u for u in self.uses))
+        self.breaks = sorted({b for r in rows for b in (r.time_from_s, r.time_to_s) if isinstance(b, str)})
+        self._factors = [factors[name] for name in self.breaks]
+        self._shape = (2, 2 * len(self.wavelengths), 2 * len(self.times), 2, *(2 for _ in self.breaks))
         regular = [
             any(
                 p.target in (r.target, "*") and p.tissue in (r.tissue, "*") and p.effect == r.effect
@@ -64,7 +62,8 @@ class Grid:
             for r in rows
         ]
         self.table: dict[str, NDArray[np.int16]] = {}
-        for target in TARGETS:
+        self.targets = tuple(dict.fromkeys(row.target for row in rows))
+        for target in self.targets:
             regions = [
                 (k, self._region(rows[k], bounds[k], rules))
                 for k in range(len(rows))
@@ -85,7 +84,7 @@ class Grid:
         """A time bound as a number [s]: a break time counts with its least or largest value."""
         if not isinstance(bound, str):
             return bound
-        if bound not in BREAKS or bound not in factors:
+        if bound not in factors:
             raise TableError(self._path, row.line, f"time bound {bound!r} is no number and no break time")
         factor = factors[bound]
         if factor.variable == "wavelength_nm":
@@ -94,7 +93,7 @@ class Grid:
             ends = np.array([SMALL_SOURCE_MRAD, 1e3])
         return pick(factor(ends).tolist())
 
-    def _region(self, row: LimitRow, bounds: tuple[float, float], rules: RuleSet) -> tuple[slice, ...]:
+    def _region(self, row: LimitRow, bounds: tuple[float, float], rules: LimitSet) -> tuple[slice, ...]:
         """The cells of one row: slices over wavelength, time, source and the break times."""
         w0, w1 = (_index(self.wavelengths, b) for b in (row.wavelength_from_nm, row.wavelength_to_nm))
         t0, t1 = (_index(self.times, b) for b in bounds)
@@ -110,8 +109,8 @@ class Grid:
         if source is None:
             raise TableError(self._path, row.line, f"row {row.row!r}: subtense bounds other than 1.5 mrad")
         breaks = [
-            slice(0, 1) if row.time_to_s == name or not used else slice(int(row.time_from_s == name), 2)
-            for name, used in zip(BREAKS, self.uses, strict=True)
+            slice(0, 1) if row.time_to_s == name else slice(int(row.time_from_s == name), 2)
+            for name in self.breaks
         ]
         return (
             slice(2 * w0 + 1, 2 * w1 + 1 + w_end),
@@ -142,7 +141,7 @@ class Grid:
         target: str,
         rows: tuple[LimitRow, ...],
         regions: list[tuple[int, tuple[slice, ...]]],
-        rules: RuleSet,
+        rules: LimitSet,
     ) -> None:
         """Refuse a gap inside the declared coverage, a row outside it and two rows in one band."""
         possible = self._possible()
@@ -179,18 +178,32 @@ class Grid:
             taken |= bands
 
     def _possible(self) -> NDArray[np.bool_]:
-        """Cells that a real exposure can reach: T2 lies within 10 to 100 s, T1 within its rows."""
+        """Cells that a real exposure can reach: before or after a break time only where it can lie.
+
+        A break time of the subtense is tested at its ends; one of the wavelength within the band of
+        each wavelength cell.
+        """
         possible = np.ones(self._shape[1:], dtype=bool)
-        if self.uses[1]:
-            t10, t100 = _index(self.times, 10.0), _index(self.times, 100.0)
-            possible[:, 2 * t100 + 1 :, :, :, 0] = False
-            possible[:, : 2 * t10 + 1, :, :, 1] = False
+        starts = np.r_[self.times[0], np.repeat(self.times, 2)[:-1]]
+        ends = np.r_[self.times[0], np.repeat(self.times, 2)[1:]]
+        for axis, factor in enumerate(self._factors, start=3):
+            if factor.variable == "wavelength_nm":
+                low = np.r_[self.wavelengths[0], np.repeat(self.wavelengths, 2)[:-1]]
+                high = np.r_[self.wavelengths[0], np.repeat(self.wavelengths, 2)[1:]]
+                least, most = factor(low), factor(np.nextafter(high, 0.0))
+            else:
+                least, most = factor(np.array([SMALL_SOURCE_MRAD])), factor(np.array([1e3]))
+            shape = [1] * possible.ndim
+            shape[0], shape[1] = -1, len(starts)
+            slack = 1.0 + 1e-9
+            before = np.broadcast_to((starts[None, :] * slack < most[:, None]).reshape(shape), possible.shape)
+            after = np.broadcast_to((ends[None, :] > least[:, None] * slack).reshape(shape), possible.shape)
+            side = np.indices(possible.shape)[axis]
+            possible &= np.where(side == 0, before, after)
         return possible
 
-    def cells(
-        self, wavelength_nm: Floats, time_s: Floats, extended: Ints, after: Sequence[Bools | None]
-    ) -> Ints:
-        """Cell of each exposure: 1-d arrays; `after` says whether T1 and T2 have passed."""
+    def cells(self, wavelength_nm: Floats, time_s: Floats, extended: Ints, after: Sequence[Bools]) -> Ints:
+        """Cell of each exposure: 1-d arrays; `after` says for each break time whether it has passed."""
         if self.exact:
             w = np.searchsorted(self.wavelengths, wavelength_nm, "left") + np.searchsorted(
                 self.wavelengths, wavelength_nm, "right"
@@ -203,8 +216,7 @@ class Grid:
             t = 2 * np.minimum(np.searchsorted(self.times, time_s, "right"), len(self.times) - 1)
         cell: Ints = w * self._w + t * self._t + extended * self._s
         for bit, stride in zip(after, self._b, strict=True):
-            if bit is not None:
-                cell += bit * stride
+            cell += bit * stride
         return cell
 
     def rows(self, target: str, cell: Ints, regular: Ints | None = None) -> NDArray[np.int16]:

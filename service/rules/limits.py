@@ -1,4 +1,4 @@
-"""Exposure limits for arrays of exposures: a compiled rule set.
+"""Exposure limits for arrays of exposures.
 
 Conventions (all rule sets): bands hold for lower <= x < upper, the last includes its end; the
 subtense counts as at least alpha_min; limits are for the exposure from the whole source at the
@@ -8,21 +8,17 @@ cornea. Everything is structure of arrays: 1-d arrays of equal length, one eleme
 from __future__ import annotations
 
 from dataclasses import dataclass
-from functools import lru_cache
-from pathlib import Path
 
 import numpy as np
 from numpy.typing import NDArray
 
-from service.rules.additivity import additivity_classes
-from service.rules.apertures import Apertures
 from service.rules.factors import Factor, compile_factors
 from service.rules.grid import SMALL_SOURCE_MRAD, Grid
 from service.rules.repetition import RepetitionFactor
-from service.rules.ruleset import RuleSet, load_all
+from service.rules.ruleset import LimitSet
 from service.rules.tables import TableError
 
-__all__ = ["CompiledRules", "Conditions", "compiled_rules"]
+__all__ = ["Conditions", "LimitTable"]
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.intp]
@@ -33,22 +29,25 @@ class Conditions:
     """What a limit needs to know of each line: 1-d arrays, one element per line.
 
     `wavelength_nm`, `subtense_mrad` (at least alpha_min), `extended` (1 above alpha_min),
-    `long_break_s` (T2), `photochemical_break_s` (T1, or None) and the wavelength factors by name.
+    `long_break_s` (T2), `breaks` (the break times used as bounds) and the wavelength factors by name.
     """
 
     wavelength_nm: Floats
     subtense_mrad: Floats
     extended: Ints
     long_break_s: Floats
-    first_break_s: Floats | None
+    breaks: list[Floats]
     factors: dict[str, Floats]
 
 
-class CompiledRules:
-    """One rule set ready for arrays. Raises TableError where its tables do not fit together."""
+class LimitTable:
+    """Limit rows and their factors ready for arrays.
 
-    def __init__(self, rules: RuleSet) -> None:
-        self.rules = rules
+    Raises TableError where the tables do not fit together.
+    """
+
+    def __init__(self, tables: LimitSet) -> None:
+        rules = self._tables = tables
         self.factors = compile_factors(rules)
         for role, name in rules.roles.items():
             if name not in self.factors:
@@ -57,15 +56,13 @@ class CompiledRules:
         self.repetition = RepetitionFactor(rules, self.factors)
         rows = rules.limits
         self.coefficient = np.array([r.coefficient for r in rows])
-        irradiance = np.array([r.quantity == "E" for r in rows])
+        irradiance = np.array([r.quantity in "EP" for r in rows])
         self.time_power = np.array([r.time_power for r in rows]) + irradiance
         self.powers = [p for p in np.unique(self.time_power) if p != 0.0]
         self.cap_power = irradiance.astype(float)
         self.cap = np.array([np.inf if r.cap is None else r.cap for r in rows])
         self.capped = np.isfinite(self.cap)
         self.tokens = self._tokens()
-        self.apertures = Apertures(rules)
-        self.additivity = additivity_classes(rules)
         self.line_factors = sorted(
             {name for name, _, _ in self.tokens if name in self.factors}
             & {n for n, f in self.factors.items() if f.variable == "wavelength_nm"}
@@ -74,15 +71,15 @@ class CompiledRules:
 
     def _tokens(self) -> list[tuple[str, float, NDArray[np.bool_]]]:
         """Every factor used, with its exponent and the rows that use it."""
-        special = (self.rules.subtense.symbol, self.rules.field.symbol)
+        special = (self._tables.subtense.symbol, self._tables.field.symbol)
         uses: dict[tuple[str, float], NDArray[np.bool_]] = {}
-        for k, row in enumerate(self.rules.limits):
+        for k, row in enumerate(self._tables.limits):
             for token in row.factors.split():
                 name, _, exponent = token.partition("^")
                 if name not in self.factors and name not in special:
-                    raise TableError(self.rules.path / "limits.csv", row.line, f"unknown factor {name!r}")
+                    raise TableError(self._tables.path / "limits.csv", row.line, f"unknown factor {name!r}")
                 key = (name, float(exponent or 1))
-                uses.setdefault(key, np.zeros(len(self.rules.limits), dtype=bool))[k] = True
+                uses.setdefault(key, np.zeros(len(self._tables.limits), dtype=bool))[k] = True
         return [(name, exponent, rows) for (name, exponent), rows in uses.items()]
 
     def _check_factor_bands(self) -> None:
@@ -92,37 +89,40 @@ class CompiledRules:
             if factor is None or factor.variable != "wavelength_nm":
                 continue
             end = factor.rows[-1].to or np.inf
-            for row in (r for r, used in zip(self.rules.limits, rows, strict=True) if used):
+            for row in (r for r, used in zip(self._tables.limits, rows, strict=True) if used):
                 if row.wavelength_from_nm < factor.rows[0].from_ or row.wavelength_to_nm > end:
                     raise TableError(
-                        self.rules.path / "limits.csv", row.line, f"{name} is not tabled over the whole band"
+                        self._tables.path / "limits.csv",
+                        row.line,
+                        f"{name} is not tabled over the whole band",
                     )
 
     def factor(self, role: str) -> Factor:
         """The factor that plays a role of the engine (alpha_min, alpha_max, field_angle, ...)."""
-        return self.factors[self.rules.roles[role]]
+        return self.factors[self._tables.roles[role]]
 
     def conditions(self, wavelength_nm: Floats, subtense_mrad: Floats) -> Conditions:
         """Conditions of each line from wavelength [nm] and subtense [mrad], 1-d arrays."""
         alpha = np.maximum(subtense_mrad, SMALL_SOURCE_MRAD)
-        t1 = self.factors["T1"](wavelength_nm) if self.grid.uses[0] else None
+        at = {"wavelength_nm": wavelength_nm, "subtense_mrad": alpha}
         return Conditions(
             wavelength_nm=wavelength_nm,
             subtense_mrad=alpha,
             extended=(alpha > SMALL_SOURCE_MRAD).astype(np.intp),
             long_break_s=self.factor("long_break")(alpha),
-            first_break_s=t1,
+            breaks=[self.factors[b](at[self.factors[b].variable]) for b in self.grid.breaks],
             factors={name: self.factors[name](wavelength_nm) for name in self.line_factors},
         )
 
     def cells(self, at: Conditions, line: Ints, time_s: Floats) -> Ints:
         """Grid cell of each exposure: `line` indexes the conditions, `time_s` is its duration."""
-        t1 = None if at.first_break_s is None else time_s >= at.first_break_s[line]
-        t2 = time_s >= at.long_break_s[line] if self.grid.uses[1] else None
-        return self.grid.cells(at.wavelength_nm[line], time_s, at.extended[line], (t1, t2))
+        after = [time_s >= b[line] for b in at.breaks]
+        return self.grid.cells(at.wavelength_nm[line], time_s, at.extended[line], after)
 
-    def radiant_exposure(self, row: NDArray[np.int16], at: Conditions, line: Ints, time_s: Floats) -> Floats:
-        """Limit [J/m2] of each exposure: coefficient x t^power x factors, irradiance rows x t.
+    def values(self, row: NDArray[np.int16], at: Conditions, line: Ints, time_s: Floats) -> Floats:
+        """Limit of each exposure as a dose: coefficient x t^power x factors, E and P rows x t.
+
+        J/m2 for rows of H and E, J for rows of Q and P.
 
         Parameters
         ----------
@@ -150,11 +150,11 @@ class CompiledRules:
         """One factor for each exposure."""
         if name in at.factors:
             return at.factors[name][line]
-        if name == self.rules.subtense.symbol:
+        if name == self._tables.subtense.symbol:
             return self.subtense_factor(at.subtense_mrad[line], time_s)
-        if name == self.rules.field.symbol:
+        if name == self._tables.field.symbol:
             return self.field_factor(at.subtense_mrad[line], time_s)
-        if name == self.rules.roles["long_break"]:
+        if name == self._tables.roles["long_break"]:
             return at.long_break_s[line]
         return self.factors[name](time_s)
 
@@ -170,17 +170,3 @@ class CompiledRules:
     def field_factor(self, alpha_mrad: Floats, time_s: Floats) -> Floats:
         """(alpha / gamma(t))^2 for a source wider than the photochemical field angle, else 1."""
         return np.maximum(1.0, alpha_mrad / self.factor("field_angle")(time_s)) ** 2
-
-    def default_duration(self, wavelength_nm: Floats) -> tuple[Floats, Ints]:
-        """Conventional duration [s] for an unintended exposure, and its row's number."""
-        index = [k for k, r in enumerate(self.rules.durations) if r.kind == "default"]
-        edges = np.array([self.rules.durations[k].wavelength_from_nm for k in index])
-        at = np.searchsorted(edges, wavelength_nm, "right") - 1
-        seconds = np.array([self.rules.durations[k].duration_s for k in index])
-        return seconds[at], np.array(index)[at]
-
-
-@lru_cache(maxsize=4)
-def compiled_rules(data: Path) -> dict[str, CompiledRules]:
-    """Every rule set under a data folder, compiled once. Raises TableError."""
-    return {key: CompiledRules(rules) for key, rules in load_all(data).items()}

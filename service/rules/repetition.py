@@ -6,7 +6,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from service.rules.factors import Factor
-from service.rules.ruleset import RuleSet
+from service.rules.ruleset import LimitSet
 from service.rules.tables import TableError
 
 __all__ = ["RepetitionFactor"]
@@ -22,7 +22,7 @@ class RepetitionFactor:
     taken, and a train that no row covers refuses to load.
     """
 
-    def __init__(self, rules: RuleSet, factors: dict[str, Factor]) -> None:
+    def __init__(self, rules: LimitSet, factors: dict[str, Factor]) -> None:
         self.rows = rules.repetition
         self.alpha_max = factors[rules.roles["alpha_max"]]
         self.grouping = factors[rules.roles["grouping"]]

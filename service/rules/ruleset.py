@@ -22,10 +22,21 @@ from service.rules.tables import (
     read_toml,
 )
 
-__all__ = ["DEFAULT_RULES", "Coverage", "RuleSet", "StepRule", "load_all", "load_ruleset"]
+__all__ = [
+    "DEFAULT_RULES",
+    "TARGETS",
+    "Coverage",
+    "LimitSet",
+    "RuleSet",
+    "StepRule",
+    "load_all",
+    "load_ruleset",
+]
 
 #: The rule set used where a request names none.
 DEFAULT_RULES = "icnirp-2013"
+#: What a limit protects.
+TARGETS = ("eye", "skin")
 
 ROLES = ("alpha_max", "alpha_min", "field_angle", "grouping", "long_break")
 HEAD = ("document", "family", "id", "standing", "standing_text", "title")
@@ -57,24 +68,25 @@ class StepRule:
     note: str
 
 
-@dataclass(frozen=True, slots=True)
-class RuleSet:
-    """A published set of exposure limits. `digest` is sha256 over its files, in name order."""
+@dataclass(frozen=True, slots=True, kw_only=True)
+class LimitSet:
+    """A published set of limits: rows, factors and how they fit together.
+
+    `digest` is sha256 over its files, in name order.
+    """
 
     id: str
     title: str
     document: str
-    family: str
     standing: str
     standing_text: str
     digest: str
+    path: Path
+    sources: dict[str, Source]
     limits: tuple[LimitRow, ...]
     factors: tuple[FactorRow, ...]
-    apertures: tuple[ApertureRow, ...]
-    durations: tuple[DurationRow, ...]
     repetition: tuple[RepetitionRow, ...]
     additivity: tuple[AdditivityRow, ...]
-    sources: dict[str, Source]
     roles: dict[str, str]
     subtense: StepRule
     field: StepRule
@@ -83,11 +95,19 @@ class RuleSet:
     shared_wavelengths_nm: tuple[float, ...]
     shared_times_s: tuple[float, ...]
     coverage: tuple[Coverage, ...]
-    path: Path
 
     def source_text(self, key: str, locator: str) -> str:
         """Document and place as one line of text."""
         return f"{self.sources[key].short}, {locator}"
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class RuleSet(LimitSet):
+    """A published set of exposure limits, with limiting apertures and conventional durations."""
+
+    family: str
+    apertures: tuple[ApertureRow, ...]
+    durations: tuple[DurationRow, ...]
 
 
 def _digest(paths: list[Path]) -> str:
@@ -146,7 +166,7 @@ def load_ruleset(folder: Path, additivity: Path, sources: dict[str, Source]) -> 
     for key in (texts["document"], subtense.source, field.source):
         if key not in sources:
             raise TableError(path, 1, f"source {key!r} is not in sources.toml")
-    return RuleSet(
+    rules = RuleSet(
         **texts,
         digest=_digest([folder / name for name in TABLES] + [path, additivity]),
         limits=read_rows(folder / "limits.csv", LimitRow, sources),
@@ -166,6 +186,11 @@ def load_ruleset(folder: Path, additivity: Path, sources: dict[str, Source]) -> 
         coverage=coverage,
         path=folder,
     )
+    for name, rows in (("limits.csv", rules.limits), ("apertures.csv", rules.apertures)):
+        for row in rows:
+            if row.target not in TARGETS:
+                raise TableError(folder / name, row.line, f"target is {row.target!r}, not eye or skin")
+    return rules
 
 
 def load_all(data: Path) -> dict[str, RuleSet]:

@@ -70,7 +70,8 @@ class Row:
 class LimitRow(Row):
     """One printed limit: coefficient x t^time_power x factors, at most cap.
 
-    `quantity` H is radiant exposure [J/m2], E irradiance [W/m2]. Bands: wavelength [nm] and time
+    `target` is eye or skin, or a class. `quantity` H is radiant exposure [J/m2], E irradiance [W/m2],
+    Q energy [J], P power [W]; for Q and P the coefficient is in J or W. Bands: wavelength [nm] and time
     [s] from <= x < to; angular subtense [mrad] from < alpha <= to. Blank = unbounded.
     """
 
@@ -170,8 +171,7 @@ R = TypeVar("R", bound=Row)
 
 CHOICES = {
     "known": KNOWN,
-    "target": ("eye", "skin", "*"),
-    "quantity": ("H", "E"),
+    "quantity": ("H", "E", "Q", "P"),
     "effect": ("thermal", "photochemical"),
     "pulse": ("short", "long", "any"),
     "kind": ("default", "choice"),
