@@ -12,6 +12,7 @@ from service.rules.additivity import additivity_classes
 from service.rules.apertures import Apertures
 from service.rules.limits import LimitTable
 from service.rules.ruleset import RuleSet, load_all
+from service.rules.tables import TableError
 
 __all__ = ["CompiledRules", "compiled_rules"]
 
@@ -27,14 +28,26 @@ class CompiledRules(LimitTable):
         self.rules = rules
         self.apertures = Apertures(rules)
         self.additivity = additivity_classes(rules)
+        self._defaults = _default_rows(rules)
+        self._default_edges = np.array([rules.durations[k].wavelength_from_nm for k in self._defaults])
+        self._default_seconds = np.array([rules.durations[k].duration_s for k in self._defaults])
 
     def default_duration(self, wavelength_nm: Floats) -> tuple[Floats, Ints]:
         """Conventional duration [s] for an unintended exposure, and its row's number."""
-        index = [k for k, r in enumerate(self.rules.durations) if r.kind == "default"]
-        edges = np.array([self.rules.durations[k].wavelength_from_nm for k in index])
-        at = np.searchsorted(edges, wavelength_nm, "right") - 1
-        seconds = np.array([self.rules.durations[k].duration_s for k in index])
-        return seconds[at], np.array(index)[at]
+        at = np.searchsorted(self._default_edges, wavelength_nm, "right") - 1
+        return self._default_seconds[at], np.array(self._defaults)[at]
+
+
+def _default_rows(rules: RuleSet) -> list[int]:
+    """Numbers of the default durations in order of wavelength. Raises TableError on a gap."""
+    numbers = [k for k, row in enumerate(rules.durations) if row.kind == "default"]
+    rows = [rules.durations[k] for k in numbers]
+    low = min(row.wavelength_from_nm for row in rules.limits)
+    high = max(row.wavelength_to_nm for row in rules.limits)
+    edges = [low] + [row.wavelength_to_nm for row in rows]
+    if [row.wavelength_from_nm for row in rows] + [high] != edges:
+        raise TableError(rules.path / "durations.csv", 1, "the default durations leave a gap or overlap")
+    return numbers
 
 
 @lru_cache(maxsize=4)

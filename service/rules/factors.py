@@ -21,11 +21,12 @@ class Factor:
 
     Pieces hold for from <= x < to, the last includes its end; outside them the value is 1 (the
     loader makes sure that no limit row uses a factor there). On a boundary in `shared` the smaller
-    of the two neighbours holds (the stricter reading).
+    of the two neighbours holds (the stricter reading), with `upper_ends` the lower band (as printed).
     """
 
-    def __init__(self, rows: list[FactorRow], shared: tuple[float, ...]) -> None:
+    def __init__(self, rows: list[FactorRow], shared: tuple[float, ...], upper_ends: bool = False) -> None:
         self.name = rows[0].factor
+        self._upper_ends = upper_ends
         self.unit = rows[0].unit
         self.variable = rows[0].variable
         self.rows = tuple(rows)
@@ -74,7 +75,7 @@ class Factor:
             on = np.flatnonzero(np.isin(x, self.shared))
             if on.size:
                 left = self._values(np.searchsorted(self.edges, x[on], side="left"), x[on])
-                value[on] = np.minimum(value[on], left)
+                value[on] = left if self._upper_ends else np.minimum(value[on], left)
         return value
 
 
@@ -96,6 +97,10 @@ def compile_factors(rules: LimitSet) -> dict[str, Factor]:
                 raise TableError(path, row.line, f"{row.factor}: band is empty")
     shared = rules.shared_wavelengths_nm
     return {
-        name: Factor(rows, shared if rows[0].variable == "wavelength_nm" else ())
+        name: Factor(
+            rows,
+            shared if rows[0].variable == "wavelength_nm" else (),
+            upper_ends=name == rules.roles["grouping"],
+        )
         for name, rows in groups.items()
     }

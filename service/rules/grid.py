@@ -43,7 +43,7 @@ class Grid:
     def __init__(self, rules: LimitSet, factors: dict[str, Factor]) -> None:
         self._path = rules.path / "limits.csv"
         rows = rules.limits
-        bounds = [
+        self.bounds = bounds = [
             (self._time(r, r.time_from_s, factors, min), self._time(r, r.time_to_s, factors, max))
             for r in rows
         ]
@@ -145,11 +145,15 @@ class Grid:
     ) -> None:
         """Refuse a gap inside the declared coverage, a row outside it and two rows in one band."""
         possible = self._possible()
-        allowed = np.zeros(self._shape[1:], dtype=bool)
-        for cover in (c for c in rules.coverage if c.target == target):
+        covers = [c for c in rules.coverage if c.target == target]
+        blocks = []
+        for cover in covers:
+            if not {*cover.wavelength_nm} <= {*self.wavelengths} or not {*cover.time_s} <= {*self.times}:
+                raise TableError(self._path, 1, f"gap for {target}: no row ends where the coverage does")
             w0, w1 = (_index(self.wavelengths, b) for b in cover.wavelength_nm)
             t0, t1 = (_index(self.times, b) for b in cover.time_s)
             block = (slice(2 * w0 + 1, 2 * w1 + 1), slice(2 * t0 + 1, 2 * t1 + 1))
+            blocks.append(block)
             filled = np.zeros(self._shape[1:], dtype=bool)
             for k, region in regions:
                 if cover.tissue in (None, rows[k].tissue) and cover.effect in (None, rows[k].effect):
@@ -162,7 +166,6 @@ class Grid:
                 raise TableError(
                     self._path, 1, f"gap for {target} {cover.tissue or ''} from {w:g} nm and {t:g} s"
                 )
-            allowed[block] = True
         seen: dict[tuple[str, str], NDArray[np.bool_]] = {}
         for k, region in regions:
             row = rows[k]
@@ -173,6 +176,11 @@ class Grid:
             bands[:, 1::2] = False
             if (taken & bands).any():
                 raise TableError(self._path, row.line, f"row {row.row!r} overlaps an earlier row")
+            own = [c.tissue == row.tissue and c.effect in (None, row.effect) for c in covers]
+            allowed = np.zeros(self._shape[1:], dtype=bool)
+            for cover, block, named in zip(covers, blocks, own, strict=True):
+                if named or (not any(own) and cover.tissue is None):
+                    allowed[block] = True
             if (bands & ~allowed).any():
                 raise TableError(self._path, row.line, f"row {row.row!r} lies outside the coverage")
             taken |= bands

@@ -78,24 +78,39 @@ class LimitTable:
                 name, _, exponent = token.partition("^")
                 if name not in self.factors and name not in special:
                     raise TableError(self._tables.path / "limits.csv", row.line, f"unknown factor {name!r}")
-                key = (name, float(exponent or 1))
+                try:
+                    key = (name, float(exponent or 1))
+                except ValueError:
+                    message = f"the exponent of {token!r} is no number"
+                    raise TableError(self._tables.path / "limits.csv", row.line, message) from None
                 uses.setdefault(key, np.zeros(len(self._tables.limits), dtype=bool))[k] = True
         return [(name, exponent, rows) for (name, exponent), rows in uses.items()]
 
     def _check_factor_bands(self) -> None:
-        """Each wavelength factor must be tabled over the whole band of each row that uses it."""
+        """Every factor must be tabled over the whole band of each row that uses it."""
+        tables = self._tables
+        behind = {
+            tables.subtense.symbol: tables.roles["alpha_max"],
+            tables.field.symbol: tables.roles["field_angle"],
+        }
         for name, _, rows in self.tokens:
-            factor = self.factors.get(name)
-            if factor is None or factor.variable != "wavelength_nm":
-                continue
-            end = factor.rows[-1].to or np.inf
-            for row in (r for r, used in zip(self._tables.limits, rows, strict=True) if used):
-                if row.wavelength_from_nm < factor.rows[0].from_ or row.wavelength_to_nm > end:
-                    raise TableError(
-                        self._tables.path / "limits.csv",
-                        row.line,
-                        f"{name} is not tabled over the whole band",
-                    )
+            factor = self.factors[behind.get(name, name)]
+            low, high = factor.rows[0].from_, factor.rows[-1].to or np.inf
+            for k in np.flatnonzero(rows):
+                row = tables.limits[k]
+                if factor.variable == "wavelength_nm":
+                    band = row.wavelength_from_nm, row.wavelength_to_nm
+                elif factor.variable == "time_s":
+                    band = self.grid.bounds[k]
+                else:
+                    band = row.subtense_from_mrad or 0.0, row.subtense_to_mrad or np.inf
+                if band[0] < low * (1.0 - 1e-9) or band[1] > high * (1.0 + 1e-9):
+                    message = f"{factor.name} is not tabled over the whole band of row {row.row!r}"
+                    raise TableError(tables.path / "limits.csv", row.line, message)
+        for row in tables.limits:
+            if row.coefficient <= 0.0:
+                message = f"coefficient is {row.coefficient:g}, expected a positive number"
+                raise TableError(tables.path / "limits.csv", row.line, message)
 
     def factor(self, role: str) -> Factor:
         """The factor that plays a role of the engine (alpha_min, alpha_max, field_angle, ...)."""

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from itertools import product
+
 import numpy as np
 from numpy.typing import NDArray
 
@@ -18,8 +20,8 @@ Ints = NDArray[np.intp]
 class RepetitionFactor:
     """C_P by pulse length, exposure, subtense and pulse count, as the rows of repetition.csv say.
 
-    Bands are from < x <= to. Exactly one row holds for each train; the first in file order is
-    taken, and a train that no row covers refuses to load.
+    Bands are from < x <= to; the first row in file order that holds is taken. Raises TableError
+    where a row names an unknown bound or a train could find no row.
     """
 
     def __init__(self, rules: LimitSet, factors: dict[str, Factor]) -> None:
@@ -27,10 +29,28 @@ class RepetitionFactor:
         self.alpha_max = factors[rules.roles["alpha_max"]]
         self.grouping = factors[rules.roles["grouping"]]
         self.within_long_break = rules.count_within == "T2"
+        path = rules.path / "repetition.csv"
         for row in self.rows:
             for bound in (row.subtense_from_mrad, row.subtense_to_mrad):
                 if isinstance(bound, str) and bound != rules.roles["alpha_max"]:
-                    raise TableError(rules.path / "repetition.csv", row.line, f"unknown bound {bound!r}")
+                    raise TableError(path, row.line, f"unknown bound {bound!r}")
+        if (self.row(*self._every_band()) < 0).any():
+            raise TableError(path, 1, "the repetition rows leave a gap: some trains find no row")
+
+    def _every_band(self) -> tuple[Floats, ...]:
+        """Trains on and beside every bound: pulse, grouping, exposure [s], subtense [mrad], count."""
+        rows = self.rows
+
+        def beside(bounds: list[float | str | None], least: float) -> list[float]:
+            numbers = sorted({b for b in bounds if isinstance(b, float)})
+            return [least, *numbers, *(b * 1.001 for b in numbers)]
+
+        exposures = beside([b for r in rows for b in (r.exposure_from_s, r.exposure_to_s)], 1e-9)
+        subtenses = beside([b for r in rows for b in (r.subtense_from_mrad, r.subtense_to_mrad)], 1.5)
+        counts = beside([b for r in rows for b in (r.count_from, r.count_to)], 1.0)
+        pulses = [1e-12, 1e-4, 1e-3, 1.0]
+        trains = np.array(list(product(pulses, [1e-5], exposures, [*subtenses, 50.0], counts)))
+        return tuple(trains.T)
 
     def grouping_s(self, wavelength_nm: Floats) -> Floats:
         """Time within which pulses count as one [s]; 0 where the table gives none."""

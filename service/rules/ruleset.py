@@ -38,6 +38,7 @@ DEFAULT_RULES = "icnirp-2013"
 #: What a limit protects.
 TARGETS = ("eye", "skin")
 
+SHARED = ("known", "locator", "source", "time_s", "wavelength_nm")
 ROLES = ("alpha_max", "alpha_min", "field_angle", "grouping", "long_break")
 HEAD = ("document", "family", "id", "standing", "standing_text", "title")
 TABLES = ("apertures.csv", "durations.csv", "factors.csv", "limits.csv", "repetition.csv")
@@ -129,6 +130,19 @@ def _step(path: Path, entry: dict[str, Any]) -> StepRule:
     return step
 
 
+def _keys(path: Path, name: str, table: dict[str, Any], wanted: tuple[str, ...]) -> None:
+    if sorted(table) != sorted(wanted):
+        raise TableError(path, 1, f"{name} has the keys {sorted(table)}, expected {sorted(wanted)}")
+
+
+def _coverage(path: Path, entry: dict[str, Any]) -> Coverage:
+    cover = {"tissue": None, "effect": None, **entry}
+    _keys(path, "coverage", cover, ("effect", "target", "time_s", "tissue", "wavelength_nm"))
+    (w0, w1), (t0, t1) = cover["wavelength_nm"], cover["time_s"]
+    bands = (float(w0), float(w1)), (float(t0), float(t1))
+    return Coverage(cover["target"], cover["tissue"], cover["effect"], *bands)
+
+
 def _take(path: Path, table: dict[str, Any], key: str, kind: type) -> Any:
     if not isinstance(table.get(key), kind):
         raise TableError(path, 1, f"{key} is missing or not a {kind.__name__}")
@@ -144,24 +158,17 @@ def load_ruleset(folder: Path, additivity: Path, sources: dict[str, Source]) -> 
     repetition = _take(path, head, "repetition", dict)
     subtense = _step(path, _take(path, head, "subtense", dict))
     field = _step(path, _take(path, head, "field", dict))
-    coverage = tuple(
-        Coverage(
-            entry["target"],
-            entry.get("tissue"),
-            entry.get("effect"),
-            (float(entry["wavelength_nm"][0]), float(entry["wavelength_nm"][1])),
-            (float(entry["time_s"][0]), float(entry["time_s"][1])),
-        )
-        for entry in _take(path, head, "coverage", list)
-    )
-    shared = head.pop("shared_boundaries", {})
+    coverage = tuple(_coverage(path, entry) for entry in _take(path, head, "coverage", list))
+    shared = head.pop("shared_boundaries", dict.fromkeys(SHARED, ()))
+    _keys(path, "shared_boundaries", shared, SHARED)
     if head:
         raise TableError(path, 1, f"unknown keys {sorted(head)}")
     if texts["id"] != folder.name:
         raise TableError(path, 1, f"id {texts['id']!r} differs from the folder's name")
     if sorted(roles) != sorted(ROLES):
         raise TableError(path, 1, f"roles are {sorted(roles)}, expected {sorted(ROLES)}")
-    if repetition.get("count_within") not in ("T2", "exposure"):
+    _keys(path, "repetition", repetition, ("count_within", "symbol"))
+    if repetition["count_within"] not in ("T2", "exposure"):
         raise TableError(path, 1, "repetition.count_within is neither T2 nor exposure")
     for key in (texts["document"], subtense.source, field.source):
         if key not in sources:
@@ -181,8 +188,8 @@ def load_ruleset(folder: Path, additivity: Path, sources: dict[str, Source]) -> 
         field=field,
         repetition_symbol=repetition["symbol"],
         count_within=repetition["count_within"],
-        shared_wavelengths_nm=tuple(map(float, shared.get("wavelength_nm", ()))),
-        shared_times_s=tuple(map(float, shared.get("time_s", ()))),
+        shared_wavelengths_nm=tuple(map(float, shared["wavelength_nm"])),
+        shared_times_s=tuple(map(float, shared["time_s"])),
         coverage=coverage,
         path=folder,
     )
@@ -190,6 +197,9 @@ def load_ruleset(folder: Path, additivity: Path, sources: dict[str, Source]) -> 
         for row in rows:
             if row.target not in TARGETS:
                 raise TableError(folder / name, row.line, f"target is {row.target!r}, not eye or skin")
+    for limit in rules.limits:
+        if limit.quantity not in "HE":
+            raise TableError(folder / "limits.csv", limit.line, f"quantity is {limit.quantity!r}, not H or E")
     return rules
 
 

@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import csv
 import math
+import re
 import tomllib
 from dataclasses import dataclass, fields
 from pathlib import Path
@@ -33,6 +34,8 @@ __all__ = [
 Bound = float | str
 
 KNOWN = ("read", "memory")
+NUMBER = re.compile(r"[+-]?(\d+\.?\d*|\.\d+)([eE][+-]?\d+)?")
+NAME = re.compile(r"[A-Za-z]\w*")
 
 
 class TableError(ValueError):
@@ -195,12 +198,11 @@ def _cell(text: str, kind: Any, name: str) -> Any:
         if optional:
             return None
         raise ValueError(f"{name} is empty, expected a number")
-    try:
-        value = float(text)
-    except ValueError:
-        if str in getattr(kind, "__args__", ()):
+    if not NUMBER.fullmatch(text):
+        if str in getattr(kind, "__args__", ()) and NAME.fullmatch(text):
             return text
-        raise ValueError(f"{name} is {text!r}, expected a number") from None
+        raise ValueError(f"{name} is {text!r}, expected a number")
+    value = float(text)
     if not math.isfinite(value):
         raise ValueError(f"{name} is {text!r}, expected a finite number")
     return value
