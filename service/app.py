@@ -5,7 +5,6 @@ from __future__ import annotations
 from collections.abc import Awaitable, Callable
 
 from fastapi import FastAPI, Request
-from fastapi.exceptions import RequestValidationError
 from starlette.exceptions import HTTPException
 from starlette.responses import Response
 
@@ -14,7 +13,7 @@ from service.contract.answer import rule_sets
 from service.contract.problem import NotFound, Problem
 from service.settings import Settings
 from service.web import api, health, pages, rules_pages, static
-from service.web.headers import SecurityHeaders
+from service.web.headers import Envelope
 from service.web.openapi import describe
 from service.web.problems import PlainProblem, problem_response
 
@@ -34,7 +33,6 @@ def create_app(settings: Settings | None = None) -> FastAPI:
     app.state.settings = settings or Settings()
     for router in (api.router, health.router, pages.router, rules_pages.router, static.router):
         app.include_router(router)
-    app.add_middleware(SecurityHeaders)
     describe(app)
 
     async def on_problem(request: Request, error: Exception) -> Response:
@@ -48,18 +46,15 @@ def create_app(settings: Settings | None = None) -> FastAPI:
         problem = PlainProblem(error.status_code, str(error.detail))
         return problem_response(request, problem, dict(error.headers or {}))
 
-    async def on_failure(request: Request, error: Exception) -> Response:
-        problem = PlainProblem(
-            500, "The service failed on this request. Nothing was computed; please report it."
-        )
-        return problem_response(request, problem)
+    def on_failure(request: Request) -> Response:
+        detail = "The service failed on this request. Nothing was computed; please report it."
+        return problem_response(request, PlainProblem(500, detail))
 
     handlers: dict[int | type[Exception], Callable[[Request, Exception], Awaitable[Response]]] = {
         Problem: on_problem,
         HTTPException: on_http,
-        RequestValidationError: on_failure,
-        Exception: on_failure,
     }
     for kind, handler in handlers.items():
         app.add_exception_handler(kind, handler)
+    app.add_middleware(Envelope, on_failure=on_failure)
     return app

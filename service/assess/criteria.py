@@ -15,7 +15,7 @@ from numpy.typing import NDArray
 
 from service.assess.lines import CW, TRAIN, Lines
 from service.rules.compiled import CompiledRules
-from service.rules.limits import Conditions
+from service.rules.limits import Conditions, LimitTable
 
 __all__ = ["AVERAGE", "EXPOSURE", "RULES", "SINGLE", "TRAIN_RULE", "Criteria", "Exposures", "exposures"]
 
@@ -49,7 +49,7 @@ class Exposures:
     dose: Floats
 
 
-def exposures(lines: Lines, at: Conditions, rules: CompiledRules) -> Exposures:
+def exposures(lines: Lines, at: Conditions, rules: LimitTable) -> Exposures:
     """Every rule that applies to every line. See the module for the rules."""
     trains = lines.mode == TRAIN
     each = np.where(trains, 3, 1)
@@ -77,7 +77,7 @@ def exposures(lines: Lines, at: Conditions, rules: CompiledRules) -> Exposures:
 
 
 def _add_trains(
-    found: Exposures, lines: Lines, at: Conditions, rules: CompiledRules, which: Ints, first: Ints
+    found: Exposures, lines: Lines, at: Conditions, rules: LimitTable, which: Ints, first: Ints
 ) -> None:
     """Fill in the `average` and `train` exposures, which follow each train's `single` one."""
     pulse, rate, exposure = lines.pulse_s[which], lines.rate_hz[which], lines.exposure_s[which]

@@ -36,7 +36,8 @@ def falling_root(excess: Callable[[Ints, Floats], Floats], low: Floats, high: Fl
     low, high = low.copy(), high.copy()
     _close_open_ends(excess, low, high)
     root = high.copy()
-    todo = np.flatnonzero(np.isfinite(high) & (high - low > CLOSED * high))
+    with np.errstate(invalid="ignore"):
+        todo = np.flatnonzero(np.isfinite(high) & (high - low > CLOSED * high))
     if not todo.size:
         return root
     b, a = low[todo], high[todo]

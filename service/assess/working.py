@@ -7,6 +7,7 @@ from collections.abc import Iterator
 import numpy as np
 
 from service.assess.evaluate import Evaluation
+from service.assess.lines import TRAIN
 from service.assess.steps import Step, factor_expression, number
 from service.assess.working_target import target_steps
 from service.rules.factors import Factor
@@ -41,7 +42,8 @@ def _line_steps(evaluation: Evaluation, line: int, local: int, duration: Step) -
     used = {token for token, _, rows in rules.tokens if rows[_rows_of(evaluation, line)].any()}
     for name in (n for n in rules.line_factors if n in used):
         yield _factor_step(evaluation, rules.factors[name], wavelength, float(at.factors[name][line]), local)
-    if at.extended[line]:
+    counts = evaluation.lines.mode[line] == TRAIN and rules.repetition.within_long_break
+    if at.extended[line] or counts:
         yield _factor_step(evaluation, rules.factor("long_break"), alpha, float(at.long_break_s[line]), local)
 
 

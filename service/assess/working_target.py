@@ -96,7 +96,8 @@ class _Criterion:
             form = rule.below if small else rule.beyond if wide else rule.between
             yield self.step(
                 rule.symbol,
-                f"{rule.symbol} = {form}, alpha = {number(alpha[0])} mrad, alpha_max = {number(widest)} mrad",
+                f"{rule.symbol} = {form}, alpha = {number(alpha[0])} mrad, "
+                f"alpha_min = {SMALL_SOURCE_MRAD:g} mrad, alpha_max = {number(widest)} mrad",
                 float(self.rules.subtense_factor(alpha, time)[0]),
                 "1",
                 self.source(rule.source, rule.locator, rule.note),

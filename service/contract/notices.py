@@ -104,8 +104,8 @@ def _beam_notices(path: str, line: Line) -> Iterator[Notice]:
         yield Notice(
             code="zero-divergence",
             field=f"{path}.beam.divergence_mrad",
-            text="No beam has zero divergence. The distance given is the longest that can be; "
-            "enter the divergence of the data sheet or the diffraction limit.",
+            text="No beam has zero divergence. Without spread the distance is the longest that can be, or "
+            "there is none; enter the divergence of the data sheet or the diffraction limit.",
         )
     if max(beam.divergence_mrad) > WIDE_ANGLE_MRAD:
         yield Notice(
@@ -132,7 +132,7 @@ def _beam_notices(path: str, line: Line) -> Iterator[Notice]:
 
 def _result_notices(evaluation: Evaluation, laser: int, members: np.ndarray) -> Iterator[Notice]:
     rules = evaluation.rules.rules
-    told: set[str] = set()
+    told: set[tuple[int, str]] = set()
     for target in TARGETS:
         result = evaluation.target(target)
         if np.isinf(result.far_m[laser]):
@@ -145,15 +145,13 @@ def _result_notices(evaluation: Evaluation, laser: int, members: np.ndarray) -> 
         for k in criteria:
             row = rules.limits[result.criteria.row[k]]
             number = int(evaluation.exposures.c_p_row[result.criteria.exposure[k]])
-            notes = [row.note] + ([evaluation.rules.repetition.rows[number].note] if number >= 0 else [])
-            for note in (n for n in notes if n.startswith("uncertain") and n not in told):
-                told.add(note)
-                line = int(result.criteria.line[k] - members[0])
-                yield Notice(
-                    code="uncertain-value",
-                    field=f"lines.{line}",
-                    text=f"{rules.title}, row {row.row}: {note}.",
-                )
+            rows = [row] if number < 0 else [row, evaluation.rules.repetition.rows[number]]
+            line = int(result.criteria.line[k] - members[0])
+            for uncertain in (r for r in rows if r.note.startswith("uncertain")):
+                if (line, uncertain.note) not in told:
+                    told.add((line, uncertain.note))
+                    text = f"{rules.title}, row {uncertain.row}: {uncertain.note}."
+                    yield Notice(code="uncertain-value", field=f"lines.{line}", text=text)
     yield from _large_area(evaluation, laser)
 
 
@@ -166,11 +164,14 @@ def _large_area(evaluation: Evaluation, laser: int) -> Iterator[Notice]:
     if evaluation.lines.wavelength_nm[line] < 1400.0 or time < 10.0:
         return
     far = float(result.far_m[laser])
+    strength = float(result.criteria.strength[k])
+    if float(result.hazard_ratio[k]) <= 0.1:
+        return
     beams = evaluation.lines.beams.take(np.array([line]))
     x, y = beams.diameters_m(np.array([far if np.isfinite(far) else 0.0]))
     if np.pi / 4.0 * x[0] * y[0] <= LARGE_AREA_M2:
         return
-    reach = beams.reach_m(result.criteria.aperture_m[k : k + 1], 0.1 / result.criteria.strength[k : k + 1])[1]
+    reach = beams.reach_m(result.criteria.aperture_m[k : k + 1], np.array([0.1 / strength]))[1]
     where = f"out to {float(reach[0]):.3g} m" if np.isfinite(reach[0]) else "at any distance"
     yield Notice(
         code="large-skin-area",

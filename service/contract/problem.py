@@ -34,6 +34,8 @@ __all__ = [
 MODES = ("cw", "pulse", "train")
 UNITS = {"nm": "nm", "w": "W", "j": "J", "s": "s", "hz": "Hz", "mm": "mm", "mrad": "mrad", "m": "m"}
 SHOWN = 120
+#: A document lists at most this many errors; the detail counts them all.
+LISTED = 20
 
 
 class FieldError(BaseModel):
@@ -162,6 +164,8 @@ def _allowed(path: list[str]) -> str:
         return ", ".join(MODES)
     if name == "emission":
         return "an object with mode cw, pulse or train"
+    if not name or (path[-1].isdigit() and name == "lines"):
+        return "an object"
     schema = _properties().get(name)
     if schema is None:
         return "no such field"
@@ -218,7 +222,7 @@ def _one_for_both_axes(errors: list[FieldError]) -> list[FieldError]:
 def invalid_request(error: ValidationError) -> InvalidRequest:
     """The problem for a request that failed validation."""
     errors = []
-    for item in error.errors(include_url=False):
+    for item in error.errors(include_url=False)[: 4 * LISTED]:
         kind, path = item["type"], _path(item["loc"])
         if kind in ("union_tag_invalid", "union_tag_not_found"):
             path.append("mode")
@@ -231,6 +235,10 @@ def invalid_request(error: ValidationError) -> InvalidRequest:
             message = "unknown mode"
         elif kind == "extra_forbidden":
             value, message = given, "unknown field"
+        elif kind in ("model_type", "model_attributes_type", "dict_type", "union_tag_not_found"):
+            value, message = given, "not a JSON object"
+        elif kind == "list_type":
+            value, message = given, "not a list"
         elif kind in OUTSIDE:
             value, message = given, "outside the allowed range"
         elif isinstance(given, list | tuple) and name in PAIRS:
@@ -242,14 +250,14 @@ def invalid_request(error: ValidationError) -> InvalidRequest:
             remedy = HINTS.get(name, remedy)
         errors.append(
             FieldError(
-                field=".".join(path) or "body",
+                field=(".".join(path) or "body")[:SHOWN],
                 value=shown(value),
                 allowed="no such field" if kind == "extra_forbidden" else _allowed(path),
                 message=message,
                 remedy=remedy,
             )
         )
-    errors = _one_for_both_axes(errors)
+    errors = _one_for_both_axes(errors)[:LISTED]
     first = errors[0]
-    more = f" ({len(errors) - 1} more)" if len(errors) > 1 else ""
+    more = f" ({error.error_count() - 1} more)" if error.error_count() > 1 else ""
     return InvalidRequest(f"{first.field}: {first.message}{more}", errors)

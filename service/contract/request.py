@@ -5,6 +5,7 @@ from __future__ import annotations
 from typing import Annotated, Any, Literal
 
 from pydantic import (
+    AfterValidator,
     BaseModel,
     BeforeValidator,
     ConfigDict,
@@ -25,6 +26,8 @@ __all__ = [
 
 MAX_LINES = 16
 MAX_LABEL = 200
+#: Smallest divergence other than none [mrad]; no source of light spreads less.
+LEAST_MRAD = 1e-6
 
 
 class Strict(BaseModel):
@@ -54,23 +57,36 @@ def _pair_schema(minimum: dict[str, float], maximum: float) -> WithJsonSchema:
 Wavelength = Annotated[
     float, Field(ge=180, le=1e6, description="Vacuum wavelength in nanometres.", examples=[532])
 ]
-Power = Annotated[float, Field(gt=0, le=1e12, description="Power in watts.", examples=[0.1])]
-Energy = Annotated[float, Field(gt=0, le=1e9, description="Energy of one pulse in joules.", examples=[1e-3])]
+Power = Annotated[float, Field(ge=1e-15, le=1e12, description="Power in watts.", examples=[0.1])]
+Energy = Annotated[
+    float, Field(ge=1e-21, le=1e9, description="Energy of one pulse in joules.", examples=[1e-3])
+]
 PulseDuration = Annotated[
     float, Field(ge=1e-13, le=3e4, description="Pulse duration in seconds.", examples=[1e-8])
 ]
-Rate = Annotated[float, Field(gt=0, le=1e13, description="Pulse repetition rate in hertz.", examples=[1000])]
+Rate = Annotated[
+    float, Field(ge=1e-6, le=1e13, description="Pulse repetition rate in hertz.", examples=[1000])
+]
+
+
+def _not_tiny(value: float) -> float:
+    if 0.0 < value < LEAST_MRAD:
+        raise ValueError(f"an angle below {LEAST_MRAD:g} mrad; use 0 for a beam without spread")
+    return value
+
+
+Angle = Annotated[float, Field(ge=0, le=3141), AfterValidator(_not_tiny)]
 Diameter = Annotated[
-    tuple[Annotated[float, Field(gt=0, le=1e5)], Annotated[float, Field(gt=0, le=1e5)]],
+    tuple[Annotated[float, Field(ge=1e-4, le=1e5)], Annotated[float, Field(ge=1e-4, le=1e5)]],
     BeforeValidator(_pair),
     PlainSerializer(_unpair),
-    _pair_schema({"exclusiveMinimum": 0}, 1e5),
+    _pair_schema({"minimum": 1e-4}, 1e5),
     Field(
         description="Beam diameter at the waist in millimetres; a number, or [x, y] for an elliptical beam."
     ),
 ]
 Divergence = Annotated[
-    tuple[Annotated[float, Field(ge=0, le=3141)], Annotated[float, Field(ge=0, le=3141)]],
+    tuple[Angle, Angle],
     BeforeValidator(_pair),
     PlainSerializer(_unpair),
     _pair_schema({"minimum": 0}, 3141),
@@ -106,6 +122,8 @@ class Train(Strict):
     def _one_of_two(self) -> Train:
         if (self.energy_j is None) == (self.average_power_w is None):
             raise ValueError("give energy_j or average_power_w, one of the two")
+        if not 1e-21 <= self.pulse_energy_j <= 1e9:
+            raise ValueError("average_power_w / rate_hz gives an energy per pulse outside 1e-21 to 1e9 J")
         return self
 
     @property

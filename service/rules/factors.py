@@ -8,7 +8,7 @@ from itertools import pairwise
 import numpy as np
 from numpy.typing import NDArray
 
-from service.rules.ruleset import LimitSet
+from service.rules.limit_set import LimitSet
 from service.rules.tables import FactorRow, TableError
 
 __all__ = ["Factor", "compile_factors"]

@@ -15,7 +15,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from service.rules.factors import Factor
-from service.rules.ruleset import LimitSet
+from service.rules.limit_set import LimitSet
 from service.rules.tables import LimitRow, TableError
 
 __all__ = ["SMALL_SOURCE_MRAD", "Grid"]

@@ -14,8 +14,8 @@ from numpy.typing import NDArray
 
 from service.rules.factors import Factor, compile_factors
 from service.rules.grid import SMALL_SOURCE_MRAD, Grid
+from service.rules.limit_set import LimitSet
 from service.rules.repetition import RepetitionFactor
-from service.rules.ruleset import LimitSet
 from service.rules.tables import TableError
 
 __all__ = ["Conditions", "LimitTable"]
@@ -71,7 +71,9 @@ class LimitTable:
 
     def _tokens(self) -> list[tuple[str, float, NDArray[np.bool_]]]:
         """Every factor used, with its exponent and the rows that use it."""
-        special = (self._tables.subtense.symbol, self._tables.field.symbol)
+        special = [self._tables.subtense.symbol, self._tables.field.symbol]
+        if self._tables.growth is not None:
+            special.append(self._tables.growth.symbol)
         uses: dict[tuple[str, float], NDArray[np.bool_]] = {}
         for k, row in enumerate(self._tables.limits):
             for token in row.factors.split():
@@ -94,6 +96,8 @@ class LimitTable:
             tables.field.symbol: tables.roles["field_angle"],
         }
         for name, _, rows in self.tokens:
+            if tables.growth is not None and name == tables.growth.symbol:
+                continue
             factor = self.factors[behind.get(name, name)]
             low, high = factor.rows[0].from_, factor.rows[-1].to or np.inf
             for k in np.flatnonzero(rows):
@@ -171,6 +175,8 @@ class LimitTable:
             return self.field_factor(at.subtense_mrad[line], time_s)
         if name == self._tables.roles["long_break"]:
             return at.long_break_s[line]
+        if self._tables.growth is not None and name == self._tables.growth.symbol:
+            return self.growth_factor(at.wavelength_nm[line], time_s)
         return self.factors[name](time_s)
 
     def subtense_factor(self, alpha_mrad: Floats, time_s: Floats) -> Floats:
@@ -181,6 +187,16 @@ class LimitTable:
             alpha = alpha_mrad[k]
             value[k] *= np.maximum(1.0, alpha / self.factor("alpha_max")(time_s[k]))
         return value
+
+    def growth_factor(self, wavelength_nm: Floats, time_s: Floats) -> Floats:
+        """The factor of wavelength and time (k2): max(1, min(t, until) x rate)."""
+        growth = self._tables.growth
+        assert growth is not None
+        rate = np.zeros(wavelength_nm.shape)
+        for low, high, origin, per in growth.bands:
+            inside = (wavelength_nm >= low) & (wavelength_nm < high)
+            rate[inside] = (1.0 if origin is None else wavelength_nm[inside] - origin) / per
+        return np.maximum(1.0, np.minimum(time_s, growth.until_s) * rate)
 
     def field_factor(self, alpha_mrad: Floats, time_s: Floats) -> Floats:
         """(alpha / gamma(t))^2 for a source wider than the photochemical field angle, else 1."""

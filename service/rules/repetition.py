@@ -8,7 +8,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from service.rules.factors import Factor
-from service.rules.ruleset import LimitSet
+from service.rules.limit_set import LimitSet
 from service.rules.tables import TableError
 
 __all__ = ["RepetitionFactor"]

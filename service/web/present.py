@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from service.assess.steps import factor_expression, limit_expression
-from service.contract.result import Criterion, EvaluationResult, TargetAnswer
+from service.contract.result import Criterion, EvaluationResult, TargetAnswer, WorkingStep
 from service.rules.ruleset import RuleSet
 from service.rules.tables import FactorRow, LimitRow, RepetitionRow
 from service.web.numbers import plain, shown_down, shown_up
@@ -22,6 +22,7 @@ __all__ = [
     "limit_text",
     "repetition_text",
     "rows_of",
+    "working_value",
 ]
 
 RULE_NAMES = {
@@ -37,6 +38,14 @@ TIMES = ((1.0, "s", 1.0), (1e-3, "ms", 1e3), (1e-6, "µs", 1e6), (1e-9, "ns", 1e
 def exactly(value: float | None) -> str:
     """A number as the JSON answer gives it, for machine-readable attributes."""
     return "" if value is None else repr(value)
+
+
+def working_value(step: WorkingStep) -> str:
+    """The value of a step to six digits, to the safe side: limits and near ends down, the rest up."""
+    if step.value is None:
+        return ""
+    down = step.symbol.startswith("H_MPE") or step.symbol == "z_near"
+    return shown_down(step.value, 6) if down else shown_up(step.value, 6)
 
 
 def duration(seconds: float) -> str:
