@@ -139,7 +139,7 @@ def _per_laser(each: dict[int, Floats], lines: Lines) -> Floats:
 def _choose(lines: Lines, scheme: CompiledScheme, worst: dict[str, dict[str, Floats]]) -> Ints:
     """Number of the first class whose conditions hold; the last class always does."""
     number = np.full(lines.lasers, len(scheme.scheme.classes) - 1, dtype=np.intp)
-    open_ = np.ones(lines.lasers, dtype=bool)
+    open_ = np.all([r <= 1.0 for r in worst[scheme.scheme.ceiling].values()], axis=0)
     for k, rule in enumerate(scheme.scheme.classes[:-1]):
         assert rule.limits is not None
         ratios = worst[rule.limits]

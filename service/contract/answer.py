@@ -11,24 +11,28 @@ import numpy as np
 from service import __version__
 from service.assess.criteria import AVERAGE, EXPOSURE, RULES, TRAIN_RULE
 from service.assess.evaluate import Evaluation, TargetResult, evaluate, optical_density
+from service.assess.lines import CW, TRAIN
+from service.assess.scales import spot_area_m2
 from service.assess.steps import Step
 from service.assess.viewing import ratios_at
 from service.assess.working import working
+from service.contract.classification import hazard_classes
 from service.contract.convert import lines_of
+from service.contract.evaluation import Comparison, EvaluationResult
+from service.contract.measures import measures_for
 from service.contract.notices import notices_of
 from service.contract.problem import FieldError, InvalidRequest
+from service.contract.protection import protection_of
 from service.contract.request import EvaluationRequest
 from service.contract.result import (
     AtDistance,
-    Comparison,
     Criterion,
     Duration,
-    EvaluationResult,
     Provenance,
     RulesInfo,
     SumOfLines,
     TargetAnswer,
-    WorkingStep,
+    step_model,
 )
 from service.files import DATA
 from service.rules.compiled import CompiledRules, compiled_rules
@@ -90,6 +94,7 @@ def _result(request: EvaluationRequest, evaluation: Evaluation, duration_rows: l
     inputs.setdefault("exposure_s", None)
     canonical = json.dumps(inputs, sort_keys=True, separators=(",", ":"), allow_nan=False)
     first = [Step("T", d.basis, d.exposure_s, "s", d.source, d.known, d.line) for d in durations]
+    classes = hazard_classes(evaluation.lines)
     return EvaluationResult(
         rules=RulesInfo(
             id=published.id,
@@ -102,7 +107,12 @@ def _result(request: EvaluationRequest, evaluation: Evaluation, duration_rows: l
         skin=_target(request, evaluation, evaluation.skin),
         inputs=inputs,
         durations=durations,
-        working=[_step(s) for s in working(evaluation, 0, first)],
+        working=[step_model(s) for s in working(evaluation, 0, first)],
+        classification=classes,
+        protection=protection_of(request, evaluation),
+        measures=measures_for(
+            classes[0].hazard_class, evaluation.lines.wavelength_nm.tolist(), _irradiance(evaluation)
+        ),
         notices=notices_of(request, evaluation, 0),
         cautions=CAUTIONS,
         provenance=Provenance(
@@ -130,18 +140,14 @@ def _duration(evaluation: Evaluation, line: int, row: int) -> Duration:
     )
 
 
-def _step(step: Step) -> WorkingStep:
-    return WorkingStep(
-        symbol=step.symbol,
-        text=step.text,
-        value=step.value,
-        unit=step.unit,
-        source=step.source,
-        known=cast(Any, step.known),
-        line=step.line,
-        target=cast(Any, step.target),
-        criterion=step.criterion,
+def _irradiance(evaluation: Evaluation) -> float:
+    """Highest average irradiance of a line at the most hazardous place [W/m2]."""
+    lines, place = evaluation.lines, float(evaluation.eye.place_m[0])
+    power = np.where(
+        lines.mode == CW, lines.emitted, np.where(lines.mode == TRAIN, lines.emitted * lines.rate_hz, 0.0)
     )
+    area = np.array([spot_area_m2(lines, k, place)[0] for k in range(lines.count)])
+    return float((power / area).max())
 
 
 def _finite(x: float) -> float | None:

@@ -12,20 +12,27 @@ from pydantic import (
     Field,
     PlainSerializer,
     WithJsonSchema,
+    field_validator,
     model_validator,
 )
+
+from service.assess.marking import parse_marking
 
 __all__ = [
     "MAX_LINES",
     "Beam",
     "Emission",
     "EvaluationRequest",
+    "Eyewear",
+    "EyewearRange",
     "Line",
     "Viewing",
+    "Window",
 ]
 
 MAX_LINES = 16
 MAX_LABEL = 200
+MAX_PAIRS = 20
 #: Smallest divergence other than none [mrad]; no source of light spreads less.
 LEAST_MRAD = 1e-6
 
@@ -179,6 +186,53 @@ class Viewing(Strict):
     )
 
 
+class EyewearRange(Strict):
+    """What a pair offers in one band: an optical density, a marking, or both."""
+
+    from_nm: Wavelength
+    to_nm: Wavelength
+    optical_density: float | None = Field(None, ge=0, le=20)
+    marking: str | None = Field(
+        None,
+        max_length=MAX_LABEL,
+        description="Marking in the standards' notation: D LB5 + IR LB6, or RB2. A wavelength range in it "
+        "narrows the band.",
+    )
+
+    @model_validator(mode="after")
+    def _says_something(self) -> EyewearRange:
+        if self.to_nm < self.from_nm:
+            raise ValueError("to_nm lies below from_nm")
+        if self.optical_density is None and self.marking is None:
+            raise ValueError("give optical_density, marking, or both")
+        return self
+
+    @field_validator("marking")
+    @classmethod
+    def _readable(cls, value: str | None) -> str | None:
+        if value is not None:
+            parse_marking(value)
+        return value
+
+
+class Eyewear(Strict):
+    """A pair of eyewear."""
+
+    name: str = Field(min_length=1, max_length=MAX_LABEL)
+    ranges: list[EyewearRange] = Field(min_length=1, max_length=20)
+    luminous_transmittance: float | None = Field(
+        None, gt=0, le=1, description="Share of daylight that passes, 0 to 1."
+    )
+
+
+class Window(Strict):
+    """A viewing window, filter, enclosure wall or screen at a distance."""
+
+    name: str = Field(min_length=1, max_length=MAX_LABEL)
+    distance_m: float = Field(ge=0, le=1e9, description="Distance from the last element in metres.")
+    optical_density: float | None = Field(None, ge=0, le=20, description="At every wavelength of the laser.")
+
+
 class EvaluationRequest(Strict):
     """One laser: its lines, the rule set and the exposure."""
 
@@ -223,3 +277,9 @@ class EvaluationRequest(Strict):
         default_factory=list, max_length=0, description="Elements in the beam. Empty: the direct beam."
     )
     viewing: Viewing = Field(default_factory=Viewing)
+    eyewear: list[Eyewear] = Field(
+        default_factory=list, max_length=MAX_PAIRS, description="Pairs to judge against this laser."
+    )
+    windows: list[Window] = Field(
+        default_factory=list, max_length=MAX_PAIRS, description="Windows and screens to judge."
+    )

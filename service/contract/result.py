@@ -1,23 +1,27 @@
-"""The result of contract v1. SI with the unit in the name; null = not applicable."""
+"""Parts of the result of contract v1. SI with the unit in the name; null = not applicable."""
 
 from __future__ import annotations
 
-from typing import Any, Literal
+from dataclasses import fields
+from typing import Literal
 
 from pydantic import BaseModel, ConfigDict, Field
 
+from service.assess.steps import Step
+
 __all__ = [
     "AtDistance",
-    "Comparison",
     "Criterion",
     "Duration",
-    "EvaluationResult",
+    "Known",
+    "Model",
     "Notice",
     "Provenance",
     "RulesInfo",
     "SumOfLines",
     "TargetAnswer",
     "WorkingStep",
+    "step_model",
 ]
 
 Known = Literal["read", "memory", "computed", "entered"]
@@ -119,6 +123,11 @@ class WorkingStep(Model):
     criterion: int | None
 
 
+def step_model(step: Step) -> WorkingStep:
+    """A step of the working as it leaves the service."""
+    return WorkingStep.model_validate({f.name: getattr(step, f.name) for f in fields(step)})
+
+
 class Notice(Model):
     """Something the reader should look at; `field` names the input it is about."""
 
@@ -133,23 +142,3 @@ class Provenance(Model):
     service_version: str
     rules_digest: str
     request_digest: str
-
-
-class EvaluationResult(Model):
-    """The answer to one request."""
-
-    rules: RulesInfo
-    eye: TargetAnswer
-    skin: TargetAnswer
-    inputs: dict[str, Any] = Field(description="The request with every default filled in.")
-    durations: list[Duration]
-    working: list[WorkingStep]
-    notices: list[Notice]
-    cautions: list[str]
-    provenance: Provenance
-
-
-class Comparison(Model):
-    """One request under every rule set, the default rule set first."""
-
-    results: list[EvaluationResult]

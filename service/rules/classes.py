@@ -74,8 +74,13 @@ class ClassRule:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class ClassScheme(LimitSet):
-    """A published scheme of hazard classes; `fallback` gives the limits used where a class has none."""
+    """A published scheme of hazard classes.
 
+    `fallback` gives the limits used where a class has none; no class but the last may exceed the
+    limits named by `ceiling`.
+    """
+
+    ceiling: str
     classes: tuple[ClassRule, ...]
     fallback: dict[str, str]
     measurement: tuple[MeasurementRow, ...]
@@ -107,8 +112,11 @@ def load_scheme(folder: Path, additivity: Path, sources: dict[str, Any]) -> Clas
         band = rule["wavelength_nm"]
         rule["wavelength_nm"] = None if band is None else (float(band[0]), float(band[1]))
         classes.append(ClassRule(**rule))
+    ceiling = take(path, head, "ceiling", dict)
+    check_keys(path, "ceiling", ceiling, ("known", "limits", "locator", "source"))
     scheme = ClassScheme(
         **parts,
+        ceiling=ceiling["limits"],
         classes=tuple(classes),
         fallback=take(path, head, "fallback", dict),
         remarks=tuple(take(path, head, "remarks", list)),
@@ -120,7 +128,8 @@ def load_scheme(folder: Path, additivity: Path, sources: dict[str, Any]) -> Clas
         raise TableError(path, 1, f"unknown keys {sorted(head)}")
     targets = {row.target for row in scheme.limits}
     named = {c for rule in classes for c in (rule.limits, rule.aided_limits) if c} | {
-        *scheme.fallback.values()
+        scheme.ceiling,
+        *scheme.fallback.values(),
     }
     if not named <= targets or not targets <= {row.target for row in scheme.time_bases}:
         raise TableError(path, 1, "a class names limits that have no rows or no time base")

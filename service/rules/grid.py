@@ -198,7 +198,7 @@ class Grid:
             if factor.variable == "wavelength_nm":
                 low = np.r_[self.wavelengths[0], np.repeat(self.wavelengths, 2)[:-1]]
                 high = np.r_[self.wavelengths[0], np.repeat(self.wavelengths, 2)[1:]]
-                least, most = factor(low), factor(np.nextafter(high, 0.0))
+                least, most = factor(low), factor(np.maximum(low, np.nextafter(high, 0.0)))
             else:
                 least, most = factor(np.array([SMALL_SOURCE_MRAD])), factor(np.array([1e3]))
             shape = [1] * possible.ndim

@@ -8,9 +8,9 @@ from fastapi import APIRouter, Depends
 from starlette.responses import Response
 
 from service.contract.answer import answer, compare, rule_sets
+from service.contract.evaluation import Comparison, EvaluationResult
 from service.contract.problem import NotFound
 from service.contract.request import EvaluationRequest
-from service.contract.result import Comparison, EvaluationResult
 from service.contract.rules import RuleSetDocument, RuleSetSummary, rule_set_document, rule_set_summary
 from service.web.body import read_request
 

@@ -14,54 +14,24 @@ from urllib.parse import quote, urlencode
 from pydantic import ValidationError
 
 from service.contract.problem import FieldError, InvalidRequest, Problem, invalid_request
-from service.contract.request import MAX_LINES, EvaluationRequest
-from service.web.numbers import NotANumber, parse_number, plain
-
-__all__ = ["ADDRESS_VERSION", "BadAddress", "Form", "field_name", "label_of"]
-
-ADDRESS_VERSION = "1"
-
-TOP_TEXT = ("label", "rules")
-TOP_NUMBERS = ("exposure_s", "distance_m")
-CHOICES = {"mode": ("cw", "pulse", "train"), "profile": ("gaussian", "tophat"), "level": ("1/e2", "1/e")}
-EMISSION = {
-    "cw": ("power_w",),
-    "pulse": ("energy_j", "pulse_s"),
-    "train": ("energy_j", "average_power_w", "pulse_s", "rate_hz"),
-}
-EMISSION_NUMBERS = ("power_w", "energy_j", "average_power_w", "pulse_s", "rate_hz")
-BEAM_NUMBERS = ("diameter_mm", "diameter_y_mm", "divergence_mrad", "divergence_y_mrad", "waist_m")
-LINE_NUMBERS = ("wavelength_nm", *EMISSION_NUMBERS, *BEAM_NUMBERS, "subtense_mrad")
-LINE_FIELDS = (
-    "wavelength_nm",
-    "mode",
-    *EMISSION_NUMBERS,
-    "profile",
-    *BEAM_NUMBERS[:4],
-    "level",
-    "waist_m",
-    "subtense_mrad",
+from service.contract.request import EvaluationRequest
+from service.web.fields import (
+    ADDRESS_VERSION,
+    BEAM_NUMBERS,
+    CHANGES,
+    CHOICES,
+    EMISSION,
+    EMISSION_NUMBERS,
+    MODE_NAMES,
+    PARTS,
+    TOP_NUMBERS,
+    TOP_TEXT,
+    field_name,
 )
-MODE_NAMES = {"cw": "continuous wave", "pulse": "a single pulse", "train": "a pulse train"}
-CHANGES = {"add": 1, "remove": -1}
-LABELS = {
-    "label": "Name of this laser",
-    "rules": "Rule set",
-    "exposure_s": "Exposure duration",
-    "distance_m": "Viewing distance",
-    "wavelength_nm": "Wavelength",
-    "power_w": "Power",
-    "energy_j": "Energy of one pulse",
-    "average_power_w": "Average power",
-    "pulse_s": "Pulse duration",
-    "rate_hz": "Repetition rate",
-    "diameter_mm": "Waist diameter",
-    "diameter_y_mm": "Diameter, other axis",
-    "divergence_mrad": "Divergence",
-    "divergence_y_mrad": "Divergence, other axis",
-    "waist_m": "Waist position",
-    "subtense_mrad": "Source subtense",
-}
+from service.web.numbers import NotANumber, parse_number, plain
+from service.web.shelf import BadRanges, parse_ranges, shelf
+
+__all__ = ["BadAddress", "Form"]
 
 
 class BadAddress(Problem):
@@ -72,31 +42,42 @@ class BadAddress(Problem):
     status = 400
 
 
-def label_of(name: str, lines: int) -> str:
-    """What the page calls a field, with the number of its line where there are several."""
-    base, _, line = name.rpartition("-")
-    if base in LABELS:
-        return f"{LABELS[base]} (line {line})" if lines > 1 else LABELS[base]
-    return LABELS.get(name, name)
-
-
-def field_name(name: str, line: int) -> str:
-    """Form field of a line, counted from 1."""
-    return f"{name}-{line}"
-
-
-def _refuse(name: str, value: str, allowed: str, message: str, remedy: str) -> BadAddress:
+def _refuse(
+    name: str,
+    value: str,
+    allowed: str,
+    message: str,
+    remedy: str = "Use the form to make a new address.",
+) -> BadAddress:
     error = FieldError(field=name[:100], value=value[:100], allowed=allowed, message=message, remedy=remedy)
     return BadAddress(f"{name[:100]}: {message}", [error])
 
 
+def _known_fields(counts: dict[str, int]) -> set[str]:
+    """Every field of a form with so many lines, pairs and windows."""
+    repeated = {
+        field_name(n, k + 1)
+        for part, (fields, _, _, _) in PARTS.items()
+        for n in fields
+        for k in range(counts[part])
+    }
+    return {*TOP_TEXT, *TOP_NUMBERS} | {f"shelf-{key}" for key in shelf()} | repeated
+
+
 @dataclass(slots=True)
 class Form:
-    """What stands in the form: text by field name, the number of lines, whether only to edit."""
+    """What stands in the form: text by field name, how many of each part, whether only to edit."""
 
     values: dict[str, str] = field(default_factory=dict)
-    lines: int = 1
+    counts: dict[str, int] = field(
+        default_factory=lambda: {part: least for part, (_, _, least, _) in PARTS.items()}
+    )
     edit: bool = False
+
+    @property
+    def lines(self) -> int:
+        """Number of emission lines."""
+        return self.counts["lines"]
 
     @classmethod
     def read(cls, items: Sequence[tuple[str, str]]) -> Form:
@@ -104,13 +85,7 @@ class Form:
         given: dict[str, str] = {}
         for name, value in items:
             if name in given:
-                raise _refuse(
-                    name,
-                    value,
-                    "one value",
-                    "this parameter stands twice",
-                    "Use the form to make a new address.",
-                )
+                raise _refuse(name, value, "one value", "this parameter stands twice")
             given[name] = value.strip()
         version = given.pop("v", "")
         if version != ADDRESS_VERSION:
@@ -121,48 +96,35 @@ class Form:
                 "the address was made for another version of the form",
                 "Enter the values in the form anew; the meaning of a field may have changed.",
             )
-        count = given.pop("lines", "1")
-        if not (count.isascii() and count.isdecimal() and 1 <= int(count[:9]) <= MAX_LINES):
-            raise _refuse(
-                "lines",
-                count,
-                f"1 to {MAX_LINES}",
-                "not a number of lines",
-                "Use the form to make a new address.",
-            )
-        lines = int(count)
+        counts = {}
+        for part, (_, _, least, most) in PARTS.items():
+            text = given.pop(part, str(least))
+            if not (text.isascii() and text.isdecimal() and least <= int(text[:9]) <= most):
+                raise _refuse(part, text, f"{least} to {most}", f"not a number of {part}")
+            counts[part] = int(text)
         edit, change = given.pop("edit", ""), given.pop("change", "")
         if edit not in ("", "1") or change not in ("", *CHANGES):
-            raise _refuse(
-                "edit" if edit else "change",
-                edit or change,
-                "1",
-                "unknown value",
-                "Use the form to make a new address.",
-            )
-        fields = {*TOP_TEXT, *TOP_NUMBERS} | {field_name(n, k + 1) for n in LINE_FIELDS for k in range(lines)}
+            raise _refuse("edit" if edit not in ("", "1") else "change", edit or change, "1", "unknown value")
+        known = _known_fields(counts)
         for name, value in given.items():
-            if name not in fields:
-                raise _refuse(
-                    name,
-                    value,
-                    "a field of the form",
-                    "unknown parameter",
-                    "Use the form to make a new address.",
-                )
-            choices = CHOICES.get(name.rpartition("-")[0])
+            if name not in known:
+                raise _refuse(name, value, "a field of the form", "unknown parameter")
+            choices = ("1",) if name.startswith("shelf-") else CHOICES.get(name.rpartition("-")[0])
             if value and choices and value not in choices:
                 raise _refuse(
                     name, value, ", ".join(choices), "unknown choice", "Choose one of those listed."
                 )
-        form = cls({k: v for k, v in given.items() if v}, lines, bool(edit))
-        return form._changed(CHANGES[change]) if change else form
+        form = cls({k: v for k, v in given.items() if v}, counts, bool(edit))
+        return form._changed(*CHANGES[change]) if change else form
 
-    def _changed(self, by: int) -> Form:
-        """The form with a line more or less, to be edited."""
-        lines = min(max(self.lines + by, 1), MAX_LINES)
-        gone = {field_name(n, self.lines) for n in LINE_FIELDS} if lines < self.lines else set()
-        return Form({k: v for k, v in self.values.items() if k not in gone}, lines, True)
+    def _changed(self, part: str, by: int) -> Form:
+        """The form with one of a part more or less, to be edited."""
+        fields, _, least, most = PARTS[part]
+        count = min(max(self.counts[part] + by, least), most)
+        gone = {field_name(n, self.counts[part]) for n in fields} if count < self.counts[part] else set()
+        return Form(
+            {k: v for k, v in self.values.items() if k not in gone}, {**self.counts, part: count}, True
+        )
 
     def get(self, name: str, default: str = "") -> str:
         """Text of a field."""
@@ -170,15 +132,19 @@ class Form:
 
     def query(self) -> str:
         """The canonical address: version first, one order, no blanks, numbers as short as can be."""
-        names = [*TOP_TEXT, *TOP_NUMBERS]
-        numbers = {*TOP_NUMBERS} | {field_name(n, k + 1) for n in LINE_NUMBERS for k in range(self.lines)}
         items = [("v", ADDRESS_VERSION)]
-        items += [(n, self._canonical(n, n in numbers)) for n in names if n in self.values]
-        items += [("lines", str(self.lines))]
-        for k in range(self.lines):
-            for name in (field_name(n, k + 1) for n in LINE_FIELDS):
-                if name in self.values:
-                    items.append((name, self._canonical(name, name in numbers)))
+        items += [
+            (n, self._canonical(n, n in TOP_NUMBERS)) for n in (*TOP_TEXT, *TOP_NUMBERS) if n in self.values
+        ]
+        for part, (fields, numbers, least, _) in PARTS.items():
+            if part == "lines" or self.counts[part] > least:
+                items.append((part, str(self.counts[part])))
+            for k in range(self.counts[part]):
+                for name in fields:
+                    full = field_name(name, k + 1)
+                    if full in self.values:
+                        items.append((full, self._canonical(full, name in numbers)))
+        items += [(f"shelf-{key}", "1") for key in shelf() if f"shelf-{key}" in self.values]
         if self.edit:
             items.append(("edit", "1"))
         return urlencode(items, quote_via=quote)
@@ -204,6 +170,10 @@ class Form:
             body["exposure_s"] = exposure
         if distance is not None:
             body["viewing"] = {"distance_m": distance}
+        pairs = [self._pair(k + 1, errors) for k in range(self.counts["pairs"])]
+        pairs += [pair for key, pair in shelf().items() if f"shelf-{key}" in self.values]
+        windows = [self._window(k + 1, errors) for k in range(self.counts["windows"])]
+        body |= {name: given for name, given in (("eyewear", pairs), ("windows", windows)) if given}
         unread = {e.field for e in errors}
         try:
             request = EvaluationRequest.model_validate(body)
@@ -266,6 +236,36 @@ class Form:
         }
         return {n: v for n, v in line.items() if v is not None}
 
+    def _pair(self, k: int, errors: list[FieldError]) -> dict[str, Any]:
+        """One typed pair of eyewear."""
+        pair: dict[str, Any] = {"name": self.get(field_name("pair_name", k), f"Pair {k}")}
+        full = field_name("pair_ranges", k)
+        try:
+            pair["ranges"] = parse_ranges(self.get(full))
+        except BadRanges as error:
+            allowed = "ranges, for example 780-1100: OD 7 | D LB6 + IR LB7"
+            remedy = "Write it as the example shows."
+            errors.append(
+                FieldError(
+                    field=full, value=self.get(full)[:100], allowed=allowed, message=str(error), remedy=remedy
+                )
+            )
+        light = self._number(field_name("pair_light_percent", k), errors)
+        return pair if light is None else {**pair, "luminous_transmittance": light / 100.0}
+
+    def _window(self, k: int, errors: list[FieldError]) -> dict[str, Any]:
+        """One typed window."""
+        window: dict[str, Any] = {
+            "name": self.get(field_name("window_name", k), f"Window {k}"),
+            "distance_m": self._number(field_name("window_distance_m", k), errors),
+            "optical_density": self._number(field_name("window_density", k), errors),
+        }
+        return {n: v for n, v in window.items() if v is not None}
+
+
+PAIR_NAMES = {"name": "pair_name", "luminous_transmittance": "pair_light_percent"}
+WINDOW_NAMES = {"name": "window_name", "optical_density": "window_density"}
+
 
 def _as_form_error(error: FieldError) -> FieldError:
     """An error of the request under the name of the form's field."""
@@ -280,6 +280,16 @@ def _as_form_error(error: FieldError) -> FieldError:
         name = field_name(leaf, int(parts[1]) + 1)
     elif parts[0] == "viewing":
         name = parts[-1]
+    elif parts[0] == "eyewear" and len(parts) > 1:
+        leaf = {"name": "pair_name", "luminous_transmittance": "pair_light_percent"}.get(
+            parts[-1], "pair_ranges"
+        )
+        name = field_name(leaf, int(parts[1]) + 1)
+    elif parts[0] == "windows" and len(parts) > 1:
+        leaf = {"name": "window_name", "optical_density": "window_density"}.get(
+            parts[-1], "window_distance_m"
+        )
+        name = field_name(leaf, int(parts[1]) + 1)
     allowed = error.allowed.removesuffix(", or a list of two")
     message = "a value is needed here" if error.message == "this field is missing" else error.message
     remedy = "Enter it as the data sheet gives it." if error.remedy == "Add this field." else error.remedy

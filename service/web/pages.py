@@ -12,11 +12,13 @@ from starlette.requests import Request
 from starlette.responses import RedirectResponse, Response
 
 from service.contract.answer import answer, cautions, rule_sets
+from service.contract.evaluation import EvaluationResult
 from service.contract.problem import FieldError, InvalidRequest, NotFound
-from service.contract.result import EvaluationResult
 from service.files import DATA
 from service.rules.tables import read_toml
-from service.web.form import ADDRESS_VERSION, BadAddress, Form, label_of
+from service.web.fields import ADDRESS_VERSION, label_of
+from service.web.form import BadAddress, Form
+from service.web.shelf import shelf
 from service.web.templates import page
 
 __all__ = ["router"]
@@ -74,6 +76,7 @@ def _render(
         cautions=cautions(),
         examples=_examples(),
         address_version=ADDRESS_VERSION,
+        shelf=shelf(),
         label_of=label_of,
         body=json.dumps(body, indent=2) if body else "",
     )

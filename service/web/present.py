@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 from service.assess.steps import factor_expression, limit_expression
-from service.contract.result import Criterion, EvaluationResult, TargetAnswer, WorkingStep
+from service.contract.evaluation import EvaluationResult
+from service.contract.result import Criterion, TargetAnswer, WorkingStep
 from service.rules.ruleset import RuleSet
 from service.rules.tables import FactorRow, LimitRow, RepetitionRow
 from service.web.numbers import plain, shown_down, shown_up
@@ -22,6 +23,7 @@ __all__ = [
     "limit_text",
     "repetition_text",
     "rows_of",
+    "scale",
     "working_value",
 ]
 
@@ -40,11 +42,17 @@ def exactly(value: float | None) -> str:
     return "" if value is None else repr(value)
 
 
+def scale(name: str, number: int) -> str:
+    """A scale number as marked: LB6; none needed; beyond LB10."""
+    top = 5 if name == "RB" else 10
+    return "none" if number == 0 else f"beyond {name}{top}" if number > top else f"{name}{number}"
+
+
 def working_value(step: WorkingStep) -> str:
     """The value of a step to six digits, to the safe side: limits and near ends down, the rest up."""
     if step.value is None:
         return ""
-    down = step.symbol.startswith("H_MPE") or step.symbol == "z_near"
+    down = step.symbol.startswith(("H_MPE", "AEL")) or step.symbol == "z_near"
     return shown_down(step.value, 6) if down else shown_up(step.value, 6)
 
 

@@ -8,8 +8,8 @@ from typing import Any
 import pytest
 
 from service.contract.answer import answer
+from service.contract.evaluation import EvaluationResult
 from service.contract.request import EvaluationRequest
-from service.contract.result import EvaluationResult
 
 # Additivity: BGI 832 Tabelle 1 (the IEC table), read. The ratios of the single lines are taken from
 # single evaluations, so that only the adding is under test here.

@@ -12,8 +12,8 @@ from hypothesis import strategies as st
 from service.assess.evaluate import evaluate
 from service.contract.answer import answer, rule_sets
 from service.contract.convert import lines_of
+from service.contract.evaluation import EvaluationResult
 from service.contract.request import EvaluationRequest, Viewing
-from service.contract.result import EvaluationResult
 from tests.assess.strategies import requests
 
 EXAMPLES = settings(max_examples=100, deadline=None, derandomize=True)

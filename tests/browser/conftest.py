@@ -35,8 +35,9 @@ def address() -> Iterator[str]:
         process.terminate()
 
 
-@pytest.fixture(scope="session")
+@pytest.fixture(scope="module")
 def browser() -> Iterator[Browser]:
+    """A browser for one module: its event loop must not outlive it, other tests run loops of their own."""
     if not CHROMIUM.exists():
         if os.environ.get(REQUIRED):
             pytest.fail(f"{CHROMIUM} is missing")

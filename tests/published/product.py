@@ -9,8 +9,9 @@ import numpy as np
 
 from service.assess.evaluate import optical_density
 from service.contract.answer import answer, rule_set
+from service.contract.evaluation import EvaluationResult
 from service.contract.request import EvaluationRequest
-from service.contract.result import EvaluationResult, TargetAnswer
+from service.contract.result import TargetAnswer
 from service.optics.beams import Beams
 
 __all__ = [

@@ -27,8 +27,8 @@ from __future__ import annotations
 import pytest
 
 from service.contract.answer import answer
+from service.contract.evaluation import EvaluationResult
 from service.contract.request import EvaluationRequest
-from service.contract.result import EvaluationResult
 
 EXAMPLE = {
     "label": "Bench 4 alignment beam",
