@@ -10,7 +10,10 @@ from starlette.responses import Response
 
 from service import __version__
 from service.contract.answer import rule_sets
+from service.contract.classification import schemes
 from service.contract.problem import NotFound, Problem
+from service.files import DATA
+from service.rules.eyewear import eyewear_tables
 from service.settings import Settings
 from service.web import api, health, pages, rules_pages, static
 from service.web.headers import Envelope
@@ -23,6 +26,8 @@ __all__ = ["create_app"]
 def create_app(settings: Settings | None = None) -> FastAPI:
     """The application. Raises TableError where a rule table cannot be used."""
     rule_sets()
+    schemes()
+    eyewear_tables(DATA)
     app = FastAPI(
         title="Blinkline",
         version=__version__,

@@ -204,7 +204,10 @@ def _line(pair: Pair, need: LineNeed) -> LineVerdict:
     transmittance = 10.0**-density if density is not None else 1.0
     missing = []
     modes = []
-    if density is None and need.density > 0.0:
+    aligning = [m.number for m in marks if m.scale == "RB"]
+    if aligning and need.density > 0.0:
+        missing.append(_alignment_text(max(aligning), need.alignment))
+    if density is None and need.density > 0.0 and not aligning:
         missing.append(f"{need.wavelength_nm:g} nm is not covered")
     elif density is not None and density < need.density - 1e-9:
         missing.append(
@@ -234,6 +237,16 @@ def _holds(mark: Mark, coverage: Coverage, wavelength: float) -> bool:
     low = coverage.from_nm if mark.from_nm is None else mark.from_nm
     high = coverage.to_nm if mark.to_nm is None else mark.to_nm
     return low <= wavelength <= high
+
+
+def _alignment_text(marked: int, need: AlignmentNeed | None) -> str:
+    text = f"alignment eyewear RB{marked} only, which lets the beam through"
+    if need is None:
+        return f"{text}; it is not meant for this line"
+    if need.number is None:
+        return f"{text}; the beam is beyond RB5 even for aligning"
+    enough = "enough for aligning" if marked >= need.number else f"aligning asks for RB{need.number}"
+    return f"{text}; {enough}"
 
 
 def _mode_text(scale: ScaleNeed, marked: int | None) -> str:

@@ -87,11 +87,11 @@ def _steps(result: Classification) -> list[Step]:
 
 
 def margin_text(limits: str, ratio: float) -> str:
-    """How far the emission is from the limits: '3R exceeded 4.2 times; 3B holds with 62 % left'."""
+    """How far the emission is from the limits: 'Class 3R exceeded 4.20 times'."""
     if ratio > 1.0:
         times = Context(prec=3, rounding=ROUND_CEILING).create_decimal(Decimal(repr(ratio)))
-        return f"{limits} exceeded {times:f} times"
-    return f"{limits} holds with {np.floor(100.0 * (1.0 - ratio)):.0f} % left"
+        return f"Class {limits} exceeded {times:f} times"
+    return f"Class {limits} holds with {np.floor(100.0 * (1.0 - ratio)):.0f} % left"
 
 
 def _level(result: Classification, target: str) -> ClassLevel:

@@ -7,9 +7,18 @@ from typing import Any
 
 from pydantic import BaseModel, Field
 
+from service.rules.classes import ClassScheme
+from service.rules.limit_set import LimitSet
 from service.rules.ruleset import RuleSet
 
-__all__ = ["RuleSetDocument", "RuleSetSummary", "rule_set_document", "rule_set_summary"]
+__all__ = [
+    "RuleSetDocument",
+    "RuleSetSummary",
+    "SchemeDocument",
+    "rule_set_document",
+    "rule_set_summary",
+    "scheme_document",
+]
 
 
 class RuleSetSummary(BaseModel):
@@ -40,7 +49,7 @@ class RuleSetDocument(RuleSetSummary):
     sources: dict[str, dict[str, Any]]
 
 
-def rule_set_summary(rules: RuleSet) -> RuleSetSummary:
+def rule_set_summary(rules: LimitSet) -> RuleSetSummary:
     """The summary of a rule set."""
     return RuleSetSummary(
         id=rules.id,
@@ -48,6 +57,38 @@ def rule_set_summary(rules: RuleSet) -> RuleSetSummary:
         standing=rules.standing,
         standing_text=rules.standing_text,
         digest=rules.digest,
+    )
+
+
+class SchemeDocument(RuleSetSummary):
+    """A classification scheme with every row."""
+
+    classes: list[dict[str, Any]]
+    ceiling: str
+    fallback: dict[str, str]
+    remarks: list[str]
+    limits: list[dict[str, Any]] = Field(description="As for rule sets; Q and P rows in J and W.")
+    factors: list[dict[str, Any]]
+    growth: dict[str, Any] | None
+    measurement: list[dict[str, Any]]
+    time_bases: list[dict[str, Any]]
+    repetition: list[dict[str, Any]]
+
+
+def scheme_document(scheme: ClassScheme) -> SchemeDocument:
+    """A classification scheme with every row."""
+    return SchemeDocument(
+        **rule_set_summary(scheme).model_dump(),
+        classes=[asdict(rule) for rule in scheme.classes],
+        ceiling=scheme.ceiling,
+        fallback=scheme.fallback,
+        remarks=list(scheme.remarks),
+        limits=_rows(scheme.limits),
+        factors=_rows(scheme.factors),
+        growth=None if scheme.growth is None else asdict(scheme.growth),
+        measurement=_rows(scheme.measurement),
+        time_bases=_rows(scheme.time_bases),
+        repetition=_rows(scheme.repetition),
     )
 
 

@@ -8,10 +8,18 @@ from fastapi import APIRouter, Depends
 from starlette.responses import Response
 
 from service.contract.answer import answer, compare, rule_sets
+from service.contract.classification import schemes
 from service.contract.evaluation import Comparison, EvaluationResult
 from service.contract.problem import NotFound
 from service.contract.request import EvaluationRequest
-from service.contract.rules import RuleSetDocument, RuleSetSummary, rule_set_document, rule_set_summary
+from service.contract.rules import (
+    RuleSetDocument,
+    RuleSetSummary,
+    SchemeDocument,
+    rule_set_document,
+    rule_set_summary,
+    scheme_document,
+)
 from service.web.body import read_request
 
 __all__ = ["router"]
@@ -52,3 +60,18 @@ async def get_rule_set(rules_id: str) -> RuleSetDocument:
     if found is None:
         raise NotFound(f"there is no rule set {rules_id[:100]!r}; there are {', '.join(rule_sets())}")
     return rule_set_document(found.rules)
+
+
+@router.get("/classes", tags=["rules"], summary="The classification schemes")
+async def get_schemes() -> list[RuleSetSummary]:
+    """Id, title, standing and digest of every classification scheme, the default first."""
+    return [rule_set_summary(c.scheme) for c in schemes().values()]
+
+
+@router.get("/classes/{scheme_id}", tags=["rules"], summary="One classification scheme with its rows")
+async def get_scheme(scheme_id: str) -> SchemeDocument:
+    """Every limit, factor, measurement condition and time base of a scheme with its source."""
+    found = schemes().get(scheme_id)
+    if found is None:
+        raise NotFound(f"there is no scheme {scheme_id[:100]!r}; there are {', '.join(schemes())}")
+    return scheme_document(found.scheme)

@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
+from dataclasses import fields
+
 from service.assess.steps import factor_expression, limit_expression
 from service.contract.evaluation import EvaluationResult
 from service.contract.result import Criterion, TargetAnswer, WorkingStep
-from service.rules.ruleset import RuleSet
-from service.rules.tables import FactorRow, LimitRow, RepetitionRow
+from service.rules.limit_set import LimitSet
+from service.rules.tables import FactorRow, LimitRow, RepetitionRow, Row
 from service.web.numbers import plain, shown_down, shown_up
 
 __all__ = [
@@ -24,6 +26,7 @@ __all__ = [
     "repetition_text",
     "rows_of",
     "scale",
+    "targets_of",
     "working_value",
 ]
 
@@ -33,6 +36,7 @@ RULE_NAMES = {
     "average": "average power",
     "train": "pulse train",
 }
+QUANTITY_UNITS = {"H": "J/m²", "E": "W/m²", "Q": "J", "P": "W"}
 KNOWN = {"read": "read", "memory": "from memory", "computed": "computed", "entered": "entered"}
 TIMES = ((1.0, "s", 1.0), (1e-3, "ms", 1e3), (1e-6, "µs", 1e6), (1e-9, "ns", 1e9), (1e-12, "ps", 1e12))
 
@@ -91,7 +95,7 @@ def limit_text(row: LimitRow) -> str:
     """A limit row as printed: H = 18 t^0.75 C_E."""
     expression = limit_expression(row.coefficient, row.time_power, row.factors, "t")
     cap = f", at most {row.cap:g}" if row.cap is not None else ""
-    return f"{row.quantity} = {expression}{cap} {'J/m²' if row.quantity == 'H' else 'W/m²'}"
+    return f"{row.quantity} = {expression}{cap} {QUANTITY_UNITS[row.quantity]}"
 
 
 def factor_text(row: FactorRow) -> str:
@@ -127,20 +131,19 @@ def repetition_text(row: RepetitionRow) -> str:
     return limit_expression(row.coefficient, row.count_power, "", "N") + floor
 
 
-def documents(rules: RuleSet) -> list[str]:
-    """Keys of the documents that the rule set's rows name, in the order of sources.toml."""
-    tables = (
-        rules.limits,
-        rules.factors,
-        rules.apertures,
-        rules.durations,
-        rules.repetition,
-        rules.additivity,
-    )
-    named = {rules.document} | {row.source for table in tables for row in table}
+def documents(rules: LimitSet) -> list[str]:
+    """Keys of the documents that the rows of a set name, in the order of sources.toml."""
+    tables = [getattr(rules, f.name) for f in fields(rules)]
+    rows = [row for table in tables if isinstance(table, tuple) for row in table if isinstance(row, Row)]
+    named = {rules.document} | {row.source for row in rows}
     return [key for key in rules.sources if key in named]
 
 
-def rows_of(rules: RuleSet, target: str) -> list[LimitRow]:
+def targets_of(rules: LimitSet) -> list[str]:
+    """What the limits are for (eye and skin, or classes), in printed order."""
+    return list(dict.fromkeys(row.target for row in rules.limits))
+
+
+def rows_of(rules: LimitSet, target: str) -> list[LimitRow]:
     """Limit rows of one target, in printed order."""
     return [row for row in rules.limits if row.target == target]

@@ -110,6 +110,44 @@ def test_lines_are_added_and_removed(page: Page) -> None:
     expect(page.get_by_role("heading", name="Evaluate a laser")).to_be_visible()
 
 
+def test_goggles_that_cover_two_of_three_lines(page: Page) -> None:
+    """A pumped green head: 808, 1064 and 532 nm in one housing; the page names the open line."""
+    lines = [("808", "2", "5", "20"), ("1064", "0.5", "1", "2"), ("532", "0.2", "1", "2")]
+    for k, (wavelength, power, diameter, divergence) in enumerate(lines, start=1):
+        if k > 1:
+            page.get_by_role("button", name="Add an emission line").click()
+        part = page.get_by_role("group", name=f"Emission line {k}" if k > 1 else "What it emits")
+        part.get_by_label("Wavelength", exact=True).fill(wavelength)
+        part.get_by_label("Power", exact=True).fill(power)
+        part.get_by_label("Waist diameter", exact=True).fill(diameter)
+        part.get_by_label("Divergence, full angle", exact=True).fill(divergence)
+    page.get_by_role("button", name="Add a pair of eyewear").click()
+    fill(page, {"Name of the pair": "Goggles 7", "Ranges": "780-1100: OD 7 | D LB6 + IR LB7"})
+    page.get_by_label("Shelf 2: green and near infrared").check()
+    page.get_by_role("button", name="Evaluate").click()
+    two, three = (
+        page.locator(".pair").filter(has_text="Goggles 7"),
+        page.locator(".pair").filter(has_text="Shelf 2"),
+    )
+    expect(two.get_by_role("heading")).to_have_text("Goggles 7: not sufficient")
+    expect(two).to_contain_text("532 nm (line 3): open.")
+    expect(two).to_contain_text("808 nm (line 1): covered strongly enough.")
+    expect(three.get_by_role("heading")).to_contain_text(": sufficient")
+    expect(page.locator(".pair").first).to_contain_text("Shelf 2")
+    expect(page.locator(".class-name").first).to_have_text("4")
+    assert "1064 nm is not covered" not in two.inner_text()
+
+
+def test_ranges_that_cannot_be_read_lead_back_to_their_field(page: Page) -> None:
+    fill(page, {"Wavelength": "532", "Power": "0.1", **BEAM})
+    page.get_by_role("button", name="Add a pair of eyewear").click()
+    fill(page, {"Ranges": "520-540: D L5"})
+    page.get_by_role("button", name="Evaluate").click()
+    page.get_by_role("alert").get_by_role("link", name="Ranges of the pair 1").click()
+    assert page.evaluate("location.hash") == "#pair_ranges-1"
+    expect(page.get_by_label("Ranges", exact=True)).to_have_attribute("aria-invalid", "true")
+
+
 def test_keyboard_alone(page: Page) -> None:
     """From the first field to the answer with Tab, typing and Enter."""
     page.get_by_label("Wavelength", exact=True).focus()
@@ -144,6 +182,10 @@ def test_pages_are_accessible_and_fit(browser: Browser, address: str, scheme: st
     page.goto("/")
     examples = page.locator(".answer li a").all()
     paths = ["/", *(e.get_attribute("href") for e in examples), "/rules", "/rules/eu-2006-25", "/nowhere"]
+    paths += ["/classes/iec-60825-1-2014", "/classes/us-21cfr1040", f"{paths[1]}&shelf-near-infrared=1"]
+    paths += [
+        f"{paths[2]}&pairs=1&windows=1&pair_ranges-1=500%3A%20RB2&window_distance_m-1=2&window_density-1=3"
+    ]
     paths += ["/evaluate?v=1&lines=1&wavelength_nm-1=1%2C064", "/evaluate?v=9", "/problems/not-found"]
     for path in paths:
         page.goto(path or "/")
