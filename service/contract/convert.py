@@ -40,7 +40,7 @@ def lines_of(requests: Sequence[EvaluationRequest], rules: CompiledRules) -> tup
             laser.append(number)
             mode.append(MODES.index(emission.mode))
             tophat.append(flat)
-            (dx, dy), (px, py) = beam.diameter_mm, beam.divergence_mrad
+            (dx, dy), (px, py) = beam.waist_diameters_mm(), beam.divergence_mrad
             rows.append(
                 (
                     *(line.wavelength_nm, emitted, pulse, rate, chosen, line.subtense_mrad),

@@ -7,7 +7,7 @@ from collections.abc import Iterator
 import numpy as np
 
 from service.assess.evaluate import Evaluation
-from service.contract.request import Cw, EvaluationRequest, Line, Pulse, Train
+from service.contract.request import Beam, Cw, EvaluationRequest, Line, Pulse, Train
 from service.contract.result import Notice
 from service.optics.beams import SQRT2
 from service.rules.ruleset import TARGETS
@@ -90,7 +90,7 @@ def _train_notices(path: str, emission: Train, energy_j: float, exposure_s: floa
 def _beam_notices(path: str, line: Line) -> Iterator[Notice]:
     beam = line.beam
     narrower = 1.0 if beam.profile == "tophat" or beam.level == "1/e2" else SQRT2
-    for diameter, divergence in {*zip(beam.diameter_mm, beam.divergence_mrad, strict=True)}:
+    for diameter, divergence in {*zip(beam.waist_diameters_mm(), beam.divergence_mrad, strict=True)}:
         least = 4e-3 * line.wavelength_nm / (np.pi * diameter * narrower) / narrower
         if 0.0 < divergence < least * (1.0 - 1e-3):
             yield Notice(
@@ -125,9 +125,15 @@ def _beam_notices(path: str, line: Line) -> Iterator[Notice]:
         yield Notice(
             code="waist-downstream",
             field=f"{path}.beam.waist_m",
-            text=f"The diameter is the waist's, {beam.waist_m:g} m downstream of the exit. The beam is most "
-            "hazardous there, not at the exit.",
+            text=f"The waist lies {beam.waist_m:g} m downstream of the exit and is {_across(beam)} mm wide. "
+            "The beam is most hazardous there, not at the exit.",
         )
+
+
+def _across(beam: Beam) -> str:
+    """Diameters at the waist [mm] as text."""
+    x, y = beam.waist_diameters_mm()
+    return f"{x:.4g}" if x == y else f"{x:.4g} x {y:.4g}"
 
 
 def _result_notices(evaluation: Evaluation, laser: int, members: np.ndarray) -> Iterator[Notice]:

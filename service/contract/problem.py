@@ -226,6 +226,8 @@ def invalid_request(error: ValidationError) -> InvalidRequest:
         kind, path = item["type"], _path(item["loc"])
         if kind in ("union_tag_invalid", "union_tag_not_found"):
             path.append("mode")
+        if kind == "value_error" and path[-1:] == ["beam"]:
+            path.append("diameter_mm")
         name = next((p for p in reversed(path) if not p.isdigit()), "")
         given = item["input"]
         if kind in ("missing", "union_tag_not_found"):
@@ -248,6 +250,8 @@ def invalid_request(error: ValidationError) -> InvalidRequest:
         remedy = REMEDIES.get(kind, RANGE_REMEDY if kind in OUTSIDE else "Correct it.")
         if kind not in ("missing", "extra_forbidden", "float_type", "finite_number"):
             remedy = HINTS.get(name, remedy)
+        if kind == "value_error" and name == "diameter_mm":
+            value, remedy = None, "Check diameter, divergence and waist, and where the diameter was measured."
         errors.append(
             FieldError(
                 field=(".".join(path) or "body")[:SHOWN],

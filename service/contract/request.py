@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from typing import Annotated, Any, Literal
 
 from pydantic import (
@@ -35,6 +36,8 @@ MAX_LABEL = 200
 MAX_PAIRS = 20
 #: Smallest divergence other than none [mrad]; no source of light spreads less.
 LEAST_MRAD = 1e-6
+#: Smallest beam diameter [mm].
+LEAST_MM = 1e-4
 
 
 class Strict(BaseModel):
@@ -84,13 +87,11 @@ def _not_tiny(value: float) -> float:
 
 Angle = Annotated[float, Field(ge=0, le=3141), AfterValidator(_not_tiny)]
 Diameter = Annotated[
-    tuple[Annotated[float, Field(ge=1e-4, le=1e5)], Annotated[float, Field(ge=1e-4, le=1e5)]],
+    tuple[Annotated[float, Field(ge=LEAST_MM, le=1e5)], Annotated[float, Field(ge=LEAST_MM, le=1e5)]],
     BeforeValidator(_pair),
     PlainSerializer(_unpair),
-    _pair_schema({"minimum": 1e-4}, 1e5),
-    Field(
-        description="Beam diameter at the waist in millimetres; a number, or [x, y] for an elliptical beam."
-    ),
+    _pair_schema({"minimum": LEAST_MM}, 1e5),
+    Field(description="Beam diameter in millimetres; a number, or [x, y] for an elliptical beam."),
 ]
 Divergence = Annotated[
     tuple[Angle, Angle],
@@ -156,12 +157,31 @@ class Beam(Strict):
     level: Literal["1/e", "1/e2"] = Field(
         "1/e2", description="Level at which diameter and divergence are given: 1/e or 1/e2 of the peak."
     )
+    diameter_at: Literal["waist", "exit"] = Field(
+        "waist", description="Where the diameter is given; without waist_m both are the same place."
+    )
     waist_m: float = Field(
         0.0,
         ge=-1e6,
         le=1e6,
         description="Position of the waist in metres, positive downstream of the exit.",
     )
+
+    def waist_diameters_mm(self) -> tuple[float, float]:
+        """Diameters at the waist [mm]: d0^2 = d^2 - (divergence x waist)^2 where given at the exit."""
+        if self.diameter_at == "waist":
+            return self.diameter_mm
+        axes = zip(self.diameter_mm, self.divergence_mrad, strict=True)
+        x, y = (d * d - (phi * self.waist_m) ** 2 for d, phi in axes)
+        return math.sqrt(max(x, 0.0)), math.sqrt(max(y, 0.0))
+
+    @model_validator(mode="after")
+    def _waist_is_possible(self) -> Beam:
+        if min(self.waist_diameters_mm()) < LEAST_MM:
+            raise ValueError(
+                "the beam is narrower at the exit than the divergence and the way to the waist make it there"
+            )
+        return self
 
 
 class Line(Strict):

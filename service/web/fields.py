@@ -23,7 +23,12 @@ ADDRESS_VERSION = "1"
 
 TOP_TEXT = ("label", "rules")
 TOP_NUMBERS = ("exposure_s", "distance_m")
-CHOICES = {"mode": ("cw", "pulse", "train"), "profile": ("gaussian", "tophat"), "level": ("1/e2", "1/e")}
+CHOICES = {
+    "mode": ("cw", "pulse", "train"),
+    "profile": ("gaussian", "tophat"),
+    "level": ("1/e2", "1/e"),
+    "diameter_at": ("waist", "exit"),
+}
 EMISSION = {
     "cw": ("power_w",),
     "pulse": ("energy_j", "pulse_s"),
@@ -40,6 +45,7 @@ LINE_FIELDS = (
     *BEAM_NUMBERS[:4],
     "level",
     "waist_m",
+    "diameter_at",
     "subtense_mrad",
 )
 MODE_NAMES = {"cw": "continuous wave", "pulse": "a single pulse", "train": "a pulse train"}
@@ -70,7 +76,7 @@ LABELS = {
     "average_power_w": "Average power",
     "pulse_s": "Pulse duration",
     "rate_hz": "Repetition rate",
-    "diameter_mm": "Waist diameter",
+    "diameter_mm": "Beam diameter",
     "diameter_y_mm": "Diameter, other axis",
     "divergence_mrad": "Divergence",
     "divergence_y_mrad": "Divergence, other axis",

@@ -227,6 +227,7 @@ class Form:
             if divergence_y is None or divergence is None
             else [divergence, divergence_y],
             "waist_m": waist,
+            "diameter_at": self.get(field_name("diameter_at", k), "waist"),
         }
         line = {
             "wavelength_nm": self._number(field_name("wavelength_nm", k), errors),

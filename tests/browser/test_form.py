@@ -11,7 +11,7 @@ from axe_playwright_python.sync_playwright import Axe
 from playwright.sync_api import Browser, Page, expect
 
 AXE = Axe()
-BEAM = {"Waist diameter": "2", "Divergence, full angle": "1"}
+BEAM = {"Beam diameter": "2", "Divergence, full angle": "1"}
 
 
 def fill(page: Page, values: dict[str, str]) -> None:
@@ -99,7 +99,7 @@ def test_lines_are_added_and_removed(page: Page) -> None:
     second = page.get_by_role("group", name="Emission line 2")
     second.get_by_label("Wavelength", exact=True).fill("1064")
     second.get_by_label("Power", exact=True).fill("0.5")
-    second.get_by_label("Waist diameter", exact=True).fill("2")
+    second.get_by_label("Beam diameter", exact=True).fill("2")
     second.get_by_label("Divergence, full angle", exact=True).fill("1")
     page.get_by_role("button", name="Evaluate").click()
     expect(page.locator("#criteria-eye tr.sum")).to_contain_text("1 + 2")
@@ -119,7 +119,7 @@ def test_goggles_that_cover_two_of_three_lines(page: Page) -> None:
         part = page.get_by_role("group", name=f"Emission line {k}" if k > 1 else "What it emits")
         part.get_by_label("Wavelength", exact=True).fill(wavelength)
         part.get_by_label("Power", exact=True).fill(power)
-        part.get_by_label("Waist diameter", exact=True).fill(diameter)
+        part.get_by_label("Beam diameter", exact=True).fill(diameter)
         part.get_by_label("Divergence, full angle", exact=True).fill(divergence)
     page.get_by_role("button", name="Add a pair of eyewear").click()
     fill(page, {"Name of the pair": "Goggles 7", "Ranges": "780-1100: OD 7 | D LB6 + IR LB7"})
