@@ -9,16 +9,16 @@ from numpy.typing import NDArray
 
 from service.assess.criteria import TRAIN_RULE, Exposures, exposures
 from service.assess.lines import Lines
-from service.rules.classes import CompiledScheme
+from service.rules.classes import UNAIDED, ClassRule, CompiledScheme
 from service.rules.limits import Conditions
 
-__all__ = ["UNAIDED", "ClassLimits", "Classification", "classify"]
+__all__ = ["HOLDS", "UNAIDED", "ClassLimits", "Classification", "classify"]
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.intp]
 
-#: Name of the condition without optics in the measurement tables.
-UNAIDED = "3"
+#: An emission that equals the limit but for rounding still holds.
+HOLDS = 1.0 + 1e-12
 
 
 @dataclass(slots=True)
@@ -45,14 +45,18 @@ class ClassLimits:
 class Classification:
     """Class of each laser, with what each class's limits say.
 
-    `number` indexes the scheme's classes. `limits` by name of the limits; `ratio[limits][condition]`
+    `lines` have the wavelengths [nm] at which the scheme's tables were read. `number` indexes the
+    scheme's classes. `available[limits]` per laser: a line lies where a class with these limits exists.
+    `limits` by name of the limits; `ratio[limits][condition]`
     per laser: accessible emission over limit, lines added, lines for which these limits do not exist
     judged by the scheme's fallback.
     """
 
     scheme: CompiledScheme
     lines: Lines
+    conditions: Conditions
     number: Ints
+    available: dict[str, NDArray[np.bool_]]
     limits: dict[str, ClassLimits]
     ratio: dict[str, dict[str, Floats]]
 
@@ -62,6 +66,7 @@ def classify(lines: Lines, scheme: CompiledScheme) -> Classification:
 
     Reference: IEC 60825-1:2014 clauses 4.3 and 5 (from memory), 21 CFR 1040.10(c), (d) (from memory).
     """
+    lines = replace(lines, wavelength_nm=scheme.printed(lines.wavelength_nm))
     at = scheme.conditions(lines.wavelength_nm, lines.subtense_mrad)
     kind = scheme.adding.of("eye", lines.wavelength_nm) * 4
     limits: dict[str, ClassLimits] = {}
@@ -88,7 +93,8 @@ def classify(lines: Lines, scheme: CompiledScheme) -> Classification:
                     k: np.where(present, v, instead.get(k, np.zeros(lines.count))) for k, v in each.items()
                 } | {k: np.where(present, 0.0, v) for k, v in instead.items() if k not in each}
             worst[target][condition] = _per_laser(each, lines)
-    return Classification(scheme, lines, _choose(lines, scheme, worst), limits, worst)
+    number = _choose(lines, scheme, worst)
+    return Classification(scheme, lines, at, number, _available(lines, scheme, limits), limits, worst)
 
 
 def _against(
@@ -136,22 +142,42 @@ def _per_laser(each: dict[int, Floats], lines: Lines) -> Floats:
     return worst
 
 
+def _exists(rule: ClassRule, lines: Lines) -> NDArray[np.bool_]:
+    """Whether a line of each laser lies in the wavelengths of a class."""
+    if rule.wavelength_nm is None:
+        return np.ones(lines.lasers, dtype=bool)
+    low, high = rule.wavelength_nm
+    inside = (lines.wavelength_nm >= low) & (lines.wavelength_nm < high)
+    there: NDArray[np.bool_] = np.bincount(lines.laser, inside, lines.lasers) > 0
+    return there
+
+
+def _available(
+    lines: Lines, scheme: CompiledScheme, limits: dict[str, ClassLimits]
+) -> dict[str, NDArray[np.bool_]]:
+    """Whether some class with these limits exists for each laser, and the limits for one of its lines."""
+    found = {}
+    for target, table in limits.items():
+        rules = [rule for rule in scheme.scheme.classes if rule.limits == target]
+        exists = np.any([_exists(rule, lines) for rule in rules], axis=0) if rules else True
+        has_rows = np.bincount(lines.laser[table.line], minlength=lines.lasers) > 0
+        found[target] = has_rows & exists
+    return found
+
+
 def _choose(lines: Lines, scheme: CompiledScheme, worst: dict[str, dict[str, Floats]]) -> Ints:
     """Number of the first class whose conditions hold; the last class always does."""
     number = np.full(lines.lasers, len(scheme.scheme.classes) - 1, dtype=np.intp)
-    open_ = np.all([r <= 1.0 for r in worst[scheme.scheme.ceiling].values()], axis=0)
+    open_ = np.all([r <= HOLDS for r in worst[scheme.scheme.ceiling].values()], axis=0)
     for k, rule in enumerate(scheme.scheme.classes[:-1]):
         assert rule.limits is not None
         ratios = worst[rule.limits]
         if rule.aided_limits is None:
-            holds = np.all([r <= 1.0 for r in ratios.values()], axis=0)
+            holds = np.all([r <= HOLDS for r in ratios.values()], axis=0)
         else:
-            aided = [worst[rule.aided_limits][c] <= 1.0 for c in ratios if c != UNAIDED]
-            holds = np.all([ratios[UNAIDED] <= 1.0, *aided], axis=0)
-        if rule.wavelength_nm is not None:
-            low, high = rule.wavelength_nm
-            inside = (lines.wavelength_nm >= low) & (lines.wavelength_nm < high)
-            holds &= np.bincount(lines.laser, inside, lines.lasers) > 0
+            aided = [worst[rule.aided_limits][c] <= HOLDS for c in ratios if c != UNAIDED]
+            holds = np.all([ratios[UNAIDED] <= HOLDS, *aided], axis=0)
+        holds &= _exists(rule, lines)
         number[open_ & holds] = k
         open_ &= ~holds
     return number

@@ -4,9 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from service.rules.tables import FactorRow
-
-__all__ = ["Step", "factor_expression", "limit_expression", "number"]
+__all__ = ["Step", "limit_expression", "number"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -31,21 +29,6 @@ class Step:
 def number(x: float) -> str:
     """A number for the text of a step: six significant digits."""
     return f"{x:.6g}"
-
-
-def factor_expression(row: FactorRow, x: float | str) -> str:
-    """One piece of a factor as an expression of x (a number or a symbol)."""
-    at = x if isinstance(x, str) else number(x)
-    if row.slope:
-        slope = "" if row.slope == 1 else f"{row.slope:g} x "
-        per = f" / {row.per:g}" if row.per else ""
-        power = f"10^({slope}({at} - {row.origin or 0:g}){per})"
-        text = power if row.coefficient == 1 else f"{row.coefficient:g} x {power}"
-    else:
-        text = f"{row.coefficient:g}"
-    if row.offset:
-        text = f"{row.offset:g} + {text}"
-    return f"{text} x {at}^{row.power:g}" if row.power else text
 
 
 def limit_expression(coefficient: float, power: float, factors: str, x: str) -> str:

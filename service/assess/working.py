@@ -8,7 +8,7 @@ import numpy as np
 
 from service.assess.evaluate import Evaluation
 from service.assess.lines import TRAIN
-from service.assess.steps import Step, factor_expression, number
+from service.assess.steps import Step, number
 from service.assess.working_target import target_steps
 from service.rules.factors import Factor
 from service.rules.grid import SMALL_SOURCE_MRAD
@@ -61,7 +61,7 @@ def _factor_step(evaluation: Evaluation, factor: Factor, x: float, value: float,
     row = factor.rows[int(factor.piece(np.array([x]))[0])]
     return Step(
         factor.name,
-        f"{factor.name} = {factor_expression(row, x)}",
+        f"{factor.name} = {row.expression(x)}",
         value,
         factor.unit,
         evaluation.rules.rules.source_text(row.source, row.locator),

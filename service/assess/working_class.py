@@ -4,10 +4,11 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 
+import numpy as np
+
 from service.assess.classification import Classification
 from service.assess.criteria import AVERAGE, RULES, TRAIN_RULE
 from service.assess.steps import Step, limit_expression, number
-from service.rules.classes import ClassScheme
 from service.rules.tables import Row
 
 __all__ = ["class_steps", "limiting"]
@@ -18,76 +19,114 @@ def limiting(result: Classification, target: str) -> tuple[int, str] | None:
     table = result.limits[target]
     if not len(table.row):
         return None
-    worst = max(
-        ((c, int(r.argmax())) for c, r in table.ratio.items()), key=lambda p: float(table.ratio[p[0]][p[1]])
-    )
-    return worst[1], worst[0]
-
-
-def _source(scheme: ClassScheme, row: Row) -> str:
-    """Document, place and note of a row."""
-    text = scheme.source_text(row.source, row.locator)
-    return f"{text}; {row.note}" if row.note else text
+    condition = max(table.ratio, key=lambda c: float(table.ratio[c].max()))
+    return int(table.ratio[condition].argmax()), condition
 
 
 def class_steps(result: Classification, target: str) -> Iterator[Step]:
-    """Time base, limit, aperture, accessible emission and ratio of the limiting criterion."""
+    """Time base, factors, limit, aperture, accessible emission and ratio of the limiting criterion."""
     where = limiting(result, target)
-    if where is None:
-        return
-    k, condition = where
-    table, scheme, published = result.limits[target], result.scheme, result.scheme.scheme
-    e, line = int(table.exposure[k]), int(table.line[k])
-    row, rule = published.limits[table.row[k]], int(table.exposures.rule[e])
-    time, share = float(table.exposures.time_s[e]), float(table.exposures.share[e])
-    unit = "J/m2" if scheme.per_area[table.row[k]] else "J"
+    if where is not None:
+        yield from _Level(result, target, *where).steps()
+
+
+class _Level:
+    """The limiting criterion `k` of the limits `target` under a measurement condition."""
+
+    def __init__(self, result: Classification, target: str, k: int, condition: str) -> None:
+        self.result, self.target, self.k, self.condition = result, target, k, condition
+        self.scheme, self.published = result.scheme, result.scheme.scheme
+        self.table = result.limits[target]
+        self.found = self.table.exposures
+        self.e, self.line = int(self.table.exposure[k]), int(self.table.line[k])
+        self.row = self.published.limits[self.table.row[k]]
+        self.unit = "J/m2" if self.scheme.per_area[self.table.row[k]] else "J"
 
     def step(
-        symbol: str, text: str, value: float, unit: str, source: str = "", known: str = "computed"
+        self, symbol: str, text: str, value: float, unit: str, row: Row | None = None, known: str = "computed"
     ) -> Step:
-        return Step(symbol, text, value, unit, source, known, line=line)
+        """A step of this level, with the source of a row where it rests on one."""
+        source = "" if row is None else self.published.source_text(row.source, row.locator)
+        if row is not None and row.note:
+            source += f"; {row.note}"
+        return Step(symbol, text, value, unit, source, known if row is None else row.known, line=self.line)
 
-    wavelength = float(result.lines.wavelength_nm[line])
-    for base in published.time_bases:
-        if base.target == target and base.wavelength_from_nm <= wavelength <= base.wavelength_to_nm:
-            source = published.source_text(base.source, base.locator) + (
-                f"; {base.note}" if base.note else ""
+    def steps(self) -> Iterator[Step]:
+        """All steps in order."""
+        target, row, rule = self.target, self.row, int(self.found.rule[self.e])
+        base = self.scheme.time_base_row(target, float(self.result.lines.wavelength_nm[self.line]))
+        yield self.step("T", f"time base of the limits of Class {target}", base.duration_s, "s", base)
+        yield from self._factors()
+        at = number(float(self.found.time_s[self.e]))
+        expression = limit_expression(row.coefficient, row.time_power, row.factors, at)
+        unit = {"P": "W", "E": "W/m2", "Q": "J", "H": "J/m2"}[row.quantity]
+        if row.quantity in "PE":
+            expression = f"({expression}) {unit} x {at} s"
+        if row.cap is not None:
+            expression += f", at most {row.cap:g} {unit}"
+        text = f"Class {target}: limit of row {row.row} at {at} s, rule {RULES[rule]}: {expression}"
+        limit = float(self.table.limit[self.k])
+        yield self.step(f"AEL_{target}", text, limit / float(self.found.share[self.e]), self.unit, row)
+        if rule == AVERAGE:
+            count = number(float(self.found.count[self.e]))
+            yield self.step(
+                f"AEL_{target} per pulse", f"share of one pulse: / {count} pulses", limit, self.unit
             )
-            yield step(
-                "T", f"time base of the limits of Class {target}", base.duration_s, "s", source, base.known
-            )
-            break
-    at = number(time)
-    expression = limit_expression(row.coefficient, row.time_power, row.factors, at)
-    if row.quantity in "PE":
-        expression = f"({expression}) {'W' if row.quantity == 'P' else 'W/m2'} x {at} s"
-    text = f"Class {target}: limit of row {row.row} at {at} s, rule {RULES[rule]}: {expression}"
-    yield step(f"AEL_{target}", text, float(table.limit[k]) / share, unit, _source(published, row), row.known)
-    if rule in (AVERAGE, TRAIN_RULE):
-        count, c_p = float(table.exposures.count[e]), float(table.exposures.c_p[e])
-        text = f"share of one pulse: / {number(count)} pulses"
-        if rule == TRAIN_RULE:
-            factor = f"{published.repetition_symbol} = {number(c_p)}"
-            text = f"one pulse: x {factor} for {number(count)} pulses or groups"
-        yield step(f"AEL_{target} per pulse", text, float(table.limit[k]), unit)
-    measured = published.measurement[int(table.measured[condition][k])]
-    at = number(float(table.exposures.aperture_s[e]))
-    aperture = limit_expression(measured.coefficient_mm, measured.time_power, "", at)
-    yield step(
-        "a",
-        f"condition {measured.condition}: aperture {aperture} mm at {measured.distance_m:g} m from the exit",
-        measured.coefficient_mm * float(table.exposures.aperture_s[e]) ** measured.time_power,
-        "mm",
-        _source(published, measured),
-        measured.known,
-    )
-    emission = float(table.emission[condition][k])
-    dose = number(float(table.exposures.dose[e]))
-    area = " / its area" if unit == "J/m2" else ""
-    text = f"accessible emission: {dose} J x the fraction through the aperture{area}"
-    yield step("AE", text, emission, unit)
-    ratio = float(table.ratio[condition][k])
-    yield step(f"AE / AEL_{target}", f"{number(emission)} / {number(float(table.limit[k]))}", ratio, "1")
-    whole = max(float(r[0]) for r in result.ratio[target].values())
-    if whole != ratio:
-        yield step("sum", f"Class {target}: lines added, or judged by the limits fallen back on", whole, "1")
+        elif rule == TRAIN_RULE:
+            yield from self._train(limit)
+        yield from self._emission(limit)
+
+    def _factors(self) -> Iterator[Step]:
+        """Every factor of the limit with its value."""
+        line = np.array([self.line])
+        time = self.found.time_s[self.e : self.e + 1]
+        for name in dict.fromkeys(token.partition("^")[0] for token in self.row.factors.split()):
+            value = float(self.scheme.value(name, self.result.conditions, line, time)[0])
+            text = self.scheme.factor_text(name, self.result.conditions, self.line, float(time[0]))
+            factor = self.scheme.factors.get(name)
+            unit = "1" if factor is None else factor.unit
+            source = self.scheme.factor_row(name, self.result.conditions, self.line, float(time[0]))
+            if isinstance(source, Row):
+                yield self.step(name, text, value, unit, source)
+            else:
+                place = self.published.source_text(source.source, source.locator)
+                yield Step(name, text, value, unit, place, source.known, line=self.line)
+
+    def _train(self, limit: float) -> Iterator[Step]:
+        count, grouped = float(self.found.count[self.e]), float(self.found.grouped_s[self.e])
+        symbol, shared = self.published.repetition_symbol, ""
+        if grouped:
+            pulses = float(self.result.lines.rate_hz[self.line]) * grouped
+            shared = f" / {number(pulses)} pulses in a group"
+        row = self.scheme.repetition.rows[int(self.found.c_p_row[self.e])]
+        floor = f", at least {row.floor:g}" if row.floor else ""
+        expression = limit_expression(row.coefficient, row.count_power, "", "N")
+        text = f"row {row.row}: {expression}{floor}, at most 1, with N = {number(count)} pulses or groups"
+        yield self.step(symbol, text, float(self.found.c_p[self.e]), "1", row)
+        text = f"one pulse: AEL x {symbol}{shared}"
+        yield self.step(f"AEL_{self.target} per pulse", text, limit, self.unit)
+
+    def _emission(self, limit: float) -> Iterator[Step]:
+        """Aperture, accessible emission, ratio, and the sum where lines add."""
+        table, k = self.table, self.k
+        measured = self.published.measurement[int(table.measured[self.condition][k])]
+        time = float(self.found.aperture_s[self.e])
+        aperture = limit_expression(measured.coefficient_mm, measured.time_power, "", number(time))
+        diameter = measured.coefficient_mm * time**measured.time_power
+        waist = float(self.result.lines.beams.waist_m[self.line])
+        place = max(measured.distance_m, waist)
+        text = f"condition {measured.condition}: aperture {aperture} mm at {number(place)} m from the exit"
+        if waist > measured.distance_m:
+            text += f", the waist, which lies beyond the {measured.distance_m:g} m of the condition"
+        yield self.step("a", text, diameter, "mm", measured)
+        emission, dose = float(table.emission[self.condition][k]), float(self.found.dose[self.e])
+        area = np.pi / 4.0 * (diameter * 1e-3) ** 2 if self.unit == "J/m2" else 1.0
+        inside = number(emission * area / dose)
+        text = f"accessible emission: {number(dose)} J x {inside} (fraction through the aperture)"
+        yield self.step("AE", text + (" / its area" if self.unit == "J/m2" else ""), emission, self.unit)
+        ratio = float(table.ratio[self.condition][k])
+        yield self.step(f"AE / AEL_{self.target}", f"{number(emission)} / {number(limit)}", ratio, "1")
+        whole = max(float(r[0]) for r in self.result.ratio[self.target].values())
+        if whole != ratio:
+            text = f"Class {self.target}: lines added, or judged by the limits fallen back on"
+            yield self.step("sum", text, whole, "1")

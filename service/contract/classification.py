@@ -8,24 +8,29 @@ from typing import Any, cast
 import numpy as np
 from pydantic import Field
 
-from service.assess.classification import Classification, classify
+from service.assess.classification import HOLDS, UNAIDED, Classification, classify
 from service.assess.criteria import EXPOSURE, RULES
 from service.assess.lines import Lines
 from service.assess.steps import Step
 from service.assess.working_class import class_steps, limiting
 from service.contract.result import Known, Model, WorkingStep, step_model
 from service.files import DATA
-from service.rules.classes import CompiledScheme, compiled_schemes
+from service.rules.classes import ClassRule, CompiledScheme, compiled_schemes
 
-__all__ = ["ClassLevel", "HazardClass", "hazard_classes", "schemes"]
+__all__ = ["ClassLevel", "HazardClass", "hazard_classes", "margin_text", "schemes"]
 
 
 class ClassLevel(Model):
     """The limits of one class against the accessible emission: the criterion that comes closest."""
 
     limits: str = Field(description="Name of the limits, as the scheme names the class.")
-    holds: bool
-    ratio: float = Field(description="Accessible emission / limit, lines added, worst condition.")
+    available: bool = Field(description="Whether a class with these limits exists at these wavelengths.")
+    holds: bool = Field(description="The limits are kept under every condition; false where not available.")
+    ratio: float = Field(
+        description="Accessible emission / limit, lines added, worst condition; where the class is not "
+        "available, by the limits it falls back on."
+    )
+    ratios: dict[str, float] = Field(description="The same ratio under each measurement condition by name.")
     margin: str
     condition: str | None = Field(description="Measurement condition of the limiting criterion.")
     line: int | None
@@ -48,6 +53,7 @@ class HazardClass(Model):
     standing_text: str
     digest: str
     hazard_class: str
+    reason: str = Field(description="Which limits, under which conditions, make this the class.")
     levels: list[ClassLevel]
     remarks: list[str]
     working: list[WorkingStep]
@@ -73,6 +79,7 @@ def hazard_classes(lines: Lines) -> list[HazardClass]:
                 standing_text=published.standing_text,
                 digest=published.digest,
                 hazard_class=published.classes[number].name,
+                reason=reason_text(published.classes[number], result),
                 levels=[_level(result, target) for target in result.limits],
                 remarks=list(published.remarks),
                 working=[step_model(s) for s in _steps(result)],
@@ -86,23 +93,70 @@ def _steps(result: Classification) -> list[Step]:
     return [step for target in result.limits for step in class_steps(result, target)]
 
 
-def margin_text(limits: str, ratio: float) -> str:
-    """How far the emission is from the limits: 'Class 3R exceeded 4.20 times'."""
-    if ratio > 1.0:
-        times = Context(prec=3, rounding=ROUND_CEILING).create_decimal(Decimal(repr(ratio)))
-        return f"Class {limits} exceeded {times:f} times"
-    return f"Class {limits} holds with {np.floor(100.0 * (1.0 - ratio)):.0f} % left"
+def _three_digits(value: float) -> str:
+    """Rounded up to three digits; what exceeds them by rounding alone is not rounded up."""
+    decimal = Context(prec=3, rounding=ROUND_CEILING).create_decimal(Decimal(repr(value / HOLDS)))
+    return f"{decimal:f}"
+
+
+def _verdict(ratio: float) -> str:
+    """'exceeded 4.20 times' or 'holds with 60 % left', rounded to the safe side."""
+    if ratio > HOLDS:
+        return f"exceeded {_three_digits(ratio)} times"
+    return f"holds with {max(0.0, np.floor(100.0 * (HOLDS - ratio))):.0f} % left"
+
+
+def margin_text(limits: str, ratios: dict[str, float]) -> str:
+    """How far the emission is from the limits, by measurement condition.
+
+    'Class 3R exceeded 4.20 times'; where the conditions disagree both are told: 'Class 1: naked eye holds
+    with 80 % left, with viewing optics exceeded 6.15 times'.
+    """
+    unaided, worst = ratios[UNAIDED], max(ratios.values())
+    if unaided <= HOLDS < worst:
+        return f"Class {limits}: naked eye {_verdict(unaided)}, with viewing optics {_verdict(worst)}"
+    return f"Class {limits} {_verdict(worst)}"
+
+
+def _ratios(result: Classification, target: str) -> dict[str, float]:
+    return {condition: float(r[0]) for condition, r in result.ratio[target].items()}
+
+
+def reason_text(rule: ClassRule, result: Classification) -> str:
+    """Why the laser is in a class."""
+    if rule.limits is None:
+        ceiling = result.scheme.scheme.ceiling
+        worst = max(_ratios(result, ceiling).values())
+        return (
+            f"the limits of Class {ceiling} are {_verdict(worst)}"
+            if worst > HOLDS
+            else "no other class holds"
+        )
+    ratios = _ratios(result, rule.limits)
+    if rule.aided_limits is None:
+        return f"the limits of Class {rule.limits} hold ({_three_digits(max(ratios.values()))} of the limit)"
+    aided = max(r for condition, r in ratios.items() if condition != UNAIDED)
+    return (
+        f"naked eye within Class {rule.limits} ({_three_digits(ratios[UNAIDED])} of the limit); with viewing "
+        f"optics {_verdict(aided)} but below Class {rule.aided_limits}"
+    )
 
 
 def _level(result: Classification, target: str) -> ClassLevel:
     table = result.limits[target]
-    ratio = max(float(r[0]) for r in result.ratio[target].values())
+    ratios = _ratios(result, target)
+    available = bool(result.available[target][0])
+    places = "this wavelength" if len(set(result.lines.wavelength_nm)) == 1 else "these wavelengths"
     where = limiting(result, target)
     base: dict[str, Any] = {
         "limits": target,
-        "holds": ratio <= 1.0,
-        "ratio": ratio,
-        "margin": margin_text(target, ratio),
+        "available": available,
+        "holds": available and max(ratios.values()) <= HOLDS,
+        "ratio": max(ratios.values()),
+        "ratios": ratios,
+        "margin": margin_text(target, ratios)
+        if available
+        else f"Class {target} is not available at {places}",
     }
     if where is None:
         text = "this class has no limits at these wavelengths; those of the class it falls back on are used"

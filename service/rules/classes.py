@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from functools import lru_cache
 from pathlib import Path
 from typing import Any
@@ -11,93 +10,62 @@ import numpy as np
 from numpy.typing import NDArray
 
 from service.rules.additivity import BandsThatAdd
-from service.rules.limit_set import Growth, LimitSet, check_keys, limit_set_parts, take
+from service.rules.class_checks import check_scheme, check_source, check_texts, growth_bands
+from service.rules.class_scheme import (
+    BAND_ENDS,
+    FIRST_NM,
+    LAST_NM,
+    LAST_S,
+    UNAIDED,
+    ClassRule,
+    ClassScheme,
+    MeasurementRow,
+    TimeBaseRow,
+)
+from service.rules.limit_set import Growth, check_keys, limit_set_parts, numbers_ascend, take
 from service.rules.limits import LimitTable
-from service.rules.tables import Row, TableError, read_rows, read_sources, read_toml
+from service.rules.tables import TableError, read_rows, read_sources, read_toml
 
 __all__ = [
+    "UNAIDED",
     "ClassRule",
     "ClassScheme",
     "CompiledScheme",
     "MeasurementRow",
     "TimeBaseRow",
     "compiled_schemes",
+    "load_scheme",
 ]
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.intp]
 
-LAST_NM, LAST_S = 1e6, 3e4
 DEFAULT_SCHEME = "iec-60825-1-2014"
 TABLES = ("factors.csv", "limits.csv", "measurement.csv", "repetition.csv", "timebases.csv")
 
 
-@dataclass(frozen=True, slots=True)
-class MeasurementRow(Row):
-    """One measurement condition: aperture coefficient_mm x t^time_power [mm] at distance_m."""
-
-    condition: str
-    wavelength_from_nm: float
-    wavelength_to_nm: float
-    time_from_s: float
-    time_to_s: float
-    coefficient_mm: float
-    time_power: float
-    distance_m: float
-
-
-@dataclass(frozen=True, slots=True)
-class TimeBaseRow(Row):
-    """Time base [s] of the limits of one class in a wavelength band."""
-
-    target: str
-    wavelength_from_nm: float
-    wavelength_to_nm: float
-    duration_s: float
-
-
-@dataclass(frozen=True, slots=True)
-class ClassRule:
-    """When a class holds.
-
-    `limits` names the limits that must not be exceeded; under every condition, or, where
-    `aided_limits` is given, under the unaided condition alone while the aided one stays below
-    `aided_limits`. `wavelength_nm`: a line must lie in this band for the class to be available.
-    The last class has no limits.
-    """
-
-    name: str
-    limits: str | None
-    aided_limits: str | None
-    wavelength_nm: tuple[float, float] | None
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class ClassScheme(LimitSet):
-    """A published scheme of hazard classes.
-
-    `fallback` gives the limits used where a class has none; no class but the last may exceed the
-    limits named by `ceiling`.
-    """
-
-    ceiling: str
-    classes: tuple[ClassRule, ...]
-    fallback: dict[str, str]
-    measurement: tuple[MeasurementRow, ...]
-    time_bases: tuple[TimeBaseRow, ...]
-    remarks: tuple[str, ...]
-
-
-def _growth(path: Path, entry: dict[str, Any] | None) -> Growth | None:
+def _growth(path: Path, entry: dict[str, Any] | None, sources: dict[str, Any]) -> Growth | None:
     if entry is None:
         return None
     check_keys(path, "growth", entry, ("band", "known", "locator", "source", "symbol", "until_s"))
-    bands = tuple(
-        (float(b["wavelength_nm"][0]), float(b["wavelength_nm"][1]), b.get("origin"), float(b["per"]))
-        for b in entry["band"]
-    )
+    check_source(path, "growth", entry, sources)
+    check_texts(path, "growth.symbol", [entry["symbol"]])
+    (_, until) = numbers_ascend(path, "0 and growth.until_s", [0, entry["until_s"]])
     texts = {key: entry[key] for key in ("symbol", "source", "locator", "known")}
-    return Growth(until_s=float(entry["until_s"]), bands=bands, **texts)
+    return Growth(until_s=until, bands=growth_bands(path, entry["band"]), **texts)
+
+
+def _class(path: Path, entry: Any) -> ClassRule:
+    if not isinstance(entry, dict):
+        raise TableError(path, 1, f"class {entry!r} is not a table")
+    rule = {"limits": None, "aided_limits": None, "wavelength_nm": None, **entry}
+    check_keys(path, "class", rule, ("aided_limits", "limits", "name", "wavelength_nm"))
+    check_texts(
+        path, "class", (rule["name"], *(rule[k] for k in ("limits", "aided_limits") if rule[k] is not None))
+    )
+    if rule["wavelength_nm"] is not None:
+        rule["wavelength_nm"] = numbers_ascend(path, "class.wavelength_nm", rule["wavelength_nm"])
+    return ClassRule(**rule)
 
 
 def load_scheme(folder: Path, additivity: Path, sources: dict[str, Any]) -> ClassScheme:
@@ -105,36 +73,29 @@ def load_scheme(folder: Path, additivity: Path, sources: dict[str, Any]) -> Clas
     path = folder / "scheme.toml"
     head = read_toml(path)
     parts = limit_set_parts(folder, "scheme.toml", TABLES, head, additivity, sources)
-    classes = []
-    for entry in take(path, head, "class", list):
-        rule = {"limits": None, "aided_limits": None, "wavelength_nm": None, **entry}
-        check_keys(path, "class", rule, ("aided_limits", "limits", "name", "wavelength_nm"))
-        band = rule["wavelength_nm"]
-        rule["wavelength_nm"] = None if band is None else (float(band[0]), float(band[1]))
-        classes.append(ClassRule(**rule))
+    band_ends = take(path, head, "band_ends", str)
+    if band_ends not in BAND_ENDS:
+        raise TableError(path, 1, f"band_ends is {band_ends!r}, expected one of {', '.join(BAND_ENDS)}")
+    classes = tuple(_class(path, entry) for entry in take(path, head, "class", list))
     ceiling = take(path, head, "ceiling", dict)
     check_keys(path, "ceiling", ceiling, ("known", "limits", "locator", "source"))
+    check_source(path, "ceiling", ceiling, sources)
+    fallback, remarks = take(path, head, "fallback", dict), take(path, head, "remarks", list)
+    check_texts(path, "fallback, remarks or ceiling", [*fallback.values(), *remarks, ceiling["limits"]])
     scheme = ClassScheme(
         **parts,
         ceiling=ceiling["limits"],
-        classes=tuple(classes),
-        fallback=take(path, head, "fallback", dict),
-        remarks=tuple(take(path, head, "remarks", list)),
-        growth=_growth(path, head.pop("growth", None)),
+        band_ends=band_ends,
+        classes=classes,
+        fallback=fallback,
+        remarks=tuple(remarks),
+        growth=_growth(path, head.pop("growth", None), sources),
         measurement=read_rows(folder / "measurement.csv", MeasurementRow, sources),
         time_bases=read_rows(folder / "timebases.csv", TimeBaseRow, sources),
     )
     if head:
         raise TableError(path, 1, f"unknown keys {sorted(head)}")
-    targets = {row.target for row in scheme.limits}
-    named = {c for rule in classes for c in (rule.limits, rule.aided_limits) if c} | {
-        scheme.ceiling,
-        *scheme.fallback.values(),
-    }
-    if not named <= targets or not targets <= {row.target for row in scheme.time_bases}:
-        raise TableError(path, 1, "a class names limits that have no rows or no time base")
-    if classes[-1].limits is not None or any(rule.limits is None for rule in classes[:-1]):
-        raise TableError(path, 1, "the last class, and no other, has no limits")
+    check_scheme(scheme)
     return scheme
 
 
@@ -156,8 +117,27 @@ class CompiledScheme(LimitTable):
         self.conditions_named = tuple(dict.fromkeys(row.condition for row in scheme.measurement))
         self.targets = self.grid.targets
 
+    def printed(self, wavelength_nm: Floats) -> Floats:
+        """Wavelengths [nm] at which to read this scheme's tables, for wavelengths of lines [nm].
+
+        All tables are read with the lower end of a band included. Where a scheme prints the upper end
+        as included, a wavelength is read just below itself: exact on every boundary, and elsewhere
+        within one unit in the last place.
+        """
+        if self.scheme.band_ends == "lower":
+            return wavelength_nm
+        return np.maximum(np.nextafter(wavelength_nm, 0.0), FIRST_NM)
+
+    def time_base_row(self, target: str, wavelength_nm: float) -> TimeBaseRow:
+        """The row that `time_base` takes at a wavelength [nm]. Raises LookupError where there is none."""
+        for row in (r for r in self.scheme.time_bases if r.target == target):
+            x = np.array([wavelength_nm])
+            if _within(x, row.wavelength_from_nm, row.wavelength_to_nm, LAST_NM)[0]:
+                return row
+        raise LookupError(f"no time base of {target} at {wavelength_nm} nm")
+
     def time_base(self, target: str, wavelength_nm: Floats) -> Floats:
-        """Time base [s] of a class's limits for each wavelength; NaN where the class has none."""
+        """Time base [s] of a class's limits for each wavelength as printed; NaN where the class has none."""
         seconds = np.full(wavelength_nm.shape, np.nan)
         for row in (r for r in self.scheme.time_bases if r.target == target):
             inside = _within(wavelength_nm, row.wavelength_from_nm, row.wavelength_to_nm, LAST_NM)

@@ -7,9 +7,32 @@ from functools import lru_cache
 from itertools import pairwise
 from pathlib import Path
 
-from service.rules.tables import Row, Source, TableError, read_rows, read_sources
+from service.rules.tables import Row, Source, TableError, digest_of, read_rows, read_sources
 
 __all__ = ["AlignmentRow", "EyewearTables", "ModeRow", "ScaleRow", "UseRow", "eyewear_tables"]
+
+#: Rules of use that the engine reads.
+USED = {
+    "count_window",
+    "count_exponent",
+    "count_rate_above",
+    "count_pulse_below",
+    "group_count",
+    "size_from",
+    "size_to",
+    "size_exponent_glass_first",
+    "en207_test_time",
+    "en208_target_power",
+    "en208_split",
+    "en208_shortest",
+    "en208_pulse_window",
+    "en208_count_exponent",
+    "en208_aperture",
+    "en208_target_energy",
+    "en12254_mean_power",
+    "en12254_pulse_energy",
+    "en12254_test_time",
+}
 
 
 @dataclass(frozen=True, slots=True)
@@ -29,12 +52,16 @@ class ScaleRow(Row):
 
 @dataclass(frozen=True, slots=True)
 class ModeRow(Row):
-    """A test mode by pulse duration [s]: D, I, R or M."""
+    """A test mode by pulse duration [s]: D, I, R or M.
+
+    `upper_end` says whether the longest duration belongs to the mode: "included" or "excluded".
+    """
 
     mode: str
     name: str
     time_from_s: float
     time_to_s: float
+    upper_end: str
 
 
 @dataclass(frozen=True, slots=True)
@@ -63,13 +90,14 @@ class UseRow(Row):
 
 @dataclass(frozen=True, slots=True)
 class EyewearTables:
-    """The tables as read; `use` by row name."""
+    """The tables as read; `use` by row name, `digest` is sha256 over the files, in name order."""
 
     scales: tuple[ScaleRow, ...]
     modes: tuple[ModeRow, ...]
     alignment: tuple[AlignmentRow, ...]
     use: dict[str, UseRow]
     sources: dict[str, Source]
+    digest: str
 
     def source_text(self, row: Row) -> str:
         """Document and place of a row, with its note."""
@@ -90,9 +118,10 @@ class EyewearTables:
 
     def mode(self, duration_s: float) -> str:
         """Test mode of a pulse of this duration."""
-        return next(
-            r.mode for r in self.modes if r.time_from_s <= duration_s < r.time_to_s or r.time_to_s >= 3e4
-        )
+        for row in self.modes:
+            if duration_s < row.time_to_s or (duration_s == row.time_to_s and row.upper_end == "included"):
+                return row.mode
+        return self.modes[-1].mode
 
     def group_time(self, wavelength_nm: float) -> UseRow | None:
         """The time within which pulses count as one; None where the table gives none."""
@@ -115,7 +144,20 @@ def eyewear_tables(data: Path) -> EyewearTables:
         read_rows(folder / "scales_en208.csv", AlignmentRow, sources),
         {row.row: row for row in read_rows(folder / "rules.csv", UseRow, sources)},
         sources,
+        digest_of(sorted(folder.glob("*.csv"))),
     )
+    ends = tables.modes
+    if (
+        any(a.time_to_s != b.time_from_s for a, b in pairwise(ends))
+        or any(r.time_from_s >= r.time_to_s or r.upper_end not in ("included", "excluded") for r in ends)
+        or (ends[0].time_from_s, ends[-1].time_to_s) != (1e-13, 3e4)
+    ):
+        raise TableError(folder / "modes.csv", 1, "the modes, shortest first, do not follow on each other")
+    if any(a.max_power_w >= b.max_power_w or a.scale >= b.scale for a, b in pairwise(tables.alignment)):
+        raise TableError(folder / "scales_en208.csv", 1, "the scale numbers do not ascend")
+    missing = USED - set(tables.use)
+    if missing:
+        raise TableError(folder / "rules.csv", 1, f"rules missing: {sorted(missing)}")
     for mode in tables.modes:
         bands = [(r.wavelength_from_nm, r.wavelength_to_nm) for r in tables.scales if r.mode == mode.mode]
         joined = all(a[1] == b[0] for a, b in pairwise(bands))

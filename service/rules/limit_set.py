@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-import hashlib
+import math
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
@@ -15,10 +15,20 @@ from service.rules.tables import (
     RepetitionRow,
     Source,
     TableError,
+    digest_of,
     read_rows,
 )
 
-__all__ = ["Coverage", "Growth", "LimitSet", "StepRule", "check_keys", "limit_set_parts", "take"]
+__all__ = [
+    "Coverage",
+    "Growth",
+    "LimitSet",
+    "StepRule",
+    "check_keys",
+    "limit_set_parts",
+    "numbers_ascend",
+    "take",
+]
 
 ROLES = ("alpha_max", "alpha_min", "field_angle", "grouping", "long_break")
 HEAD = ("document", "id", "standing", "standing_text", "title")
@@ -100,15 +110,6 @@ class LimitSet:
         return f"{self.sources[key].short}, {locator}"
 
 
-def _digest(paths: list[Path]) -> str:
-    """sha256 over name and content of each file; line ends are normalised."""
-    total = hashlib.sha256()
-    for path in paths:
-        total.update(path.name.encode() + b"\0")
-        total.update(path.read_bytes().replace(b"\r\n", b"\n") + b"\0")
-    return f"sha256:{total.hexdigest()}"
-
-
 def _step(path: Path, entry: dict[str, Any]) -> StepRule:
     try:
         step = StepRule(**{"between": "", **entry})
@@ -125,11 +126,20 @@ def check_keys(path: Path, name: str, table: dict[str, Any], wanted: tuple[str, 
         raise TableError(path, 1, f"{name} has the keys {sorted(table)}, expected {sorted(wanted)}")
 
 
+def numbers_ascend(path: Path, name: str, pair: Any) -> tuple[float, float]:
+    """A pair of ascending finite numbers. Raises TableError on anything else."""
+    numbers = isinstance(pair, list) and all(isinstance(x, int | float) for x in pair)
+    if not numbers or len(pair) != 2 or any(isinstance(x, bool) or not math.isfinite(x) for x in pair):
+        raise TableError(path, 1, f"{name} is {pair!r}, expected two finite numbers")
+    if pair[0] >= pair[1]:
+        raise TableError(path, 1, f"{name} is {pair!r}, expected ascending numbers")
+    return float(pair[0]), float(pair[1])
+
+
 def _coverage(path: Path, entry: dict[str, Any]) -> Coverage:
     cover = {"tissue": None, "effect": None, **entry}
     check_keys(path, "coverage", cover, ("effect", "target", "time_s", "tissue", "wavelength_nm"))
-    (w0, w1), (t0, t1) = cover["wavelength_nm"], cover["time_s"]
-    bands = (float(w0), float(w1)), (float(t0), float(t1))
+    bands = [numbers_ascend(path, f"coverage.{key}", cover[key]) for key in ("wavelength_nm", "time_s")]
     return Coverage(cover["target"], cover["tissue"], cover["effect"], *bands)
 
 
@@ -173,7 +183,7 @@ def limit_set_parts(
             raise TableError(path, 1, f"source {key!r} is not in sources.toml")
     return {
         **texts,
-        "digest": _digest([folder / name for name in tables] + [path, additivity]),
+        "digest": digest_of([folder / name for name in tables] + [path, additivity]),
         "path": folder,
         "sources": sources,
         "limits": read_rows(folder / "limits.csv", LimitRow, sources),

@@ -14,9 +14,9 @@ from numpy.typing import NDArray
 
 from service.rules.factors import Factor, compile_factors
 from service.rules.grid import SMALL_SOURCE_MRAD, Grid
-from service.rules.limit_set import LimitSet
+from service.rules.limit_set import Growth, LimitSet, StepRule
 from service.rules.repetition import RepetitionFactor
-from service.rules.tables import TableError
+from service.rules.tables import FactorRow, Row, TableError
 
 __all__ = ["Conditions", "LimitTable"]
 
@@ -157,7 +157,7 @@ class LimitTable:
             k = np.flatnonzero(rows[row])
             if not k.size:
                 continue
-            value = self._value(name, at, line[k], time_s[k])
+            value = self.value(name, at, line[k], time_s[k])
             limit[k] *= value if exponent == 1.0 else value**exponent
         k = np.flatnonzero(self.capped[row])
         if k.size:
@@ -165,7 +165,7 @@ class LimitTable:
             limit[k] = np.minimum(limit[k], cap)
         return limit
 
-    def _value(self, name: str, at: Conditions, line: Ints, time_s: Floats) -> Floats:
+    def value(self, name: str, at: Conditions, line: Ints, time_s: Floats) -> Floats:
         """One factor for each exposure."""
         if name in at.factors:
             return at.factors[name][line]
@@ -178,6 +178,39 @@ class LimitTable:
         if self._tables.growth is not None and name == self._tables.growth.symbol:
             return self.growth_factor(at.wavelength_nm[line], time_s)
         return self.factors[name](time_s)
+
+    def factor_row(self, name: str, at: Conditions, line: int, time_s: float) -> Row | StepRule | Growth:
+        """Where a factor's value for a line at a duration is printed."""
+        tables = self._tables
+        if name == tables.subtense.symbol:
+            return tables.subtense
+        if name == tables.field.symbol:
+            return tables.field
+        if tables.growth is not None and name == tables.growth.symbol:
+            return tables.growth
+        factor = self.factors[name]
+        x = {
+            "wavelength_nm": at.wavelength_nm[line],
+            "subtense_mrad": at.subtense_mrad[line],
+            "time_s": time_s,
+        }
+        return factor.rows[int(factor.piece(np.array([x[factor.variable]]))[0])]
+
+    def factor_text(self, name: str, at: Conditions, line: int, time_s: float) -> str:
+        """A factor's value for a line at a duration as an expression."""
+        row = self.factor_row(name, at, line, time_s)
+        alpha = float(at.subtense_mrad[line])
+        if isinstance(row, Growth):
+            return f"{name} = max(1, min(t, {row.until_s:g} s) x rate) with the rate of the wavelength"
+        if isinstance(row, StepRule):
+            widest = self.factor("alpha_max" if row is self._tables.subtense else "field_angle")
+            edge = float(widest(np.array([time_s]))[0])
+            form = row.beyond if alpha > edge else row.between or row.below
+            form = row.below if alpha <= SMALL_SOURCE_MRAD else form
+            return f"{name} = {form}, alpha = {alpha:.6g} mrad, {widest.name} = {edge:.6g} mrad"
+        assert isinstance(row, FactorRow)
+        x = {"wavelength_nm": at.wavelength_nm[line], "subtense_mrad": alpha, "time_s": time_s}
+        return f"{name} = {row.expression(float(x[row.variable]))}"
 
     def subtense_factor(self, alpha_mrad: Floats, time_s: Floats) -> Floats:
         """C_E (C6): alpha / alpha_min, beyond alpha_max(t) alpha^2 / (alpha_min alpha_max)."""
@@ -194,7 +227,7 @@ class LimitTable:
         assert growth is not None
         rate = np.zeros(wavelength_nm.shape)
         for low, high, origin, per in growth.bands:
-            inside = (wavelength_nm >= low) & (wavelength_nm < high)
+            inside = (wavelength_nm >= low) & (wavelength_nm <= high)
             rate[inside] = (1.0 if origin is None else wavelength_nm[inside] - origin) / per
         return np.maximum(1.0, np.minimum(time_s, growth.until_s) * rate)
 

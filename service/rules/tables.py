@@ -7,6 +7,7 @@ parse, a duplicate row, an unknown source or a row without one. Numbers stay as 
 from __future__ import annotations
 
 import csv
+import hashlib
 import math
 import re
 import tomllib
@@ -25,6 +26,7 @@ __all__ = [
     "Row",
     "Source",
     "TableError",
+    "digest_of",
     "read_rows",
     "read_sources",
     "read_toml",
@@ -109,6 +111,20 @@ class FactorRow(Row):
     origin: float | None
     per: float | None
     power: float | None
+
+    def expression(self, x: float | str) -> str:
+        """The piece as an expression of x (a number or a symbol)."""
+        at = x if isinstance(x, str) else f"{x:.6g}"
+        if self.slope:
+            slope = "" if self.slope == 1 else f"{self.slope:g} x "
+            per = f" / {self.per:g}" if self.per else ""
+            power = f"10^({slope}({at} - {self.origin or 0:g}){per})"
+            text = power if self.coefficient == 1 else f"{self.coefficient:g} x {power}"
+        else:
+            text = f"{self.coefficient:g}"
+        if self.offset:
+            text = f"{self.offset:g} + {text}"
+        return f"{text} x {at}^{self.power:g}" if self.power else text
 
 
 @dataclass(frozen=True, slots=True)
@@ -267,3 +283,12 @@ def read_sources(path: Path) -> dict[str, Source]:
             raise TableError(path, 1, f"[{key}] has {sorted(entry)}, expected {sorted(wanted)}")
         sources[key] = Source(key=key, **entry)
     return sources
+
+
+def digest_of(paths: list[Path]) -> str:
+    """sha256 over name and content of each file; line ends are normalised."""
+    total = hashlib.sha256()
+    for path in paths:
+        total.update(path.name.encode() + b"\0")
+        total.update(path.read_bytes().replace(b"\r\n", b"\n") + b"\0")
+    return f"sha256:{total.hexdigest()}"

@@ -7,10 +7,8 @@ states beside it.
 
 Not used, because the product has no such quantity (yet):
 
-- eyewear scale numbers: DGUV-AR-7, DGUV-CO2-500B, DGUV-YAG-600, EN207-EXP
 - a diffuse reflector: OSHA-CO2-8h-diffuse, OSHA-AR-8h-diffuse, OSHA-AR-0.25s-diffuse,
   OSHA-YAG-8h-diffuse, OSHA-YAG-10s-diffuse
-- class limits that are not a limit times an aperture area: AEL3R (five times class 2)
 - binoculars: BIN-EXIT; diffraction rings: G-AIRY; gain media: R-FSAT, R-ISAT
 
 Not used, because no rule set of the product kept the printed cell:
@@ -50,6 +48,7 @@ UNITS = {
     "mrad": 1e-3,
     "%": 0.01,
     "OD": 1.0,
+    "LB": 1.0,
     "1": 1.0,
 }
 
