@@ -44,6 +44,12 @@ class Lines:
         return len(self.laser)
 
     @property
+    def average_power_w(self) -> Floats:
+        """Average power [W] of each line; 0 for a single pulse."""
+        average = np.where(self.mode == TRAIN, self.emitted * self.rate_hz, 0.0)
+        return np.where(self.mode == CW, self.emitted, average)
+
+    @property
     def lasers(self) -> int:
         """Number of lasers."""
         return int(self.laser[-1]) + 1 if len(self.laser) else 0

@@ -2,14 +2,15 @@
 
 from __future__ import annotations
 
+import math
 import re
 from dataclasses import dataclass
 
 __all__ = ["Mark", "MarkingError", "parse_marking"]
 
-RANGE = re.compile(r">?\s*(\d+(?:[.,]\d+)?)\s*(?:[-–]\s*(\d+(?:[.,]\d+)?))?(?=\s|$)")
-MARK = re.compile(r"([A-Z]+)\s+(LB|AB)\s*(\d+)\s*(Y)?")
-ALIGNMENT = re.compile(r"RB\s*(\d+)")
+RANGE = re.compile(r"(>?)\s*(\d+(?:[.,]\d+)?)\s*(?:[-–]\s*(\d+(?:[.,]\d+)?))?(?=\s|$)", re.ASCII)
+MARK = re.compile(r"([A-Z]+)\s+(LB|AB)\s*(\d+)\s*(Y)?", re.ASCII)
+ALIGNMENT = re.compile(r"RB\s*(\d+)", re.ASCII)
 MODES = "DIRM"
 
 
@@ -21,7 +22,8 @@ class MarkingError(ValueError):
 class Mark:
     """One mark: scale LB, AB or RB, its number, the modes it was tested for and its band [nm].
 
-    `low_rate_untested` is the mark Y; the band is None where the marking names none.
+    `low_rate_untested` is the mark Y; the band is None where the marking names none. A range written
+    with ">" begins just above its first wavelength.
     """
 
     scale: str
@@ -60,13 +62,13 @@ def parse_marking(text: str) -> list[Mark]:
 
 
 def _band(found: re.Match[str]) -> tuple[float, float]:
-    low = float(found[1].replace(",", "."))
-    high = float((found[2] or found[1]).replace(",", "."))
+    low = float(found[2].replace(",", "."))
+    high = float((found[3] or found[2]).replace(",", "."))
     if not 180.0 <= low <= high <= 1e6:
         raise MarkingError(
             f"the range {found[0].strip()} is no range of nanometres from 180 to 1 000 000, low to high"
         )
-    return low, high
+    return (math.nextafter(low, math.inf) if found[1] and found[3] else low), high
 
 
 def _mark(text: str, band: tuple[float, float] | None) -> Mark:

@@ -8,9 +8,11 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from service.assess.evaluate import Evaluation, TargetResult
+from service.assess.criteria import AVERAGE
+from service.assess.evaluate import Evaluation, optical_density
 from service.assess.marking import Mark
-from service.assess.scales import AlignmentNeed, ScaleNeed, alignment_need, scale_needs
+from service.assess.scales import SLACK, AlignmentNeed, ScaleNeed, alignment_need, scale_needs
+from service.assess.viewing import sum_of_lines
 from service.rules.eyewear import EyewearTables
 
 __all__ = [
@@ -26,6 +28,7 @@ __all__ = [
 ]
 
 Floats = NDArray[np.float64]
+Ints = NDArray[np.intp]
 
 #: Below this luminous transmittance a pair asks for more light in the room (common practice, no source).
 DARK = 0.20
@@ -35,22 +38,48 @@ DARK = 0.20
 class LineNeed:
     """What one line asks for at one place [m].
 
-    `ratio` is the line's worst ratio of exposure to limit for the eye, `density` the optical density
-    that brings it to 1; `scales` the EN 207 modes; `alignment` the EN 208 number where it exists.
+    `scales` are the EN 207 modes and `ratios` the worst ratio of exposure to limit among the eye criteria
+    of each; `alignment` is the EN 208 number where it exists.
     """
 
     line: int
     wavelength_nm: float
     distance_m: float
-    ratio: float
-    density: float
     scales: list[ScaleNeed]
+    ratios: list[float]
     alignment: AlignmentNeed | None
 
     @property
+    def ratio(self) -> float:
+        """The line's worst ratio of exposure to limit."""
+        return max(self.ratios)
+
+    @property
+    def densities(self) -> list[float]:
+        """Optical density that brings the ratio of each mode to 1."""
+        found: list[float] = optical_density(np.array(self.ratios)).tolist()
+        return found
+
+    @property
+    def density(self) -> float:
+        """Optical density that brings the line's worst ratio to 1."""
+        return max(self.densities)
+
+    @property
+    def numbers(self) -> list[int]:
+        """Scale number of each mode: by the table and, as transmittance, by the rule set's limits."""
+        pairs = zip(self.scales, self.densities, strict=True)
+        return [max(s.wide, math.ceil(density - SLACK)) for s, density in pairs]
+
+    @property
     def number(self) -> int:
-        """Scale number that meets every mode and, as transmittance, the rule set's limits."""
-        return max([math.ceil(self.density - 1e-9), *(s.wide for s in self.scales)])
+        """Scale number that meets every mode."""
+        return max(self.numbers)
+
+    @property
+    def table_too_weak(self) -> bool:
+        """Whether the scale table asks less of a mode than the rule set's limits need."""
+        return any(n > s.wide for n, s in zip(self.numbers, self.scales, strict=True))
 
 
 @dataclass(frozen=True, slots=True)
@@ -88,16 +117,23 @@ class ModeVerdict:
 
 @dataclass(frozen=True, slots=True)
 class LineVerdict:
-    """One line against one pair: density needed and offered, modes, what is missing."""
+    """One line against one pair: density needed and offered, modes, what is missing.
+
+    `density` is None where a mode is left without any; `passed` is the transmittance for each mode of the
+    need; `resists` says whether a mark shows that
+    the filter withstands the beam, or the beam asks for none.
+    """
 
     line: int
+    wavelength_nm: float
     covered: bool
     density_needed: float
     density: float | None
-    transmittance: float
+    passed: list[float]
     remaining_ratio: float
     modes: list[ModeVerdict]
     missing: list[str]
+    resists: bool
 
     @property
     def enough(self) -> bool:
@@ -107,7 +143,11 @@ class LineVerdict:
 
 @dataclass(frozen=True, slots=True)
 class PairVerdict:
-    """A pair against a laser. `remaining_ratio` adds the lines behind the filter."""
+    """A pair against a laser.
+
+    `remaining_ratio` adds the lines behind the filter, each at its own place of the needs (an upper
+    bound where the waists differ).
+    """
 
     pair: Pair
     lines: list[LineVerdict]
@@ -116,44 +156,76 @@ class PairVerdict:
     alignment_only: bool
 
     @property
-    def sufficient(self) -> bool:
+    def dense_enough(self) -> bool:
         """Whether every line is covered strongly enough and their sum stays within the limit."""
-        return not self.alignment_only and all(v.enough for v in self.lines) and self.remaining_ratio <= 1.0
+        held = self.remaining_ratio <= 1.0 + SLACK
+        return not self.alignment_only and all(v.enough for v in self.lines) and held
 
+    @property
+    def resistance_shown(self) -> bool:
+        """Whether marks show that the pair withstands every line that asks for it."""
+        return all(v.resists for v in self.lines)
 
-def _line_ratios(evaluation: Evaluation, ratio: Floats) -> Floats:
-    """Worst eye ratio of each line."""
-    worst = np.zeros(evaluation.lines.count)
-    np.maximum.at(worst, evaluation.eye.criteria.line, ratio)
-    return worst
+    @property
+    def sufficient(self) -> bool:
+        """Dense enough, and shown to withstand the beam; never for alignment eyewear."""
+        return self.dense_enough and self.resistance_shown
 
 
 def line_needs(
-    evaluation: Evaluation, ratio: Floats, distance_m: float, tables: EyewearTables
+    evaluation: Evaluation, ratio: Floats, place_m: Floats, tables: EyewearTables
 ) -> list[LineNeed]:
-    """Needs of every line of one laser; `ratio` are its eye criteria's ratios at a distance [m]."""
-    lines = evaluation.lines
-    return [
-        LineNeed(
-            line=k,
-            wavelength_nm=float(lines.wavelength_nm[k]),
-            distance_m=distance_m,
-            ratio=float(worst),
-            density=max(0.0, math.log10(worst)) if worst > 0.0 else 0.0,
-            scales=scale_needs(lines, k, distance_m, tables),
-            alignment=alignment_need(lines, k, distance_m, tables),
+    """Needs of every line of one laser; `ratio` are its eye criteria's ratios with each line at `place_m`."""
+    lines, found = evaluation.lines, evaluation.eye.criteria
+    needs = []
+    for k in range(lines.count):
+        place = float(place_m[k])
+        scales = scale_needs(lines, k, place, tables)
+        modes = _mode_of(evaluation, k, scales)
+        own = ratio[found.line == k]
+        needs.append(
+            LineNeed(
+                line=k,
+                wavelength_nm=float(lines.wavelength_nm[k]),
+                distance_m=place,
+                scales=scales,
+                ratios=[float(own[modes == n].max(initial=0.0)) for n in range(len(scales))],
+                alignment=alignment_need(lines, k, place, tables),
+            )
         )
-        for k, worst in enumerate(_line_ratios(evaluation, ratio))
-    ]
+    return needs
+
+
+def _mode_of(evaluation: Evaluation, line: int, scales: list[ScaleNeed]) -> Ints:
+    """For each eye criterion of a line the index of the mode that it belongs to.
+
+    The pulse mode comes first; the criterion of the average power belongs to mode D beside it.
+    """
+    found = evaluation.eye.criteria
+    rule = evaluation.exposures.rule[found.exposure[found.line == line]]
+    return np.where(rule == AVERAGE, len(scales) - 1, 0)
 
 
 def judge(pair: Pair, evaluation: Evaluation, ratio: Floats, needs: list[LineNeed]) -> PairVerdict:
-    """Whether a pair will do against every line, at the place for which `ratio` and `needs` hold."""
+    """Whether a pair will do against every line, at the places for which `ratio` and `needs` hold."""
     verdicts = [_line(pair, need) for need in needs]
-    passed = np.array([v.transmittance for v in verdicts])
-    remaining = _remaining(evaluation, evaluation.eye, ratio, passed)
+    found = evaluation.eye.criteria
+    passed = np.ones(ratio.shape)
+    for need, verdict in zip(needs, verdicts, strict=True):
+        own = np.flatnonzero(found.line == need.line)
+        passed[own] = np.array(verdict.passed)[_mode_of(evaluation, need.line, need.scales)]
+    remaining = sum_of_lines(evaluation, evaluation.eye, ratio * passed)
+    alignment = any(m.scale == "RB" for c in pair.coverages for m in c.marks)
+    warnings = _warnings(pair, verdicts, alignment)
+    if remaining > 1.0 + SLACK and all(v.enough for v in verdicts) and not alignment:
+        warnings.append(
+            "Each line alone is covered, but together they still exceed the limit behind the filter."
+        )
+    return PairVerdict(pair, verdicts, remaining, warnings, alignment)
+
+
+def _warnings(pair: Pair, verdicts: list[LineVerdict], alignment: bool) -> list[str]:
     marks = [m for c in pair.coverages for m in c.marks]
-    alignment = any(m.scale == "RB" for m in marks)
     warnings = []
     if alignment:
         warnings.append(
@@ -167,70 +239,80 @@ def judge(pair: Pair, evaluation: Evaluation, ratio: Floats, needs: list[LineNee
         )
     if any(m.low_rate_untested for m in marks):
         warnings.append("Marked Y: not tested at low repetition rates; check the rate with the maker.")
-    if any(c.density is not None and not c.marks for c in pair.coverages):
+    if any(v.covered and not v.resists and not v.modes for v in verdicts):
         warnings.append(
             "An optical density alone says how much the filter lets through, not whether filter and frame "
-            "withstand the beam."
+            "withstand the beam. Ask the maker for a mark or a damage threshold above the values here."
         )
     if any(m.scale == "AB" for m in marks):
         warnings.append("AB numbers belong to screens, not to eyewear.")
-    if remaining > 1.0 and all(v.enough for v in verdicts) and not alignment:
-        warnings.append(
-            "Each line alone is covered, but together they still exceed the limit behind the filter."
-        )
-    return PairVerdict(pair, verdicts, remaining, warnings, alignment)
+    if any(len(_densities(pair, v.wavelength_nm)) > 1 for v in verdicts):
+        warnings.append("Ranges overlap at a wavelength of this laser: the weaker one counts.")
+    return warnings
 
 
-def _remaining(evaluation: Evaluation, result: TargetResult, ratio: Floats, passed: Floats) -> float:
-    """Worst summed ratio behind a filter with a transmittance per line."""
-    kind = evaluation.rules.additivity[result.criteria.row]
-    worst: dict[tuple[int, int], float] = {}
-    for name, line, value in zip(kind.tolist(), result.criteria.line.tolist(), ratio.tolist(), strict=True):
-        worst[name, line] = max(worst.get((name, line), 0.0), value * float(passed[line]))
-    sums: dict[int, float] = {}
-    for (name, _), value in worst.items():
-        sums[name] = sums.get(name, 0.0) + value
-    return max(sums.values())
+def _holding(pair: Pair, wavelength: float) -> list[Coverage]:
+    return [c for c in pair.coverages if c.from_nm <= wavelength <= c.to_nm]
+
+
+def _densities(pair: Pair, wavelength: float) -> list[float]:
+    return [c.density for c in _holding(pair, wavelength) if c.density is not None]
 
 
 def _line(pair: Pair, need: LineNeed) -> LineVerdict:
-    """One line: the strongest of the coverages that hold its wavelength."""
-    holding = [c for c in pair.coverages if c.from_nm <= need.wavelength_nm <= c.to_nm]
-    marks = [m for c in holding for m in c.marks if _holds(m, c, need.wavelength_nm)]
-    stated = [c.density for c in holding if c.density is not None]
-    # A mark LBn promises a transmittance of at most 10^-n.
-    densities = stated + [float(m.number) for m in marks if m.scale == "LB"]
-    density = max(densities) if densities else None
-    transmittance = 10.0**-density if density is not None else 1.0
-    missing = []
-    modes = []
+    """One line: of several ranges that hold its wavelength the weaker counts."""
+    wavelength = need.wavelength_nm
+    marks = [m for c in _holding(pair, wavelength) for m in c.marks if _holds(m, c, wavelength)]
+    stated = min(_densities(pair, wavelength), default=None)
+    lasting = [m for m in marks if m.scale == "LB"]
     aligning = [m.number for m in marks if m.scale == "RB"]
+    modes, offered, missing = [], [], []
     if aligning and need.density > 0.0:
         missing.append(_alignment_text(max(aligning), need.alignment))
-    if density is None and need.density > 0.0 and not aligning:
-        missing.append(f"{need.wavelength_nm:g} nm is not covered")
-    elif density is not None and density < need.density - 1e-9:
+    for scale, number, density in zip(need.scales, need.numbers, need.densities, strict=True):
+        marked = min((m.number for m in lasting if scale.mode in m.modes), default=None)
+        offered.append(_offered(scale.mode, stated, marked, marked_at_all=bool(lasting)))
+        if lasting:
+            dense = scale.mode == "D" and stated is not None and stated >= density - SLACK
+            modes.append(ModeVerdict(scale.mode, scale.wide if dense else number, marked))
+    known = [d for d in offered if d is not None]
+    short = max((n - (d or 0.0) for n, d in zip(need.densities, offered, strict=True)), default=0.0)
+    if stated is None and not lasting:
+        if need.density > 0.0 and not aligning:
+            missing.append(f"{wavelength:g} nm is not covered")
+    elif short > SLACK and all(m.enough for m in modes):
         missing.append(
-            f"optical density {density:g} where {_up(need.density)} is needed: "
-            f"{_up(need.density - density)} short"
+            f"optical density {min(known):g} where {_up(need.density)} is needed: {_up(short)} short"
         )
-    if marks and any(m.scale == "LB" for m in marks):
-        for scale in need.scales:
-            marked = max((m.number for m in marks if m.scale == "LB" and scale.mode in m.modes), default=None)
-            verdict = ModeVerdict(scale.mode, scale.wide, marked)
-            modes.append(verdict)
-            if not verdict.enough:
-                missing.append(_mode_text(scale, marked))
+    for scale, verdict in zip(need.scales, modes, strict=False):
+        if not verdict.enough:
+            missing.append(_mode_text(scale, verdict))
+    passed = [10.0**-d if d is not None else 1.0 for d in offered]
     return LineVerdict(
-        need.line,
-        density is not None,
-        need.density,
-        density,
-        transmittance,
-        need.ratio * transmittance,
-        modes,
-        missing,
+        line=need.line,
+        wavelength_nm=wavelength,
+        covered=bool(lasting) or stated is not None,
+        density_needed=need.density,
+        density=min(known) if len(known) == len(offered) else None,
+        passed=passed,
+        remaining_ratio=max(r * p for r, p in zip(need.ratios, passed, strict=True)),
+        modes=modes,
+        missing=missing,
+        resists=need.density == 0.0
+        or all(s.wide == 0 for s in need.scales)
+        or (bool(modes) and all(m.enough for m in modes)),
     )
+
+
+def _offered(mode: str, stated: float | None, marked: int | None, *, marked_at_all: bool) -> float | None:
+    """Density on which to count in a mode.
+
+    A mark LBn promises a transmittance of at most 10^-n. A filter can let more of a strong pulse
+    through than the density measured with weak light says: in pulse modes the mark alone counts.
+    """
+    if not marked_at_all or (mode == "D" and stated is not None):
+        return stated
+    return None if marked is None else float(marked)
 
 
 def _holds(mark: Mark, coverage: Coverage, wavelength: float) -> bool:
@@ -249,14 +331,17 @@ def _alignment_text(marked: int, need: AlignmentNeed | None) -> str:
     return f"{text}; {enough}"
 
 
-def _mode_text(scale: ScaleNeed, marked: int | None) -> str:
+def _mode_text(scale: ScaleNeed, verdict: ModeVerdict) -> str:
+    needed, marked = verdict.needed, verdict.marked
     have = "no mark" if marked is None else f"LB{marked}"
-    if scale.wide > 10:
+    if needed > 10:
         return f"mode {scale.mode}: {have}; the beam is beyond LB10, no scale number will do"
-    text = f"mode {scale.mode}: {have} where LB{scale.wide} is needed"
-    if marked is not None and marked >= scale.number:
+    text = f"mode {scale.mode}: {have} where LB{needed} is needed"
+    if needed > scale.wide:
+        text = f"{text} by the limits (LB{scale.wide} by the scale table)"
+    elif marked is not None and marked >= scale.number:
         return f"{text} for so wide a beam (LB{scale.number} without the remembered size factor)"
-    return text if marked is None else f"{text}: {scale.wide - marked} short"
+    return text if marked is None else f"{text}: {needed - marked} short"
 
 
 def _up(value: float) -> str:
@@ -265,10 +350,11 @@ def _up(value: float) -> str:
 
 
 def ranked(verdicts: list[PairVerdict]) -> list[int]:
-    """Indices of the pairs: sufficient first, then the most light, then in the order given."""
+    """Indices of the pairs: sufficient first, then dense enough, then the most light, then as given."""
 
-    def key(k: int) -> tuple[bool, float, int]:
+    def key(k: int) -> tuple[bool, bool, float, int]:
         light = verdicts[k].pair.luminous_transmittance
-        return not verdicts[k].sufficient, 0.0 if light is None else -light, k
+        found = verdicts[k]
+        return not found.sufficient, not found.dense_enough, 0.0 if light is None else -light, k
 
     return sorted(range(len(verdicts)), key=key)

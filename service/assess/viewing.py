@@ -1,4 +1,4 @@
-"""The exposure at a chosen distance."""
+"""The exposure at chosen distances."""
 
 from __future__ import annotations
 
@@ -7,35 +7,39 @@ from numpy.typing import NDArray
 
 from service.assess.evaluate import Evaluation, TargetResult
 
-__all__ = ["ratios_at"]
+__all__ = ["ratios_at", "sum_of_lines"]
 
 Floats = NDArray[np.float64]
 
 
-def ratios_at(evaluation: Evaluation, result: TargetResult, distance_m: Floats) -> tuple[Floats, Floats]:
-    """Ratio of exposure to limit of each criterion and, lines added, of each laser at a distance.
+def ratios_at(evaluation: Evaluation, result: TargetResult, place_m: Floats) -> Floats:
+    """Ratio of exposure to limit of each criterion, every line at a distance of its own.
 
     Parameters
     ----------
-    distance_m : (lasers,) distance from the last element [m]
+    place_m : (lines,) distance from the last element [m]
 
     Returns
     -------
-    (criteria,) ratios and (lasers,) worst ratios
+    (criteria,) ratios
     """
-    criteria, lines = result.criteria, evaluation.lines
-    laser = lines.laser[criteria.line]
-    beams = lines.beams.take(criteria.line)
-    each = criteria.strength * beams.fraction(criteria.aperture_m, distance_m[laser])
-    kind = evaluation.rules.additivity[criteria.row]
-    by_line: dict[tuple[int, int, int], float] = {}
-    for group in zip(laser.tolist(), kind.tolist(), criteria.line.tolist(), each.tolist(), strict=True):
-        key = group[:3]
-        by_line[key] = max(by_line.get(key, 0.0), group[3])
-    sums: dict[tuple[int, int], float] = {}
-    for (number, name, _), ratio in by_line.items():
-        sums[number, name] = sums.get((number, name), 0.0) + ratio
-    worst = np.zeros(lines.lasers)
-    for (number, _), total in sums.items():
-        worst[number] = max(worst[number], total)
-    return each, worst
+    criteria = result.criteria
+    beams = evaluation.lines.beams.take(criteria.line)
+    return criteria.strength * beams.fraction(criteria.aperture_m, place_m[criteria.line])
+
+
+def sum_of_lines(evaluation: Evaluation, result: TargetResult, ratio: Floats) -> float:
+    """Worst sum per tissue of one laser: each line with its worst criterion, the lines added.
+
+    Parameters
+    ----------
+    ratio : (criteria,) ratios of exposure to limit
+    """
+    kind = evaluation.rules.additivity[result.criteria.row]
+    worst: dict[tuple[int, int], float] = {}
+    for name, line, value in zip(kind.tolist(), result.criteria.line.tolist(), ratio.tolist(), strict=True):
+        worst[name, line] = max(worst.get((name, line), 0.0), value)
+    sums: dict[int, float] = {}
+    for (name, _), value in worst.items():
+        sums[name] = sums.get(name, 0.0) + value
+    return max(sums.values())

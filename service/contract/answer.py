@@ -11,10 +11,10 @@ import numpy as np
 from service import __version__
 from service.assess.criteria import AVERAGE, EXPOSURE, RULES, TRAIN_RULE
 from service.assess.evaluate import Evaluation, TargetResult, evaluate, optical_density
-from service.assess.lines import CW, TRAIN
+from service.assess.lines import PULSE
 from service.assess.scales import spot_area_m2
 from service.assess.steps import Step
-from service.assess.viewing import ratios_at
+from service.assess.viewing import ratios_at, sum_of_lines
 from service.assess.working import working
 from service.contract.classification import hazard_classes
 from service.contract.convert import lines_of
@@ -34,8 +34,10 @@ from service.contract.result import (
     TargetAnswer,
     step_model,
 )
+from service.contract.second_look import second_looks
 from service.files import DATA
 from service.rules.compiled import CompiledRules, compiled_rules
+from service.rules.eyewear import eyewear_tables
 from service.rules.tables import read_toml
 
 __all__ = ["answer", "cautions", "compare", "rule_set", "rule_sets"]
@@ -113,11 +115,12 @@ def _result(request: EvaluationRequest, evaluation: Evaluation, duration_rows: l
         measures=measures_for(
             classes[0].hazard_class, evaluation.lines.wavelength_nm.tolist(), _irradiance(evaluation)
         ),
-        notices=notices_of(request, evaluation, 0),
+        notices=[*second_looks(evaluation), *notices_of(request, evaluation, 0)],
         cautions=CAUTIONS,
         provenance=Provenance(
             service_version=__version__,
             rules_digest=published.digest,
+            eyewear_digest=eyewear_tables(DATA).digest,
             request_digest=f"sha256:{hashlib.sha256(canonical.encode()).hexdigest()}",
         ),
     )
@@ -141,13 +144,11 @@ def _duration(evaluation: Evaluation, line: int, row: int) -> Duration:
 
 
 def _irradiance(evaluation: Evaluation) -> float:
-    """Highest average irradiance of a line at the most hazardous place [W/m2]."""
-    lines, place = evaluation.lines, float(evaluation.eye.place_m[0])
-    power = np.where(
-        lines.mode == CW, lines.emitted, np.where(lines.mode == TRAIN, lines.emitted * lines.rate_hz, 0.0)
-    )
-    area = np.array([spot_area_m2(lines, k, place)[0] for k in range(lines.count)])
-    return float((power / area).max())
+    """Highest average irradiance of a line where it is narrowest [W/m2]."""
+    lines = evaluation.lines
+    places = lines.beams.narrowest_m().tolist()
+    area = np.array([spot_area_m2(lines, k, place)[0] for k, place in enumerate(places)])
+    return float((lines.average_power_w / area).max())
 
 
 def _finite(x: float) -> float | None:
@@ -191,12 +192,13 @@ def _at_distance(
     distance = request.viewing.distance_m
     if distance is None:
         return None
-    each, worst = ratios_at(evaluation, result, np.array([distance]))
+    each = ratios_at(evaluation, result, np.full(evaluation.lines.count, distance))
+    worst = sum_of_lines(evaluation, result, each)
     return AtDistance(
         distance_m=distance,
-        hazard_ratio=float(worst[0]),
-        optical_density=float(optical_density(worst)[0]),
-        exceeded=bool(worst[0] > 1.0),
+        hazard_ratio=worst,
+        optical_density=float(optical_density(np.array(worst))),
+        exceeded=worst > 1.0,
         criteria_hazard_ratio=each.tolist(),
     )
 
@@ -209,7 +211,7 @@ def _criterion(evaluation: Evaluation, result: TargetResult, k: int) -> Criterio
     limit = float(criteria.limit_j_m2[k])
     if rule == EXPOSURE:
         per_second = 1.0 / float(lines.exposure_s[line])
-    elif lines.mode[line] == 1:
+    elif lines.mode[line] == PULSE:
         per_second = 1.0 / float(lines.pulse_s[line])
     else:
         per_second = float(lines.rate_hz[line])

@@ -164,19 +164,22 @@ def _allowed(path: list[str]) -> str:
         return ", ".join(MODES)
     if name == "emission":
         return "an object with mode cw, pulse or train"
-    if not name or (path[-1].isdigit() and name == "lines"):
+    if not name:
         return "an object"
     schema = _properties().get(name)
     if schema is None:
         return "no such field"
     if "anyOf" in schema:
-        schema = next((s for s in schema["anyOf"] if s.get("type") == "number"), schema)
+        kinds = [s for s in schema["anyOf"] if s.get("type") != "null"]
+        schema = next((s for s in kinds if s.get("type") == "number"), kinds[0])
     if schema.get("type") == "number":
         unit = UNITS.get(name.rsplit("_", 1)[-1], "")
         pair = ", or a list of two" if name in PAIRS else ""
         return f"a number, {_numbers(schema)} {unit}".rstrip() + pair
     if "enum" in schema:
         return ", ".join(map(str, schema["enum"]))
+    if path[-1].isdigit() and "$ref" in schema.get("items", {}):
+        return "an object"
     if schema.get("type") == "array":
         low, high = schema.get("minItems", 0), schema["maxItems"]
         return f"a list of {low} to {high} items" if high else "an empty list"
@@ -203,6 +206,12 @@ def _path(loc: tuple[int | str, ...]) -> list[str]:
     """Path of a field as the sender knows it: without the tag of the emission mode."""
     parts = [str(p) for p in loc]
     return [p for k, p in enumerate(parts) if not (k and parts[k - 1] == "emission" and p in MODES)]
+
+
+def _own_words(message: str) -> str:
+    """A message without its prefix; the small first letter that continues a line, the rest as written."""
+    own = message.removeprefix("Value error, ")
+    return own if own != message else own[:1].lower() + own[1:]
 
 
 def _one_for_both_axes(errors: list[FieldError]) -> list[FieldError]:
@@ -246,7 +255,7 @@ def invalid_request(error: ValidationError) -> InvalidRequest:
         elif isinstance(given, list | tuple) and name in PAIRS:
             value, message = given, "neither a number nor a list of two numbers"
         else:
-            value, message = given, item["msg"].removeprefix("Value error, ").lower()
+            value, message = given, _own_words(item["msg"])
         remedy = REMEDIES.get(kind, RANGE_REMEDY if kind in OUTSIDE else "Correct it.")
         if kind not in ("missing", "extra_forbidden", "float_type", "finite_number"):
             remedy = HINTS.get(name, remedy)

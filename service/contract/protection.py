@@ -5,13 +5,23 @@ from __future__ import annotations
 import numpy as np
 from pydantic import Field
 
-from service.assess.evaluate import Evaluation
+from service.assess.evaluate import Evaluation, optical_density
 from service.assess.marking import parse_marking
-from service.assess.protection import Coverage, LineNeed, Pair, PairVerdict, judge, line_needs, ranked
-from service.assess.scales import scale_needs, spot_area_m2
-from service.assess.viewing import ratios_at
+from service.assess.protection import (
+    Coverage,
+    LineNeed,
+    Pair,
+    PairVerdict,
+    judge,
+    line_needs,
+    ranked,
+)
+from service.assess.scales import SLACK
+from service.assess.screens import screen_load
+from service.assess.viewing import ratios_at, sum_of_lines
+from service.assess.working_protection import protection_steps
 from service.contract.request import EvaluationRequest, Eyewear, Window
-from service.contract.result import Known, Model
+from service.contract.result import Known, Model, WorkingStep, step_model
 from service.files import DATA
 from service.rules.eyewear import EyewearTables, eyewear_tables
 
@@ -21,6 +31,14 @@ SIZE_REMARK = (
     "Wide beams strain a filter more than the scale table of EN 207 says. The size factor is from memory and "
     "the remembered forms conflict; the largest of them, d^1.7 with d in mm held at 15 mm, is used for mode "
     "D beside the plain table number (stricter). Take the exact one from the standard or the maker."
+)
+HEAT_REMARK = (
+    "Several lines heat the same filter together. Scale numbers are judged line by line; no source that was "
+    "read says how they add. Ask the maker where two lines come near the same number."
+)
+ALIGNMENT_REMARK = (
+    "EN 208 rests on limits older than the rule set's: behind the alignment number named here up to {:.3g} "
+    "times the rule set's limit can remain."
 )
 GROUP_REMARK = "The grouping times of pulses in EN 207 are from memory with low confidence."
 
@@ -37,6 +55,10 @@ class ScaleNumber(Model):
     scale_number_wide_beam: int = Field(description="With the size factor: the number that is asked for.")
     source: str
     known: Known
+    hazard_ratio: float = Field(description="Worst exposure / limit among the criteria of this mode.")
+    scale_number_needed: int = Field(
+        description="LB that meets the scale table with the size factor and, as transmittance, the limits."
+    )
 
 
 class AlignmentNumber(Model):
@@ -45,6 +67,10 @@ class AlignmentNumber(Model):
     value: float
     unit: str
     scale_number: int | None
+    remaining_ratio: float | None = Field(
+        description="Exposure / limit that can remain behind this number: above 1 EN 208 asks too little."
+    )
+    known: Known
 
 
 class AtPlace(Model):
@@ -64,6 +90,7 @@ class AtPlace(Model):
         description="True where the scale table alone asks for less than the rule set's limits need."
     )
     alignment: AlignmentNumber | None
+    working: list[WorkingStep]
 
 
 class LineProtection(Model):
@@ -99,10 +126,12 @@ class LineCheck(Model):
 
 
 class PairCheck(Model):
-    """Whether a pair will do, at the most hazardous place."""
+    """Whether a pair will do, each line at its most hazardous place."""
 
     name: str
-    sufficient: bool
+    sufficient: bool = Field(description="Dense enough, shown to withstand the beam, not for alignment only.")
+    dense_enough: bool = Field(description="Behind it every line, and their sum, is within the limit.")
+    resistance_shown: bool = Field(description="Marks show that it withstands every line that asks for it.")
     sufficient_at_distance: bool | None
     rank: int
     alignment_only: bool
@@ -113,7 +142,10 @@ class PairCheck(Model):
 
 
 class WindowCheck(Model):
-    """A window, enclosure wall or screen at its distance."""
+    """A window, enclosure wall or screen at its distance.
+
+    The exposure is the worst at or behind it, each line at its own worst place (an upper bound).
+    """
 
     name: str
     distance_m: float
@@ -142,17 +174,17 @@ class Protection(Model):
 def protection_of(request: EvaluationRequest, evaluation: Evaluation) -> Protection:
     """Needs of every line, verdict on every pair and window of one laser."""
     tables = eyewear_tables(DATA)
-    eye = evaluation.eye
-    place = float(eye.place_m[0])
-    worst = line_needs(evaluation, eye.hazard_ratio, place, tables)
-    distance = request.viewing.distance_m
+    narrowest = evaluation.lines.beams.narrowest_m()
+    ratio = ratios_at(evaluation, evaluation.eye, narrowest)
+    worst = line_needs(evaluation, ratio, narrowest, tables)
     there: list[LineNeed] | None = None
-    ratio_there = eye.hazard_ratio
-    if distance is not None:
-        ratio_there, _ = ratios_at(evaluation, eye, np.array([distance]))
-        there = line_needs(evaluation, ratio_there, distance, tables)
+    ratio_there = ratio
+    if request.viewing.distance_m is not None:
+        places = np.full(narrowest.shape, request.viewing.distance_m)
+        ratio_there = ratios_at(evaluation, evaluation.eye, places)
+        there = line_needs(evaluation, ratio_there, places, tables)
     pairs = [_pair(p) for p in request.eyewear]
-    verdicts = [judge(p, evaluation, eye.hazard_ratio, worst) for p in pairs]
+    verdicts = [judge(p, evaluation, ratio, worst) for p in pairs]
     at_distance = [judge(p, evaluation, ratio_there, there).sufficient for p in pairs] if there else None
     order = ranked(verdicts)
     return Protection(
@@ -160,8 +192,8 @@ def protection_of(request: EvaluationRequest, evaluation: Evaluation) -> Protect
             LineProtection(
                 line=n.line,
                 wavelength_nm=n.wavelength_nm,
-                worst_place=_place(n, tables),
-                at_distance=None if there is None else _place(there[n.line], tables),
+                worst_place=_place(n, evaluation, tables),
+                at_distance=None if there is None else _place(there[n.line], evaluation, tables),
             )
             for n in worst
         ],
@@ -178,6 +210,11 @@ def _remarks(needs: list[LineNeed]) -> list[str]:
     remarks = []
     if any(s.size_factor > 1.0 for n in needs for s in n.scales):
         remarks.append(SIZE_REMARK)
+    if sum(any(s.number > 0 for s in n.scales if s.mode == "D") for n in needs) > 1:
+        remarks.append(HEAT_REMARK)
+    remaining = [a.remaining_ratio for a in map(_alignment, needs) if a and a.remaining_ratio]
+    if max(remaining, default=0.0) > 1.0 + SLACK:
+        remarks.append(ALIGNMENT_REMARK.format(max(remaining)))
     if any(s.pulses > 1.0 for n in needs for s in n.scales):
         remarks.append(GROUP_REMARK)
     return remarks
@@ -196,9 +233,21 @@ def _pair(pair: Eyewear) -> Pair:
     return Pair(pair.name, coverages, pair.luminous_transmittance)
 
 
-def _place(need: LineNeed, tables: EyewearTables) -> AtPlace:
-    table = max((s.wide for s in need.scales), default=0)
-    alignment = need.alignment
+def _alignment(need: LineNeed) -> AlignmentNumber | None:
+    found = need.alignment
+    if found is None:
+        return None
+    remaining = None if found.number is None else need.ratio * 10.0**-found.number
+    return AlignmentNumber(
+        value=found.value,
+        unit=found.unit,
+        scale_number=found.number,
+        remaining_ratio=remaining,
+        known="memory",
+    )
+
+
+def _place(need: LineNeed, evaluation: Evaluation, tables: EyewearTables) -> AtPlace:
     return AtPlace(
         distance_m=need.distance_m,
         hazard_ratio=need.ratio,
@@ -214,15 +263,16 @@ def _place(need: LineNeed, tables: EyewearTables) -> AtPlace:
                 size_factor=s.size_factor,
                 scale_number_wide_beam=s.wide,
                 source=tables.source_text(s.row),
-                known="read" if s.row.known == "read" else "memory",
+                known="memory" if s.uncertain else "read",
+                hazard_ratio=ratio,
+                scale_number_needed=number,
             )
-            for s in need.scales
+            for s, ratio, number in zip(need.scales, need.ratios, need.numbers, strict=True)
         ],
         scale_number=need.number,
-        scale_table_too_weak=table < need.density - 1e-9,
-        alignment=None
-        if alignment is None
-        else AlignmentNumber(value=alignment.value, unit=alignment.unit, scale_number=alignment.number),
+        scale_table_too_weak=need.table_too_weak,
+        alignment=_alignment(need),
+        working=[step_model(s) for s in protection_steps(need, evaluation.lines, tables)],
     )
 
 
@@ -232,6 +282,8 @@ def _pair_check(
     return PairCheck(
         name=verdict.pair.name,
         sufficient=verdict.sufficient,
+        dense_enough=verdict.dense_enough,
+        resistance_shown=verdict.resistance_shown,
         sufficient_at_distance=at_distance,
         rank=rank,
         alignment_only=verdict.alignment_only,
@@ -259,34 +311,24 @@ def _pair_check(
 
 def _window(window: Window, evaluation: Evaluation, tables: EyewearTables) -> WindowCheck:
     """A window: density from the rule set's limits, strength from the scale of screens."""
-    _, worst = ratios_at(evaluation, evaluation.eye, np.array([window.distance_m]))
-    ratio = float(worst[0])
-    density = window.optical_density
-    lines = evaluation.lines
-    irradiance, pulse, mean, energy, numbers = 0.0, None, 0.0, 0.0, [0]
-    for k in range(lines.count):
-        area, _ = spot_area_m2(lines, k, window.distance_m)
-        emitted, mode = float(lines.emitted[k]), int(lines.mode[k])
-        power = emitted if mode == 0 else emitted * float(lines.rate_hz[k]) if mode == 2 else 0.0
-        irradiance, mean = irradiance + power / area, mean + power
-        if mode:
-            pulse, energy = max(pulse or 0.0, emitted / area), max(energy, emitted)
-        numbers += [s.number for s in scale_needs(lines, k, window.distance_m, tables)]
+    places = np.maximum(window.distance_m, evaluation.lines.beams.narrowest_m())
+    ratio = sum_of_lines(evaluation, evaluation.eye, ratios_at(evaluation, evaluation.eye, places))
+    load = screen_load(evaluation.lines, window.distance_m, tables)
+    remaining = None if window.optical_density is None else ratio * 10.0**-window.optical_density
     use = tables.use
-    inside = mean <= use["en12254_mean_power"].value and energy <= use["en12254_pulse_energy"].value
-    scope = "within" if inside else "beyond"
     return WindowCheck(
         name=window.name,
         distance_m=window.distance_m,
         hazard_ratio=ratio,
-        optical_density_needed=max(0.0, float(np.log10(ratio))) if ratio > 0.0 else 0.0,
-        optical_density=density,
-        remaining_ratio=None if density is None else ratio * 10.0**-density,
-        sufficient=None if density is None else ratio * 10.0**-density <= 1.0,
-        irradiance_w_m2=irradiance,
-        radiant_exposure_j_m2=pulse,
-        screen_number=max(numbers),
-        screen_scope=f"{scope} the scope of EN 12254 (mean power up to 100 W, single pulse up to 30 J; from "
-        f"memory); screens are tested for {use['en12254_test_time'].value:g} s, eyewear for "
+        optical_density_needed=float(optical_density(np.array(ratio))),
+        optical_density=window.optical_density,
+        remaining_ratio=remaining,
+        sufficient=None if remaining is None else remaining <= 1.0 + SLACK,
+        irradiance_w_m2=load.irradiance_w_m2,
+        radiant_exposure_j_m2=load.radiant_exposure_j_m2,
+        screen_number=load.number,
+        screen_scope=f"{'within' if load.within_scope else 'beyond'} the scope of EN 12254 (mean power up to "
+        f"{use['en12254_mean_power'].value:g} W, single pulse up to {use['en12254_pulse_energy'].value:g} J; "
+        f"from memory); screens are tested for {use['en12254_test_time'].value:g} s, eyewear for "
         f"{use['en207_test_time'].value:g} s",
     )

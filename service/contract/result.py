@@ -141,4 +141,5 @@ class Provenance(Model):
 
     service_version: str
     rules_digest: str
+    eyewear_digest: str
     request_digest: str
