@@ -80,6 +80,7 @@ LABELS = {
     "diameter_y_mm": "Diameter, other axis",
     "divergence_mrad": "Divergence",
     "divergence_y_mrad": "Divergence, other axis",
+    "protection": "Protection at hand",
     "waist_m": "Waist position",
     "subtense_mrad": "Source subtense",
     "pair_name": "Name of the pair",

@@ -178,8 +178,10 @@ class Form:
         try:
             request = EvaluationRequest.model_validate(body)
         except ValidationError as error:
-            found = [_as_form_error(e) for e in invalid_request(error).errors]
-            errors += [e for e in found if e.field not in unread]
+            for found in (_as_form_error(e) for e in invalid_request(error).errors):
+                if found.field not in unread:
+                    unread.add(found.field)
+                    errors.append(found)
         if errors:
             raise InvalidRequest("Some values cannot be used; nothing was computed.", errors)
         return request
@@ -286,12 +288,16 @@ def _as_form_error(error: FieldError) -> FieldError:
             parts[-1], "pair_ranges"
         )
         name = field_name(leaf, int(parts[1]) + 1)
+    elif parts[0] == "eyewear":
+        name = "protection"
     elif parts[0] == "windows" and len(parts) > 1:
         leaf = {"name": "window_name", "optical_density": "window_density"}.get(
             parts[-1], "window_distance_m"
         )
         name = field_name(leaf, int(parts[1]) + 1)
     allowed = error.allowed.removesuffix(", or a list of two")
+    if name.startswith("pair_light_percent"):
+        allowed = "a number, above 0 to 100 %"
     message = "a value is needed here" if error.message == "this field is missing" else error.message
     remedy = "Enter it as the data sheet gives it." if error.remedy == "Add this field." else error.remedy
     return error.model_copy(update={"field": name, "allowed": allowed, "message": message, "remedy": remedy})

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+from datetime import UTC, datetime
 from functools import cache
 from typing import Any
 from urllib.parse import parse_qsl
@@ -18,6 +19,7 @@ from service.files import DATA
 from service.rules.tables import read_toml
 from service.web.fields import ADDRESS_VERSION, label_of
 from service.web.form import BadAddress, Form
+from service.web.given import setup_given
 from service.web.shelf import shelf
 from service.web.templates import page
 
@@ -63,6 +65,7 @@ def _render(
         for d in compiled.rules.durations
         if d.kind == "choice"
     }
+    titles = {c.rules.id: c.rules.title for c in rule_sets().values()}
     return page(
         request,
         "evaluate.html",
@@ -78,6 +81,8 @@ def _render(
         address_version=ADDRESS_VERSION,
         shelf=shelf(),
         label_of=label_of,
+        given=setup_given(form, titles) if result else [],
+        today=datetime.now(UTC).date().isoformat(),
         body=json.dumps(body, indent=2) if body else "",
     )
 

@@ -4,9 +4,10 @@ from __future__ import annotations
 
 from dataclasses import fields
 
-from service.assess.steps import factor_expression, limit_expression
+from service.assess.steps import limit_expression
 from service.contract.evaluation import EvaluationResult
-from service.contract.result import Criterion, TargetAnswer, WorkingStep
+from service.contract.result import Criterion, SumOfLines, TargetAnswer, WorkingStep
+from service.rules.eyewear import ScaleRow
 from service.rules.limit_set import LimitSet
 from service.rules.tables import FactorRow, LimitRow, RepetitionRow, Row
 from service.web.numbers import plain, shown_down, shown_up
@@ -21,11 +22,13 @@ __all__ = [
     "factor_band",
     "factor_text",
     "governing",
+    "governing_sum",
     "headline",
     "limit_text",
     "repetition_text",
     "rows_of",
     "scale",
+    "scale_limit_text",
     "targets_of",
     "working_value",
 ]
@@ -52,6 +55,13 @@ def scale(name: str, number: int) -> str:
     return "none" if number == 0 else f"beyond {name}{top}" if number > top else f"{name}{number}"
 
 
+def scale_limit_text(row: ScaleRow) -> str:
+    """What a filter of scale number n withstands and holds back, as printed: E = 1 x 10^(n + 1) W/m2."""
+    sign = "+" if row.exponent_offset >= 0.0 else "-"
+    power = f"10^(n {sign} {abs(row.exponent_offset):g})"
+    return f"{row.quantity} = {row.coefficient:g} x {power} {QUANTITY_UNITS[row.quantity]}"
+
+
 def working_value(step: WorkingStep) -> str:
     """The value of a step to six digits, to the safe side: limits and near ends down, the rest up."""
     if step.value is None:
@@ -71,6 +81,13 @@ def duration(seconds: float) -> str:
 def governing(target: TargetAnswer) -> Criterion:
     """The criterion that governs."""
     return target.criteria[target.governing]
+
+
+def governing_sum(target: TargetAnswer) -> SumOfLines | None:
+    """The lines added that exceed every criterion of a single line, and so count; None otherwise."""
+    largest = max(target.sums, key=lambda s: s.hazard_ratio, default=None)
+    own = governing(target).hazard_ratio
+    return largest if largest and len(largest.lines) > 1 and largest.hazard_ratio >= own else None
 
 
 def headline(name: str, target: TargetAnswer, result: EvaluationResult) -> str:
@@ -101,7 +118,7 @@ def limit_text(row: LimitRow) -> str:
 def factor_text(row: FactorRow) -> str:
     """A piece of a factor as printed."""
     names = {"wavelength_nm": "λ", "time_s": "t", "subtense_mrad": "α"}
-    return factor_expression(row, names[row.variable])
+    return row.expression(names[row.variable])
 
 
 def factor_band(row: FactorRow) -> str:

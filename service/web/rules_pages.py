@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import dataclass
+
 from fastapi import APIRouter
 from starlette.requests import Request
 from starlette.responses import Response
@@ -9,11 +11,25 @@ from starlette.responses import Response
 from service.contract.answer import rule_sets
 from service.contract.classification import schemes
 from service.contract.problem import NotFound
+from service.files import DATA
+from service.rules.eyewear import eyewear_tables
+from service.rules.tables import Row, read_rows
 from service.web.templates import page
 
 __all__ = ["router"]
 
 router = APIRouter(include_in_schema=False)
+
+
+@dataclass(frozen=True, slots=True)
+class BasisRow(Row):
+    """What the limits behind a filter are taken to be: E [W/m2] or H [J/m2], by test mode and band."""
+
+    mode: str
+    wavelength_from_nm: float
+    wavelength_to_nm: float
+    quantity: str
+    value: float
 
 
 @router.get("/rules")
@@ -25,6 +41,23 @@ async def rules_page(request: Request) -> Response:
         rule_sets=[c.rules for c in rule_sets().values()],
         schemes=[c.scheme for c in schemes().values()],
     )
+
+
+@router.get("/classes")
+async def schemes_page(request: Request) -> Response:
+    """All classification schemes with their standing."""
+    return page(request, "classes.html", schemes=[c.scheme for c in schemes().values()])
+
+
+@router.get("/eyewear")
+async def eyewear_page(request: Request) -> Response:
+    """Scale numbers, test modes and rules of use as tables."""
+    tables = eyewear_tables(DATA)
+    basis = read_rows(DATA / "eyewear" / "basis.csv", BasisRow, tables.sources)
+    rows: list[Row] = [*tables.scales, *basis, *tables.modes, *tables.alignment, *tables.use.values()]
+    named = {row.source for row in rows}
+    documents = [source for key, source in tables.sources.items() if key in named]
+    return page(request, "eyewear.html", rules=tables, basis=basis, documents=documents)
 
 
 @router.get("/classes/{scheme_id}")

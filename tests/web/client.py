@@ -19,6 +19,7 @@ __all__ = [
     "GOOD",
     "JSON",
     "RULES",
+    "SCHEMES",
     "Client",
     "changed",
     "client",
@@ -30,6 +31,8 @@ EVALUATE, COMPARE = "/api/v1/evaluate", "/api/v1/compare"
 JSON = {"content-type": "application/json"}
 #: The rule sets of the service, the default of contract v1 first.
 RULES = ("icnirp-2013", "ansi-z136-1-2014", "eu-2006-25", "iec-60825-1-2014")
+#: Its classification schemes, the default first.
+SCHEMES = ("iec-60825-1-2014", "us-21cfr1040")
 
 #: The example of contract v1.
 GOOD: dict[str, Any] = {

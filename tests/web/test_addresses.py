@@ -216,9 +216,10 @@ def test_buttons_for_lines(client: Client) -> None:
         root = page(client, f"/evaluate?v=1&lines={lines}&edit=1")
         return [b.attributes["value"] for b in root.all("button", name="change")]
 
-    assert changes(1) == ["add"]
-    assert changes(2) == ["add", "remove"]
-    assert changes(16) == ["remove"]
+    protection = ["add-pair", "add-window"]
+    assert changes(1) == ["add", *protection]
+    assert changes(2) == ["add", "remove", *protection]
+    assert changes(16) == ["remove", *protection]
 
 
 def test_lines_stay_between_one_and_sixteen(client: Client) -> None:

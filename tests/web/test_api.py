@@ -146,6 +146,7 @@ def test_inputs_hold_every_default(client: Client) -> None:
                     "diameter_mm": 2,
                     "divergence_mrad": 1,
                     "level": "1/e2",
+                    "diameter_at": "waist",
                     "waist_m": 0,
                 },
                 "subtense_mrad": 1.5,
@@ -153,6 +154,8 @@ def test_inputs_hold_every_default(client: Client) -> None:
         ],
         "bench": [],
         "viewing": {},
+        "eyewear": [],
+        "windows": [],
     }
 
 

@@ -148,8 +148,12 @@ def test_static_files_are_kept_for_ever_under_their_hash(client: Client) -> None
         response = client.get(url)
         assert response.content == content
         assert response.headers["cache-control"] == "public, max-age=31536000, immutable"
-        kind = "text/css; charset=utf-8" if match[1].endswith(".css") else "image/svg+xml"
-        assert response.headers["content-type"] == kind
+        kinds = {
+            "css": "text/css; charset=utf-8",
+            "js": "text/javascript; charset=utf-8",
+            "svg": "image/svg+xml",
+        }
+        assert response.headers["content-type"] == kinds[match[1].rpartition(".")[2]]
 
 
 OTHER_NAMES = ["..%2fapp.py", "%2e%2e/app.py", ".", "__init__.py", "app.css%00", "APP.CSS"]

@@ -8,7 +8,7 @@ from typing import Any
 
 import pytest
 
-from tests.web.client import RULES, Client
+from tests.web.client import RULES, SCHEMES, Client
 from tests.web.markup import Element, one_unit, shown_value
 from tests.web.pages import CW, address, as_request, page
 
@@ -62,7 +62,16 @@ FORMS = {
     "waist ahead": {**CW, "waist_m-1": "5", "diameter_mm-1": "0.1", "divergence_mrad-1": "7"},
     "unbounded": {**CW, "divergence_mrad-1": "0"},
 }
-PAGES = ["/", "/rules", *(f"/rules/{r}" for r in RULES), "/problems/http", "/problems/invalid-request"]
+PAGES = [
+    "/",
+    "/rules",
+    "/classes",
+    "/eyewear",
+    *(f"/rules/{r}" for r in RULES),
+    *(f"/classes/{c}" for c in SCHEMES),
+    "/problems/http",
+    "/problems/invalid-request",
+]
 
 
 def assert_figure(data: Element, value: float, up: bool) -> None:
@@ -82,6 +91,13 @@ def assert_figure(data: Element, value: float, up: bool) -> None:
 def both(client: Client, request: pytest.FixtureRequest) -> tuple[Element, dict[str, Any]]:
     """A result page and the answer of the API to the same values."""
     return page(client, address(request.param)), client.evaluate(as_request(request.param))
+
+
+def working_rows(root: Element) -> list[Element]:
+    """Rows of the working of the evaluation; the classes have tables of their own beside it."""
+    tables = [t for t in root.all("table", class_="working") if t.one("caption").text.startswith("Each step")]
+    assert len(tables) == 1
+    return tables[0].one("tbody").all("tr")
 
 
 def figures(root: Element, row: str, column: int) -> list[Element]:
@@ -129,6 +145,8 @@ def test_figures_at_the_distance(both: tuple[Element, dict[str, Any]]) -> None:
 def test_criteria_are_those_of_the_answer(both: tuple[Element, dict[str, Any]], target: str) -> None:
     root, answer = both
     found = answer[target]
+    own = found["criteria"][found["governing"]]["hazard_ratio"]
+    added = any(s["hazard_ratio"] >= own for s in found["sums"] if len(s["lines"]) > 1)
     rows = root.by_id(f"criteria-{target}").one("tbody").all("tr")
     assert len(rows) == len(found["criteria"]) + len(found["sums"])
     columns = {"limit_j_m2": False, "limit_w_m2": False, "aperture_mm": False, "hazard_ratio": True}
@@ -140,15 +158,17 @@ def test_criteria_are_those_of_the_answer(both: tuple[Element, dict[str, Any]], 
             assert len(shown) == 4
         else:
             assert_figure(shown[4], criterion["hazard_distance_m"], up=True)
-        assert ("governs" in row.text) == (number == found["governing"])
+        assert ("governs" in row.text) == (number == found["governing"] and not added)
+        assert ("largest share" in row.text) == (number == found["governing"] and added)
         assert ("from memory" in row.text) == (criterion["known"] == "memory")
     for row, total in zip(rows[len(found["criteria"]) :], found["sums"], strict=True):
         assert_figure(row.all("data")[0], total["hazard_ratio"], up=True)
+        assert ("counts" in row.text) == (added and total["hazard_ratio"] == found["hazard_ratio"])
 
 
 def test_working_is_that_of_the_answer(both: tuple[Element, dict[str, Any]]) -> None:
     root, answer = both
-    rows = root.one("table", class_="working").one("tbody").all("tr")
+    rows = working_rows(root)
     assert len(rows) == len(answer["working"])
     for row, step in zip(rows, answer["working"], strict=True):
         values = [float(d.attributes["value"]) for d in row.all("data")]
@@ -160,7 +180,7 @@ def test_working_is_that_of_the_answer(both: tuple[Element, dict[str, Any]]) -> 
 def test_distances_of_the_working_are_not_rounded_down(both: tuple[Element, dict[str, Any]]) -> None:
     """The page promises that shown figures are rounded to the safe side: distances up."""
     root, answer = both
-    rows = root.one("table", class_="working").one("tbody").all("tr")
+    rows = working_rows(root)
     for row, step in zip(rows, answer["working"], strict=True):
         if step["symbol"] == "z" and step["value"]:
             assert Decimal(row.one("data").text.replace(" m", "")) >= Decimal(repr(step["value"]))
@@ -180,10 +200,11 @@ def test_nothing_is_left_out(both: tuple[Element, dict[str, Any]]) -> None:
     assert answer["rules"]["standing_text"] in text
 
 
-def test_cautions_come_before_the_result(both: tuple[Element, dict[str, Any]]) -> None:
+def test_cautions_come_before_the_figures(both: tuple[Element, dict[str, Any]]) -> None:
+    """The verdict first, the cautions with it, every figure below; the form comes after the answer."""
     root, _ = both
-    ids = root.ids
-    assert ids.index("cautions-title") < ids.index("verdict-title")
+    order = [root.ids.index(i) for i in ("verdict-title", "cautions-title", "figures-title", "label")]
+    assert order == sorted(order)
 
 
 def test_the_body_shown_gives_the_same_answer(client: Client, both: tuple[Element, dict[str, Any]]) -> None:
@@ -200,7 +221,13 @@ def test_every_page_is_well_built(client: Client, url: str) -> None:
 
 
 def test_error_pages_are_well_built(client: Client) -> None:
-    for url, status in (("/nowhere", 404), ("/rules/none", 404), ("/evaluate?v=0", 400), ("/?x=1", 404)):
+    for url, status in (
+        ("/nowhere", 404),
+        ("/rules/none", 404),
+        ("/classes/none", 404),
+        ("/evaluate?v=0", 400),
+        ("/?x=1", 404),
+    ):
         check_page(page(client, url, status))
     check_page(page(client, address({**CW, "power_w-1": "much"}), 422))
 
@@ -238,7 +265,7 @@ def test_label_is_text_and_never_markup(client: Client) -> None:
     label = "<script>alert(1)</script>\"'&"
     root = page(client, address({**CW, "label": label}))
     assert root.one("h1").text == label
-    assert root.all("script") == []
+    assert [s.attributes["src"].partition("?")[0] for s in root.all("script")] == ["/static/print.js"]
 
 
 def test_every_starting_example_gives_a_result(client: Client) -> None:
@@ -277,4 +304,6 @@ def assert_known(rows: list[Element], printed: list[dict[str, Any]]) -> None:
 
 def test_list_of_rule_sets_links_to_each(client: Client) -> None:
     links = [a.attributes.get("href") for a in page(client, "/rules").one("main").all("a")]
-    assert links == [f"/rules/{r}" for r in RULES]
+    classes = [f"/classes/{c}" for c in SCHEMES]
+    assert links == [*(f"/rules/{r}" for r in RULES), *classes, "/eyewear"]
+    assert [a.attributes.get("href") for a in page(client, "/classes").one("main").all("a")] == classes
