@@ -182,7 +182,13 @@ def test_pages_are_accessible_and_fit(browser: Browser, address: str, scheme: st
     page.goto("/")
     examples = page.locator(".answer li a").all()
     paths = ["/", *(e.get_attribute("href") for e in examples), "/rules", "/rules/eu-2006-25", "/nowhere"]
-    paths += ["/classes/iec-60825-1-2014", "/classes/us-21cfr1040", f"{paths[1]}&shelf-near-infrared=1"]
+    paths += [
+        "/classes",
+        "/eyewear",
+        "/classes/iec-60825-1-2014",
+        "/classes/us-21cfr1040",
+        f"{paths[1]}&shelf-near-infrared=1",
+    ]
     paths += [
         f"{paths[2]}&pairs=1&windows=1&pair_ranges-1=500%3A%20RB2&window_distance_m-1=2&window_density-1=3"
     ]

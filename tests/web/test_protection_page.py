@@ -163,7 +163,7 @@ def assert_line(item: Element, check: dict[str, Any], alignment_only: bool) -> N
     assert words.startswith(f"{check['wavelength_nm']:g} nm (line {check['line'] + 1})")
     assert words.endswith(f": {expected}.")
     for text in check["missing"]:
-        assert text in item.text
+        assert text[:1].upper() + text[1:] in item.text
     shown = item.all("data")
     if check["optical_density"] is not None:
         assert_figure(shown.pop(0), check["optical_density_needed"], up=True)
