@@ -68,7 +68,9 @@ def _band(found: re.Match[str]) -> tuple[float, float]:
         raise MarkingError(
             f"the range {found[0].strip()} is no range of nanometres from 180 to 1 000 000, low to high"
         )
-    return (math.nextafter(low, math.inf) if found[1] and found[3] else low), high
+    if found[1] and not found[3]:
+        raise MarkingError(f"the range {found[0].strip()} begins above a wavelength and has no end")
+    return (math.nextafter(low, math.inf) if found[1] else low), high
 
 
 def _mark(text: str, band: tuple[float, float] | None) -> Mark:

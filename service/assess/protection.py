@@ -10,6 +10,8 @@ from numpy.typing import NDArray
 
 from service.assess.criteria import AVERAGE
 from service.assess.evaluate import Evaluation, optical_density
+from service.assess.lines import PULSE, TRAIN
+from service.assess.loads import loads
 from service.assess.marking import Mark
 from service.assess.scales import SLACK, AlignmentNeed, ScaleNeed, alignment_need, scale_needs
 from service.assess.viewing import sum_of_lines
@@ -39,7 +41,8 @@ class LineNeed:
     """What one line asks for at one place [m].
 
     `scales` are the EN 207 modes and `ratios` the worst ratio of exposure to limit among the eye criteria
-    of each; `alignment` is the EN 208 number where it exists.
+    of each, `loads` the number of each with the lines of a band added; `alignment` is the EN 208 number
+    where it exists. `slow`: pulses that come singly, or too seldom for a pair marked Y.
     """
 
     line: int
@@ -47,6 +50,8 @@ class LineNeed:
     distance_m: float
     scales: list[ScaleNeed]
     ratios: list[float]
+    loads: list[int]
+    slow: bool
     alignment: AlignmentNeed | None
 
     @property
@@ -68,8 +73,13 @@ class LineNeed:
     @property
     def numbers(self) -> list[int]:
         """Scale number of each mode: by the table and, as transmittance, by the rule set's limits."""
-        pairs = zip(self.scales, self.densities, strict=True)
-        return [max(s.wide, math.ceil(density - SLACK)) for s, density in pairs]
+        pairs = zip(self.strengths, self.densities, strict=True)
+        return [max(strength, math.ceil(density - SLACK)) for strength, density in pairs]
+
+    @property
+    def strengths(self) -> list[int]:
+        """Scale number of each mode by the table, with size factor and the other lines of the band."""
+        return [max(s.wide, load) for s, load in zip(self.scales, self.loads, strict=True)]
 
     @property
     def number(self) -> int:
@@ -79,7 +89,7 @@ class LineNeed:
     @property
     def table_too_weak(self) -> bool:
         """Whether the scale table asks less of a mode than the rule set's limits need."""
-        return any(n > s.wide for n, s in zip(self.numbers, self.scales, strict=True))
+        return any(n > s for n, s in zip(self.numbers, self.strengths, strict=True))
 
 
 @dataclass(frozen=True, slots=True)
@@ -146,12 +156,14 @@ class PairVerdict:
     """A pair against a laser.
 
     `remaining_ratio` adds the lines behind the filter, each at its own place of the needs (an upper
-    bound where the waists differ).
+    bound where the waists differ). `resistance_shown`: marks show that it withstands every line that
+    asks for it; lines that need no filter, alone and together, ask for none.
     """
 
     pair: Pair
     lines: list[LineVerdict]
     remaining_ratio: float
+    resistance_shown: bool
     warnings: list[str]
     alignment_only: bool
 
@@ -162,25 +174,26 @@ class PairVerdict:
         return not self.alignment_only and all(v.enough for v in self.lines) and held
 
     @property
-    def resistance_shown(self) -> bool:
-        """Whether marks show that the pair withstands every line that asks for it."""
-        return all(v.resists for v in self.lines)
-
-    @property
     def sufficient(self) -> bool:
         """Dense enough, and shown to withstand the beam; never for alignment eyewear."""
         return self.dense_enough and self.resistance_shown
 
 
 def line_needs(
-    evaluation: Evaluation, ratio: Floats, place_m: Floats, tables: EyewearTables
+    evaluation: Evaluation, ratio: Floats, place_m: Floats, tables: EyewearTables, *, onward: bool
 ) -> list[LineNeed]:
-    """Needs of every line of one laser; `ratio` are its eye criteria's ratios with each line at `place_m`."""
+    """Needs of every line of one laser; `ratio` are its eye criteria's ratios with each line at `place_m`.
+
+    With `onward` the strength is that of the worst place from there on.
+    """
     lines, found = evaluation.lines, evaluation.eye.criteria
+    places = place_m.tolist()
+    every = [scale_needs(lines, k, place, tables) for k, place in enumerate(places)]
+    loaded = loads(lines, every, tables, onward_m=places if onward else None)
+    seldom = tables.use["en207_mark_y_rate"].value
     needs = []
     for k in range(lines.count):
-        place = float(place_m[k])
-        scales = scale_needs(lines, k, place, tables)
+        place, scales = places[k], every[k]
         modes = _mode_of(evaluation, k, scales)
         own = ratio[found.line == k]
         needs.append(
@@ -190,6 +203,8 @@ def line_needs(
                 distance_m=place,
                 scales=scales,
                 ratios=[float(own[modes == n].max(initial=0.0)) for n in range(len(scales))],
+                loads=loaded[k],
+                slow=bool(lines.mode[k] == PULSE or (lines.mode[k] == TRAIN and lines.rate_hz[k] <= seldom)),
                 alignment=alignment_need(lines, k, place, tables),
             )
         )
@@ -215,13 +230,16 @@ def judge(pair: Pair, evaluation: Evaluation, ratio: Floats, needs: list[LineNee
         own = np.flatnonzero(found.line == need.line)
         passed[own] = np.array(verdict.passed)[_mode_of(evaluation, need.line, need.scales)]
     remaining = sum_of_lines(evaluation, evaluation.eye, ratio * passed)
+    unproved = [v.line for v in verdicts if not v.resists]
+    bare = np.where(np.isin(found.line, unproved), 1.0, passed)
+    shown = not unproved or sum_of_lines(evaluation, evaluation.eye, ratio * bare) <= 1.0 + SLACK
     alignment = any(m.scale == "RB" for c in pair.coverages for m in c.marks)
     warnings = _warnings(pair, verdicts, alignment)
     if remaining > 1.0 + SLACK and all(v.enough for v in verdicts) and not alignment:
         warnings.append(
             "Each line alone is covered, but together they still exceed the limit behind the filter."
         )
-    return PairVerdict(pair, verdicts, remaining, warnings, alignment)
+    return PairVerdict(pair, verdicts, remaining, shown, warnings, alignment)
 
 
 def _warnings(pair: Pair, verdicts: list[LineVerdict], alignment: bool) -> list[str]:
@@ -269,24 +287,25 @@ def _line(pair: Pair, need: LineNeed) -> LineVerdict:
     modes, offered, missing = [], [], []
     if aligning and need.density > 0.0:
         missing.append(_alignment_text(max(aligning), need.alignment))
-    for scale, number, density in zip(need.scales, need.numbers, need.densities, strict=True):
+    asked = zip(need.scales, need.numbers, need.strengths, need.densities, strict=True)
+    for scale, number, strength, density in asked:
         marked = min((m.number for m in lasting if scale.mode in m.modes), default=None)
         offered.append(_offered(scale.mode, stated, marked, marked_at_all=bool(lasting)))
         if lasting:
             dense = scale.mode == "D" and stated is not None and stated >= density - SLACK
-            modes.append(ModeVerdict(scale.mode, scale.wide if dense else number, marked))
+            modes.append(ModeVerdict(scale.mode, strength if dense else number, marked))
     known = [d for d in offered if d is not None]
-    short = max((n - (d or 0.0) for n, d in zip(need.densities, offered, strict=True)), default=0.0)
+    short, wanted = max((n - (d or 0.0), n) for n, d in zip(need.densities, offered, strict=True))
     if stated is None and not lasting:
         if need.density > 0.0 and not aligning:
             missing.append(f"{wavelength:g} nm is not covered")
     elif short > SLACK and all(m.enough for m in modes):
         missing.append(
-            f"optical density {min(known):g} where {_up(need.density)} is needed: {_up(short)} short"
+            f"optical density {wanted - short:g} where {_up(wanted)} is needed: {_up(short)} short"
         )
-    for scale, verdict in zip(need.scales, modes, strict=False):
+    for scale, verdict, strength in zip(need.scales, modes, need.strengths, strict=False):
         if not verdict.enough:
-            missing.append(_mode_text(scale, verdict))
+            missing.append(_mode_text(scale, verdict, strength))
     passed = [10.0**-d if d is not None else 1.0 for d in offered]
     return LineVerdict(
         line=need.line,
@@ -298,9 +317,8 @@ def _line(pair: Pair, need: LineNeed) -> LineVerdict:
         remaining_ratio=max(r * p for r, p in zip(need.ratios, passed, strict=True)),
         modes=modes,
         missing=missing,
-        resists=need.density == 0.0
-        or all(s.wide == 0 for s in need.scales)
-        or (bool(modes) and all(m.enough for m in modes)),
+        resists=max(need.strengths) == 0
+        or (bool(modes) and all(m.enough for m in modes) and not _untested(need, lasting)),
     )
 
 
@@ -308,11 +326,19 @@ def _offered(mode: str, stated: float | None, marked: int | None, *, marked_at_a
     """Density on which to count in a mode.
 
     A mark LBn promises a transmittance of at most 10^-n. A filter can let more of a strong pulse
-    through than the density measured with weak light says: in pulse modes the mark alone counts.
+    through than the density measured with weak light says: in pulse modes a mark must stand, and the
+    weaker of both counts.
     """
     if not marked_at_all or (mode == "D" and stated is not None):
         return stated
-    return None if marked is None else float(marked)
+    if marked is None:
+        return None
+    return float(marked) if stated is None else min(float(marked), stated)
+
+
+def _untested(need: LineNeed, marks: list[Mark]) -> bool:
+    """Whether a mark Y says that the pair was not tested for pulses as rare as these."""
+    return need.slow and any(m.low_rate_untested for m in marks)
 
 
 def _holds(mark: Mark, coverage: Coverage, wavelength: float) -> bool:
@@ -331,14 +357,16 @@ def _alignment_text(marked: int, need: AlignmentNeed | None) -> str:
     return f"{text}; {enough}"
 
 
-def _mode_text(scale: ScaleNeed, verdict: ModeVerdict) -> str:
+def _mode_text(scale: ScaleNeed, verdict: ModeVerdict, strength: int) -> str:
     needed, marked = verdict.needed, verdict.marked
     have = "no mark" if marked is None else f"LB{marked}"
     if needed > 10:
         return f"mode {scale.mode}: {have}; the beam is beyond LB10, no scale number will do"
     text = f"mode {scale.mode}: {have} where LB{needed} is needed"
-    if needed > scale.wide:
-        text = f"{text} by the limits (LB{scale.wide} by the scale table)"
+    if needed > strength:
+        text = f"{text} by the limits (LB{strength} by the scale table)"
+    elif strength > scale.wide:
+        text = f"{text} with all that loads the filter (LB{scale.wide} for this line alone at its place)"
     elif marked is not None and marked >= scale.number:
         return f"{text} for so wide a beam (LB{scale.number} without the remembered size factor)"
     return text if marked is None else f"{text}: {needed - marked} short"

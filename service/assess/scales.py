@@ -10,7 +10,15 @@ import numpy as np
 from service.assess.lines import CW, PULSE, TRAIN, Lines
 from service.rules.eyewear import EyewearTables, ScaleRow, UseRow
 
-__all__ = ["SLACK", "AlignmentNeed", "ScaleNeed", "alignment_need", "scale_needs", "spot_area_m2"]
+__all__ = [
+    "SLACK",
+    "AlignmentNeed",
+    "ScaleNeed",
+    "alignment_need",
+    "scale_needs",
+    "scale_number",
+    "spot_area_m2",
+]
 
 #: Slack [decades] against rounding: a value on the bound of a scale number still takes that number.
 SLACK = 1e-9
@@ -60,8 +68,8 @@ def spot_area_m2(lines: Lines, line: int, distance_m: float) -> tuple[float, flo
     return float(np.pi / 4.0 * x[0] * y[0]), float(max(x[0], y[0]))
 
 
-def _number(row: ScaleRow, value: float) -> int:
-    """Scale number n with coefficient x 10^(n + offset) >= value, at least 0."""
+def scale_number(row: ScaleRow, value: float) -> int:
+    """Smallest scale number n with coefficient x 10^(n + offset) >= value, at least 0."""
     if value <= 0.0:
         return 0
     return max(0, math.ceil(math.log10(value / row.coefficient) - row.exponent_offset - SLACK))
@@ -88,7 +96,7 @@ def scale_needs(lines: Lines, line: int, distance_m: float, tables: EyewearTable
             text, value = "Q / (t_p A)", emitted / pulse / area
         elif lines.mode[line] == TRAIN:
             text, value, pulses, group = _with_pulse_number(value, pulse, rate, wavelength, tables)
-        number = _number(row, value)
+        number = scale_number(row, value)
         needs = [ScaleNeed(mode, row, text, value, pulses, group, number, 1.0, number)]
     if lines.mode[line] == TRAIN:
         needs.append(_continuous("Q f / A", emitted * rate / area, wavelength, diameter, tables))
@@ -105,7 +113,7 @@ def _continuous(
     if wavelength >= (band.wavelength_from_nm or 0.0):
         width = min(max(diameter_m * 1e3, tables.use["size_from"].value), tables.use["size_to"].value)
         factor = width**band.value
-    number, wide = _number(row, irradiance), _number(row, irradiance * factor)
+    number, wide = scale_number(row, irradiance), scale_number(row, irradiance * factor)
     return ScaleNeed("D", row, text, irradiance, 1.0, None, number, factor, wide)
 
 

@@ -30,7 +30,8 @@ def protection_steps(need: LineNeed, lines: Lines, tables: EyewearTables) -> Ite
     text = f"1/e diameter {where}, the larger one; of a top hat the full width"
     yield step("d63", text, widest, "m", use["beam_share"])
     yield step("A", f"area of the spot {where}, pi / 4 x d63,x x d63,y", area, "m2")
-    for scale, needed, density in zip(need.scales, need.numbers, need.densities, strict=True):
+    asked = zip(need.scales, need.numbers, need.strengths, need.densities, strict=True)
+    for scale, needed, strength, density in asked:
         quantity, row = scale.row.quantity, scale.row
         rule = scale.group or (use["count_window"] if scale.pulses > 1.0 else None)
         yield step(f"{quantity}_{scale.mode}", scale.text, scale.value, UNITS[quantity], rule)
@@ -43,7 +44,10 @@ def protection_steps(need: LineNeed, lines: Lines, tables: EyewearTables) -> Ite
         bound = f"{row.coefficient:g} x 10^(n {row.exponent_offset:+g})"
         text = f"smallest n from 0 on with {bound} >= {counts}"
         yield step(f"LB_{scale.mode}", text, scale.wide, "1", row)
-        if needed > scale.wide:
+        if strength > scale.wide:
+            text = "raised: lines of the band added, an oblong beam looked at farther on (stricter)"
+            yield step(f"LB_{scale.mode}", text, strength, "1")
+        if needed > strength:
             text = f"raised to the density that the limits ask of this mode, {number(density)}"
             yield step(f"LB_{scale.mode}", text, needed, "1")
     if need.alignment is not None and need.alignment.number is not None:

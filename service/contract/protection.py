@@ -33,8 +33,8 @@ SIZE_REMARK = (
     "D beside the plain table number (stricter). Take the exact one from the standard or the maker."
 )
 HEAT_REMARK = (
-    "Several lines heat the same filter together. Scale numbers are judged line by line; no source that was "
-    "read says how they add. Ask the maker where two lines come near the same number."
+    "Several lines load the same filter. Those of one band and mode are added for the scale number that is "
+    "asked for (stricter; no source that was read says how they add)."
 )
 ALIGNMENT_REMARK = (
     "EN 208 rests on limits older than the rule set's: behind the alignment number named here up to {:.3g} "
@@ -144,7 +144,8 @@ class PairCheck(Model):
 class WindowCheck(Model):
     """A window, enclosure wall or screen at its distance.
 
-    The exposure is the worst at or behind it, each line at its own worst place (an upper bound).
+    The exposure is the worst of eye and skin at or behind it, each line at its own worst place (an upper
+    bound).
     """
 
     name: str
@@ -176,13 +177,13 @@ def protection_of(request: EvaluationRequest, evaluation: Evaluation) -> Protect
     tables = eyewear_tables(DATA)
     narrowest = evaluation.lines.beams.narrowest_m()
     ratio = ratios_at(evaluation, evaluation.eye, narrowest)
-    worst = line_needs(evaluation, ratio, narrowest, tables)
+    worst = line_needs(evaluation, ratio, narrowest, tables, onward=True)
     there: list[LineNeed] | None = None
     ratio_there = ratio
     if request.viewing.distance_m is not None:
         places = np.full(narrowest.shape, request.viewing.distance_m)
         ratio_there = ratios_at(evaluation, evaluation.eye, places)
-        there = line_needs(evaluation, ratio_there, places, tables)
+        there = line_needs(evaluation, ratio_there, places, tables, onward=False)
     pairs = [_pair(p) for p in request.eyewear]
     verdicts = [judge(p, evaluation, ratio, worst) for p in pairs]
     at_distance = [judge(p, evaluation, ratio_there, there).sufficient for p in pairs] if there else None
@@ -210,7 +211,7 @@ def _remarks(needs: list[LineNeed]) -> list[str]:
     remarks = []
     if any(s.size_factor > 1.0 for n in needs for s in n.scales):
         remarks.append(SIZE_REMARK)
-    if sum(any(s.number > 0 for s in n.scales if s.mode == "D") for n in needs) > 1:
+    if len(needs) > 1 and any(n.strengths != [s.wide for s in n.scales] for n in needs):
         remarks.append(HEAT_REMARK)
     remaining = [a.remaining_ratio for a in map(_alignment, needs) if a and a.remaining_ratio]
     if max(remaining, default=0.0) > 1.0 + SLACK:
@@ -312,7 +313,8 @@ def _pair_check(
 def _window(window: Window, evaluation: Evaluation, tables: EyewearTables) -> WindowCheck:
     """A window: density from the rule set's limits, strength from the scale of screens."""
     places = np.maximum(window.distance_m, evaluation.lines.beams.narrowest_m())
-    ratio = sum_of_lines(evaluation, evaluation.eye, ratios_at(evaluation, evaluation.eye, places))
+    targets = (evaluation.eye, evaluation.skin)
+    ratio = max(sum_of_lines(evaluation, t, ratios_at(evaluation, t, places)) for t in targets)
     load = screen_load(evaluation.lines, window.distance_m, tables)
     remaining = None if window.optical_density is None else ratio * 10.0**-window.optical_density
     use = tables.use

@@ -21,6 +21,7 @@ USED = {
     "size_from",
     "size_to",
     "size_exponent_glass_first",
+    "en207_mark_y_rate",
     "en207_test_time",
     "en208_target_power",
     "en208_split",

@@ -103,6 +103,7 @@ BAD = {
     "1064 D LB5 + D LB5": ["mode D", "twice"],
     "D LB0": ["LB0", "LB1 to LB10"],
     "D LB\u0665": ["LB1 to LB10"],
+    ">315 D LB5": [">315", "no end"],
     "D LB11": ["LB11", "LB1 to LB10"],
     "D LB100": ["LB100"],
     "D AB11": ["AB11", "AB1 to AB10"],

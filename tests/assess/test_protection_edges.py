@@ -147,9 +147,71 @@ def test_the_exact_density_is_enough(power: float) -> None:
     assert shut.sufficient
 
 
-def test_several_strong_lines_on_one_filter_are_told() -> None:
-    assert any("heat the same filter" in r for r in protection(line(1060, cw(7)), line(1070, cw(7))).remarks)
-    assert not any("heat the same filter" in r for r in protection(line(1060, cw(7))).remarks)
+def test_lines_that_load_one_filter_are_added() -> None:
+    """7 W in 2 mm (1/e2): 4.456e6 W/m2 x 1.4142^1.7 = 8.03e6, LB6 (to 1e7); two of them LB7."""
+    made = [pair("p", (1000, 1100, 9, f"D LB{n}")) for n in (6, 7)]
+    assert [p.sufficient for p in verdicts(made, line(1060, cw(7)))] == [True, True]
+    two = (line(1060, cw(7)), line(1070, cw(7)))
+    assert [p.sufficient for p in verdicts(made, *two)] == [False, True]
+    assert any("load the same filter" in r for r in protection(*two).remarks)
+    assert not any("load the same filter" in r for r in protection(two[0]).remarks)
+
+
+def test_pulses_that_load_one_filter_are_added() -> None:
+    """3.5 mJ on a top hat of 1 mm: 4456 J/m2, R LB6 (to 5000); two together LB7."""
+    shot = line(1064, pulse(3.5e-3, 1e-8), profile="tophat", diameter_mm=1, divergence_mrad=0)
+    made = [pair("p", (1000, 1100, 9, f"R LB{n}")) for n in (6, 7)]
+    assert [p.sufficient for p in verdicts(made, shot)] == [True, True]
+    assert [p.sufficient for p in verdicts(made, shot, shot)] == [False, True]
+
+
+def test_lines_harmless_alone_ask_for_proof_where_their_sum_does() -> None:
+    """Sixteen times 0.15 W on 15 mm at 10.6 um: 13.6 times 1000 W/m2 together, each alone below it."""
+    beam: dict[str, Any] = {"profile": "tophat", "diameter_mm": 15, "divergence_mrad": 0}
+    lines = [line(10600, cw(0.15), **beam) for _ in range(16)]
+    (found,) = verdicts([pair("p", (9000, 11000, 2, None))], *lines)
+    assert (found.dense_enough, found.resistance_shown, found.sufficient) == (True, False, False)
+
+
+@pytest.mark.parametrize("density", [0, 0.5, 3])
+def test_a_weak_density_beside_a_pulse_mark_counts(density: float) -> None:
+    """1 mJ, 10 ns at 1064 nm: 25.98 J/m2 through 7 mm against 0.02 J/m2, 1299 times, OD 3.11."""
+    shot = line(1064, pulse(1e-3, 1e-8))
+    (found,) = verdicts([pair("p", (1000, 1100, density, "R LB6"))], shot)
+    assert not found.sufficient
+    assert found.remaining_ratio == pytest.approx(0.998 * 1299 * 10**-density, rel=5e-3)
+
+
+def test_an_oblong_beam_is_looked_at_farther_on() -> None:
+    """7 W, 1 x 1 mm (1/e), 100 x 0 mrad: 8.91e6 W/m2, LB6 at the waist.
+
+    0.13 m on 13 mm x 1 mm: 6.83e5 W/m2 x 13.04^1.7 = 5.4e7, LB7.
+    """
+    oblong = line(1064, cw(7), diameter_mm=[1, 1], divergence_mrad=[100, 0], level="1/e")
+    made = [pair("p", (1000, 1100, 9, f"D LB{n}")) for n in (6, 7)]
+    assert [p.sufficient for p in verdicts(made, oblong)] == [False, True]
+
+
+def test_a_window_shields_skin_too() -> None:
+    """100 W on 50 mm, source of 3 rad: skin 2.55e4 J/m2 in 0.25 s against 7.78e3 J/m2, 3.27 times."""
+    wide = {**line(532, cw(100), diameter_mm=50), "subtense_mrad": 3000}
+    (found,) = protection(wide, windows=[{"name": "w", "distance_m": 0, "optical_density": 0}]).windows
+    assert found.hazard_ratio == pytest.approx(3.27, abs=0.03)
+    assert found.sufficient is False
+
+
+def test_a_pair_marked_y_is_not_shown_to_last_for_rare_pulses() -> None:
+    """Y: not tested at 25 Hz and below (DGUV Information 203-042, A8.2)."""
+    made = pair("p", (1000, 1100, 9, "DIR LB8 Y"))
+    for emission, sufficient in (
+        (pulse(1e-6, 1e-8), False),
+        (train(1e-6, 1e-8, 25), False),
+        (train(1e-6, 1e-8, 26), True),
+        (cw(1), True),
+    ):
+        (found,) = verdicts([made], line(1064, emission))
+        assert found.sufficient is sufficient
+        assert found.dense_enough
 
 
 def test_the_working_names_every_table() -> None:

@@ -79,7 +79,7 @@ def test_needs_are_those_of_the_answer(both: tuple[Element, dict[str, Any]]) -> 
             needed = scale["scale_number_needed"]
             assert f"{scale['mode']} {named('LB', needed)}" in row.text
             if needed != scale["scale_number"]:
-                why = "raised to the limits"
+                why = "raised, see the working"
                 if needed == scale["scale_number_wide_beam"]:
                     why = "wide beam, size factor from memory"
                 assert f"(table {named('LB', scale['scale_number'])}; {why})" in row.text
