@@ -10,7 +10,8 @@ from markupsafe import Markup, escape
 __all__ = ["formula", "power_of_ten"]
 
 GREEK = {"lambda": "λ", "alpha": "α", "gamma": "γ", "phi": "φ"}
-INDEX = re.compile(r"\b(AEL|C|F|T|t|H|d|γ|α|λ|gamma|alpha|z|n)_([A-Za-z0-9]+)\b")
+INDEX = re.compile(r"\b(AEL|LB|C|E|F|T|t|H|d|γ|α|λ|gamma|alpha|z|n)_([A-Za-z0-9]+)\b")
+SQUARE_METRE = re.compile(r"\bm2\b")
 GREEK_WORD = re.compile(r"\b(lambda|alpha|gamma|phi)(?=_|\b)")
 EXPONENT = re.compile(r"\b(\d+(?:\.\d+)?)e([+-]?\d+)\b(?=(\^?))")
 
@@ -44,7 +45,8 @@ def _superscripts(text: str) -> str:
 
 def formula(text: str) -> Markup:
     """An expression of the working or of a table: C_A, t^0.75, 10^(...), 'x' between factors."""
-    typeset = str(power_of_ten(text)).replace(" x ", " × ")
+    typeset = str(power_of_ten(text)).replace(" x ", " × ").replace("&gt;=", "≥")
     typeset = GREEK_WORD.sub(lambda m: GREEK[m[1]], typeset)
+    typeset = SQUARE_METRE.sub("m²", typeset)
     typeset = INDEX.sub(r"\1<sub>\2</sub>", typeset)
     return Markup(_superscripts(typeset))
