@@ -41,7 +41,7 @@ def protection_steps(need: LineNeed, lines: Lines, tables: EyewearTables) -> Ite
             text = f"(d63 in mm, held at {use['size_to'].value:g})^{size.value:g}"
             yield step("F", text, scale.size_factor, "1", size)
             counts = f"{counts} x F"
-        bound = f"{row.coefficient:g} x 10^(n {row.exponent_offset:+g})"
+        bound = f"{row.coefficient:g} x 10^(n{row.exponent_offset:+g})"
         text = f"smallest n from 0 on with {bound} >= {counts}"
         yield step(f"LB_{scale.mode}", text, scale.wide, "1", row)
         if strength > scale.wide:
