@@ -28,7 +28,7 @@ def loads(
         own: dict[tuple[str, str], float] = {}
         for need in needs:
             value = need.value * need.size_factor
-            if onward_m is not None and need.size_factor >= 1.0 and need.mode == "D":
+            if onward_m is not None and need.mode == "D":
                 value = max(value, _onward(lines, k, onward_m[k], need, tables))
             key = need.mode, need.row.row
             own[key] = max(own.get(key, 0.0), value)

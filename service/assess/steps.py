@@ -3,8 +3,9 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from decimal import ROUND_CEILING, Context, Decimal
 
-__all__ = ["Step", "limit_expression", "number"]
+__all__ = ["Step", "limit_expression", "number", "number_up"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -29,6 +30,11 @@ class Step:
 def number(x: float) -> str:
     """A number for the text of a step: six significant digits."""
     return f"{x:.6g}"
+
+
+def number_up(x: float, digits: int = 3) -> str:
+    """A positive number for a sentence, rounded up: ratios and distances must not look smaller."""
+    return f"{Context(prec=digits, rounding=ROUND_CEILING).create_decimal(Decimal(repr(float(x)))):f}"
 
 
 def limit_expression(coefficient: float, power: float, factors: str, x: str) -> str:

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from decimal import ROUND_CEILING, Context, Decimal
 from typing import Any, cast
 
 import numpy as np
@@ -11,7 +10,7 @@ from pydantic import Field
 from service.assess.classification import HOLDS, UNAIDED, Classification, classify
 from service.assess.criteria import EXPOSURE, RULES
 from service.assess.lines import Lines
-from service.assess.steps import Step
+from service.assess.steps import Step, number_up
 from service.assess.working_class import class_steps, limiting
 from service.contract.result import Known, Model, WorkingStep, step_model
 from service.files import DATA
@@ -95,8 +94,7 @@ def _steps(result: Classification) -> list[Step]:
 
 def _three_digits(value: float) -> str:
     """Rounded up to three digits; what exceeds them by rounding alone is not rounded up."""
-    decimal = Context(prec=3, rounding=ROUND_CEILING).create_decimal(Decimal(repr(value / HOLDS)))
-    return f"{decimal:f}"
+    return number_up(value / HOLDS)
 
 
 def _verdict(ratio: float) -> str:

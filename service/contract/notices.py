@@ -7,6 +7,7 @@ from collections.abc import Iterator
 import numpy as np
 
 from service.assess.evaluate import Evaluation
+from service.assess.steps import number_up
 from service.contract.request import Beam, Cw, EvaluationRequest, Line, Pulse, Train
 from service.contract.result import Notice
 from service.optics.beams import SQRT2
@@ -178,7 +179,7 @@ def _large_area(evaluation: Evaluation, laser: int) -> Iterator[Notice]:
     if np.pi / 4.0 * x[0] * y[0] <= LARGE_AREA_M2:
         return
     reach = beams.reach_m(result.criteria.aperture_m[k : k + 1], np.array([0.1 / strength]))[1]
-    where = f"out to {float(reach[0]):.3g} m" if np.isfinite(reach[0]) else "at any distance"
+    where = f"out to {number_up(reach[0])} m" if np.isfinite(reach[0]) else "at any distance"
     yield Notice(
         code="large-skin-area",
         field=f"lines.{line - int(np.flatnonzero(evaluation.lines.laser == laser)[0])}",

@@ -18,6 +18,7 @@ from service.assess.protection import (
 )
 from service.assess.scales import SLACK
 from service.assess.screens import screen_load
+from service.assess.steps import number_up
 from service.assess.viewing import ratios_at, sum_of_lines
 from service.assess.working_protection import protection_steps
 from service.contract.request import EvaluationRequest, Eyewear, Window
@@ -37,7 +38,7 @@ HEAT_REMARK = (
     "asked for (stricter; no source that was read says how they add)."
 )
 ALIGNMENT_REMARK = (
-    "EN 208 rests on limits older than the rule set's: behind the alignment number named here up to {:.3g} "
+    "EN 208 rests on limits older than the rule set's: behind the alignment number named here up to {} "
     "times the rule set's limit can remain."
 )
 GROUP_REMARK = "The grouping times of pulses in EN 207 are from memory with low confidence."
@@ -215,7 +216,7 @@ def _remarks(needs: list[LineNeed]) -> list[str]:
         remarks.append(HEAT_REMARK)
     remaining = [a.remaining_ratio for a in map(_alignment, needs) if a and a.remaining_ratio]
     if max(remaining, default=0.0) > 1.0 + SLACK:
-        remarks.append(ALIGNMENT_REMARK.format(max(remaining)))
+        remarks.append(ALIGNMENT_REMARK.format(number_up(max(remaining))))
     if any(s.pulses > 1.0 for n in needs for s in n.scales):
         remarks.append(GROUP_REMARK)
     return remarks

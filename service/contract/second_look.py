@@ -12,6 +12,7 @@ from dataclasses import replace
 import numpy as np
 
 from service.assess.evaluate import Evaluation, evaluate
+from service.assess.steps import number_up
 from service.contract.result import Notice
 
 __all__ = ["LONGER_SKIN", "second_looks"]
@@ -36,7 +37,7 @@ def second_looks(evaluation: Evaluation) -> Iterator[Notice]:
                 field="exposure_s",
                 text=f"{float(lines.exposure_s.min()):g} s of visible light rest on a blink, which does not "
                 f"protect skin. Held in the beam for {SKIN_S:g} s, bare skin gets up to "
-                f"{float(skin.worst_ratio[0]):.3g} times its limit, and more than its limit "
+                f"{number_up(skin.worst_ratio[0])} times its limit, and more than its limit "
                 f"{_reach(float(skin.far_m[0]))}.",
             )
     wide = np.flatnonzero(evaluation.conditions.extended)
@@ -59,4 +60,4 @@ def _reach(far_m: float) -> str:
     """Where a limit is exceeded, in words."""
     if np.isinf(far_m):
         return "at every distance"
-    return f"out to {far_m:.4g} m" if far_m > 0.0 else "nowhere"
+    return f"out to {number_up(far_m, 4)} m" if far_m > 0.0 else "nowhere"

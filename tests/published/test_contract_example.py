@@ -29,27 +29,12 @@ import pytest
 from service.contract.answer import answer
 from service.contract.evaluation import EvaluationResult
 from service.contract.request import EvaluationRequest
-
-EXAMPLE = {
-    "label": "Bench 4 alignment beam",
-    "rules": "icnirp-2013",
-    "exposure_s": 0.25,
-    "lines": [
-        {
-            "wavelength_nm": 532,
-            "emission": {"mode": "cw", "power_w": 0.1},
-            "beam": {"profile": "gaussian", "diameter_mm": 2.0, "divergence_mrad": 1.0, "level": "1/e2"},
-            "subtense_mrad": 1.5,
-        }
-    ],
-    "bench": [],
-    "viewing": {},
-}
+from tests.web.client import GOOD
 
 
 @pytest.fixture(scope="module")
 def result() -> EvaluationResult:
-    return answer(EvaluationRequest.model_validate(EXAMPLE))
+    return answer(EvaluationRequest.model_validate(GOOD))
 
 
 def test_eye_criterion(result: EvaluationResult) -> None:
