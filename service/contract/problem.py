@@ -17,6 +17,7 @@ from typing import Any
 
 from pydantic import BaseModel, Field, ValidationError
 
+from service.contract.beam import FIBRE_TAGS
 from service.contract.request import EvaluationRequest
 
 __all__ = [
@@ -32,6 +33,7 @@ __all__ = [
 ]
 
 MODES = ("cw", "pulse", "train")
+ELEMENTS = ("space", "lens", "mirror", "expander", "window", "reflector")
 UNITS = {"nm": "nm", "w": "W", "j": "J", "s": "s", "hz": "Hz", "mm": "mm", "mrad": "mrad", "m": "m"}
 SHOWN = 120
 #: A document lists at most this many errors; the detail counts them all.
@@ -136,8 +138,6 @@ HINTS = {
     "wavelength_nm": "Check the unit: nanometres, so 1.064 µm is 1064.",
     "pulse_s": "Check the unit: seconds, so 10 ns is 1e-8. Limits are published from 1e-13 s (100 fs) on.",
     "exposure_s": "Leave it out for the conventional duration. Limits are published from 1e-13 s to 3e4 s.",
-    "bench": "Send an empty list: elements in the beam are not evaluated by this version.",
-    "profile": "Fibre ends are not evaluated by this version; enter the beam as it leaves the last optic.",
 }
 
 
@@ -162,6 +162,8 @@ def _allowed(path: list[str]) -> str:
     name = next((p for p in reversed(path) if not p.isdigit()), "")
     if name == "mode":
         return ", ".join(MODES)
+    if name == "element":
+        return ", ".join(ELEMENTS)
     if name == "emission":
         return "an object with mode cw, pulse or train"
     if not name:
@@ -203,9 +205,19 @@ def shown(value: Any) -> Any:
 
 
 def _path(loc: tuple[int | str, ...]) -> list[str]:
-    """Path of a field as the sender knows it: without the tag of the emission mode."""
+    """Path of a field as the sender knows it: without the tags of the unions."""
     parts = [str(p) for p in loc]
-    return [p for k, p in enumerate(parts) if not (k and parts[k - 1] == "emission" and p in MODES)]
+    path = []
+    for k, part in enumerate(parts):
+        before, earlier = parts[k - 1] if k else "", parts[k - 2] if k > 1 else ""
+        tagged = (
+            (before == "emission" and part in MODES)
+            or (before == "beam" and part in ("free", *FIBRE_TAGS))
+            or (earlier == "bench" and part in ELEMENTS)
+        )
+        if not tagged:
+            path.append(part)
+    return path
 
 
 def _own_words(message: str) -> str:
@@ -234,7 +246,7 @@ def invalid_request(error: ValidationError) -> InvalidRequest:
     for item in error.errors(include_url=False)[: 4 * LISTED]:
         kind, path = item["type"], _path(item["loc"])
         if kind in ("union_tag_invalid", "union_tag_not_found"):
-            path.append("mode")
+            path.append("element" if path[:1] == ["bench"] else "mode")
         if kind == "value_error" and path[-1:] == ["beam"]:
             path.append("diameter_mm")
         name = next((p for p in reversed(path) if not p.isdigit()), "")
@@ -242,8 +254,8 @@ def invalid_request(error: ValidationError) -> InvalidRequest:
         if kind in ("missing", "union_tag_not_found"):
             value, message = None, "this field is missing"
         elif kind == "union_tag_invalid":
-            value = given.get("mode") if isinstance(given, dict) else given
-            message = "unknown mode"
+            value = given.get(path[-1]) if isinstance(given, dict) else given
+            message = f"unknown {path[-1]}"
         elif kind == "extra_forbidden":
             value, message = given, "unknown field"
         elif kind in ("model_type", "model_attributes_type", "dict_type", "union_tag_not_found"):
