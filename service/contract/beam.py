@@ -19,7 +19,7 @@ from pydantic import (
 from service.contract.strict import Strict
 from service.optics.beams import SQRT2
 
-__all__ = ["FIBRE_TAGS", "AnyBeam", "Beam", "FibreMultimode", "FibreSingleMode", "Moments"]
+__all__ = ["KINDS", "AnyBeam", "Beam", "FibreMultimode", "FibreSingleMode", "Moments"]
 
 #: Smallest divergence other than none [mrad]; no source of light spreads less.
 LEAST_MRAD = 1e-6
@@ -156,13 +156,14 @@ class FibreMultimode(Strict):
         return Moments(False, across, across, angle, angle, 0.0)
 
 
-FIBRE_TAGS = ("fibre_single_mode", "fibre_multimode")
+#: Models by the kind of beam.
+KINDS = {"free": "Beam", "fibre_single_mode": "FibreSingleMode", "fibre_multimode": "FibreMultimode"}
 
 
 def _tag(value: Any) -> str:
     """Which kind of beam: a fibre end by its name, anything else by waist and divergence."""
     profile = value.get("profile") if isinstance(value, dict) else getattr(value, "profile", None)
-    return profile if profile in FIBRE_TAGS else "free"
+    return profile if profile in KINDS else "free"
 
 
 AnyBeam = Annotated[

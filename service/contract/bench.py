@@ -16,7 +16,7 @@ from service.optics.beams import Beams
 from service.optics.elements import expander, fresnel, lens, mirror, plate, space, through
 from service.rules.materials import material_row, materials
 
-__all__ = ["BenchElement", "Element", "apply", "bench_steps"]
+__all__ = ["ELEMENTS", "BenchElement", "Element", "apply", "bench_steps"]
 
 Floats = NDArray[np.float64]
 Share = Annotated[float, Field(ge=1e-20, le=1)]
@@ -108,6 +108,7 @@ class Reflector(Strict):
         return max(plate(one) if self.surfaces == 2 else one, 1e-20)
 
 
+ELEMENTS = ("space", "lens", "mirror", "expander", "window", "reflector")
 BenchElement = Space | Lens | Mirror | Expander | WindowElement | Reflector
 Element = Annotated[BenchElement, Field(discriminator="element")]
 

@@ -10,9 +10,9 @@ from service.assess.viewing import ratios_at, sums_of_lines
 from service.contract.request import EvaluationRequest
 from service.contract.result import Model
 
-Floats = NDArray[np.float64]
-
 __all__ = ["CriterionOverDistance", "OverDistanceAnswer", "over_distance_of"]
+
+Floats = NDArray[np.float64]
 
 
 class CriterionOverDistance(Model):
