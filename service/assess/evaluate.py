@@ -16,7 +16,7 @@ from service.rules.compiled import CompiledRules
 from service.rules.limits import Conditions
 from service.rules.ruleset import TARGETS
 
-__all__ = ["Evaluation", "Sums", "TargetResult", "evaluate", "optical_density"]
+__all__ = ["Evaluation", "Sums", "TargetResult", "evaluate", "evaluate_target", "optical_density"]
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.intp]
@@ -97,6 +97,13 @@ def evaluate(lines: Lines, rules: CompiledRules) -> Evaluation:
     cell = rules.cells(at, found.line, found.time_s)
     results = [_target(target, lines, found, cell, at, rules) for target in TARGETS]
     return Evaluation(rules, lines, at, found, *results)
+
+
+def evaluate_target(target: str, lines: Lines, rules: CompiledRules) -> TargetResult:
+    """What `evaluate` gives for one target (eye or skin) alone."""
+    at = rules.conditions(lines.wavelength_nm, lines.subtense_mrad)
+    found = exposures(lines, at, rules)
+    return _target(target, lines, found, rules.cells(at, found.line, found.time_s), at, rules)
 
 
 def _target(

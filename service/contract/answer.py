@@ -4,14 +4,17 @@ from __future__ import annotations
 
 import hashlib
 import json
+from collections.abc import Sequence
+from dataclasses import dataclass
 from typing import Any, cast
 
 import numpy as np
+from numpy.typing import NDArray
 
 from service import __version__
 from service.assess.criteria import AVERAGE, EXPOSURE, RULES, TRAIN_RULE
 from service.assess.evaluate import Evaluation, TargetResult, evaluate, optical_density
-from service.assess.lines import PULSE
+from service.assess.lines import PULSE, Lines
 from service.assess.scales import spot_area_m2
 from service.assess.steps import Step
 from service.assess.viewing import ratios_at, sum_of_lines
@@ -34,13 +37,13 @@ from service.contract.result import (
     TargetAnswer,
     step_model,
 )
-from service.contract.second_look import second_looks
+from service.contract.second_look import second_look
 from service.files import DATA
 from service.rules.compiled import CompiledRules, compiled_rules
 from service.rules.eyewear import eyewear_tables
 from service.rules.tables import read_toml
 
-__all__ = ["answer", "cautions", "compare", "rule_set", "rule_sets"]
+__all__ = ["Batch", "answer", "cautions", "compare", "evaluate_batch", "rule_set", "rule_sets"]
 
 
 def rule_sets() -> dict[str, CompiledRules]:
@@ -72,13 +75,31 @@ def rule_set(rules_id: str) -> CompiledRules:
     return found
 
 
+@dataclass(slots=True)
+class Batch:
+    """Requests of one rule set evaluated in one pass; a single request is a batch of one.
+
+    `lines` as they leave the laser; `duration_row` of each line, -1 where its duration was chosen.
+    """
+
+    requests: Sequence[EvaluationRequest]
+    lines: Lines
+    duration_row: NDArray[np.intp]
+    evaluation: Evaluation
+
+
+def evaluate_batch(requests: Sequence[EvaluationRequest], rules: CompiledRules) -> Batch:
+    """Evaluate requests together, whatever rule set they name. At least one request."""
+    lines, duration_row = lines_of(requests, rules)
+    with np.errstate(over="ignore", under="ignore"):
+        return Batch(requests, lines, duration_row, evaluate(lines, rules))
+
+
 def answer(request: EvaluationRequest) -> EvaluationResult:
     """Evaluate one request. Raises InvalidRequest where its rule set is unknown."""
-    rules = rule_set(request.rules)
-    lines, duration_rows = lines_of([request], rules)
+    batch = evaluate_batch([request], rule_set(request.rules))
     with np.errstate(over="ignore", under="ignore"):
-        evaluation = evaluate(lines, rules)
-        return _result(request, evaluation, duration_rows.tolist())
+        return _result(request, batch.evaluation, batch.duration_row.tolist())
 
 
 def compare(request: EvaluationRequest) -> Comparison:
@@ -115,7 +136,7 @@ def _result(request: EvaluationRequest, evaluation: Evaluation, duration_rows: l
         measures=measures_for(
             classes[0].hazard_class, evaluation.lines.wavelength_nm.tolist(), _irradiance(evaluation)
         ),
-        notices=[*second_looks(evaluation), *notices_of(request, evaluation, 0)],
+        notices=[*second_look(evaluation).notices(0), *notices_of(request, evaluation, 0)],
         cautions=CAUTIONS,
         provenance=Provenance(
             service_version=__version__,

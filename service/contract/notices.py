@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 
 import numpy as np
+from numpy.typing import NDArray
 
 from service.assess.evaluate import Evaluation
 from service.assess.steps import number_up
@@ -12,8 +13,9 @@ from service.contract.request import Beam, Cw, EvaluationRequest, Line, Pulse, T
 from service.contract.result import Notice
 from service.optics.beams import SQRT2
 from service.rules.ruleset import TARGETS
+from service.rules.tables import Row
 
-__all__ = ["notices_of"]
+__all__ = ["input_notices", "lasers_with_result_notices", "notices_of"]
 
 #: Above these a value is asked about (common practice, no source).
 WIDE_BEAM_MM = 1000.0
@@ -28,10 +30,16 @@ LARGE_AREA_M2 = 0.01
 def notices_of(request: EvaluationRequest, evaluation: Evaluation, laser: int) -> list[Notice]:
     """Every notice for one laser of an evaluation, in the order of its fields."""
     members = np.flatnonzero(evaluation.lines.laser == laser)
-    found: list[Notice] = []
-    for number, (line, k) in enumerate(zip(request.lines, members, strict=True)):
-        found += _line_notices(f"lines.{number}", line, float(evaluation.lines.exposure_s[k]))
+    found = input_notices(request, evaluation.lines.exposure_s[members].tolist())
     found += _result_notices(evaluation, laser, members)
+    return found
+
+
+def input_notices(request: EvaluationRequest, exposure_s: list[float]) -> list[Notice]:
+    """The notices that need no result; `exposure_s` of each line of the request [s]."""
+    found: list[Notice] = []
+    for number, (line, seconds) in enumerate(zip(request.lines, exposure_s, strict=True)):
+        found += _line_notices(f"lines.{number}", line, seconds)
     return found
 
 
@@ -137,6 +145,28 @@ def _across(beam: Beam) -> str:
     return f"{x:.4g}" if x == y else f"{x:.4g} x {y:.4g}"
 
 
+def lasers_with_result_notices(evaluation: Evaluation) -> NDArray[np.bool_]:
+    """Which lasers of a batch may have a notice beyond `input_notices`: none has where this is False."""
+    rules, lines, pulses = evaluation.rules, evaluation.lines, evaluation.exposures
+    repetition = np.array([*_uncertain(rules.repetition.rows), False])
+    doubtful = np.zeros(lines.lasers, dtype=bool)
+    for target in TARGETS:
+        result = evaluation.target(target)
+        criteria = result.criteria
+        uncertain = np.array(_uncertain(rules.rules.limits))[criteria.row]
+        uncertain |= repetition[pulses.c_p_row[criteria.exposure]]
+        doubtful[lines.laser[criteria.line[uncertain]]] = True
+        doubtful |= np.isinf(result.far_m)
+    skin, k = evaluation.skin, evaluation.skin.governing
+    infrared = lines.wavelength_nm[skin.criteria.line[k]] >= 1400.0
+    doubtful |= infrared & (pulses.time_s[skin.criteria.exposure[k]] >= 10.0) & (skin.hazard_ratio[k] > 0.1)
+    return doubtful
+
+
+def _uncertain(rows: Sequence[Row]) -> list[bool]:
+    return [row.note.startswith("uncertain") for row in rows]
+
+
 def _result_notices(evaluation: Evaluation, laser: int, members: np.ndarray) -> Iterator[Notice]:
     rules = evaluation.rules.rules
     told: set[tuple[int, str]] = set()
@@ -148,7 +178,7 @@ def _result_notices(evaluation: Evaluation, laser: int, members: np.ndarray) -> 
                 field=None,
                 text=f"For the {target} the beam never falls below its limit: there is no hazard distance.",
             )
-        criteria = np.flatnonzero(np.isin(result.criteria.line, members))
+        criteria = np.arange(*np.searchsorted(result.criteria.line, [members[0], members[-1] + 1]))
         for k in criteria:
             row = rules.limits[result.criteria.row[k]]
             number = int(evaluation.exposures.c_p_row[result.criteria.exposure[k]])
