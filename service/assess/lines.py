@@ -50,6 +50,12 @@ class Lines:
         columns = {f.name: getattr(self, f.name)[index] for f in fields(self) if f.name not in APART}
         return Lines(laser=number[self.laser[index]], beams=self.beams.take(index), **columns)
 
+    def take(self, index: Ints, exposure_s: Floats) -> Lines:
+        """The lines at `index` with exposure durations [s] of their own, each a laser of its own."""
+        columns = {f.name: getattr(self, f.name)[index] for f in fields(self) if f.name not in APART}
+        columns["exposure_s"] = exposure_s
+        return Lines(laser=np.arange(len(index)), beams=self.beams.take(index), **columns)
+
     @property
     def count(self) -> int:
         """Number of lines."""

@@ -157,10 +157,7 @@ def lasers_with_result_notices(evaluation: Evaluation) -> NDArray[np.bool_]:
         uncertain |= repetition[pulses.c_p_row[criteria.exposure]]
         doubtful[lines.laser[criteria.line[uncertain]]] = True
         doubtful |= np.isinf(result.far_m)
-    skin, k = evaluation.skin, evaluation.skin.governing
-    infrared = lines.wavelength_nm[skin.criteria.line[k]] >= 1400.0
-    doubtful |= infrared & (pulses.time_s[skin.criteria.exposure[k]] >= 10.0) & (skin.hazard_ratio[k] > 0.1)
-    return doubtful
+    return doubtful | _large_area(evaluation)
 
 
 def _uncertain(rows: Sequence[Row]) -> list[bool]:
@@ -189,28 +186,35 @@ def _result_notices(evaluation: Evaluation, laser: int, members: np.ndarray) -> 
                     told.add((line, uncertain.note))
                     text = f"{rules.title}, row {uncertain.row}: {uncertain.note}."
                     yield Notice(code="uncertain-value", field=f"lines.{line}", text=text)
-    yield from _large_area(evaluation, laser)
+    if _large_area(evaluation)[laser]:
+        yield _large_area_notice(evaluation, laser)
 
 
-def _large_area(evaluation: Evaluation, laser: int) -> Iterator[Notice]:
-    """The skin limits beyond 1400 nm fall for exposed areas above 100 cm2; that is not applied."""
+def _large_area(evaluation: Evaluation) -> NDArray[np.bool_]:
+    """Lasers for which the skin limits beyond 1400 nm fall, as they do above 100 cm2; that is not applied."""
+    result, lines = evaluation.skin, evaluation.lines
+    k = result.governing
+    line = result.criteria.line[k]
+    time = evaluation.exposures.time_s[result.criteria.exposure[k]]
+    there = (lines.wavelength_nm[line] >= 1400.0) & (time >= 10.0) & (result.hazard_ratio[k] > 0.1)
+    which = np.flatnonzero(there)
+    if which.size:
+        far = result.far_m[which]
+        x, y = lines.beams.take(line[which]).diameters_m(np.where(np.isfinite(far), far, 0.0))
+        there[which] = np.pi / 4.0 * x * y > LARGE_AREA_M2
+    return there
+
+
+def _large_area_notice(evaluation: Evaluation, laser: int) -> Notice:
+    """How far the skin would be at risk by the lower limit."""
     result = evaluation.skin
     k = int(result.governing[laser])
     line = int(result.criteria.line[k])
-    time = float(evaluation.exposures.time_s[result.criteria.exposure[k]])
-    if evaluation.lines.wavelength_nm[line] < 1400.0 or time < 10.0:
-        return
-    far = float(result.far_m[laser])
-    strength = float(result.criteria.strength[k])
-    if float(result.hazard_ratio[k]) <= 0.1:
-        return
     beams = evaluation.lines.beams.take(np.array([line]))
-    x, y = beams.diameters_m(np.array([far if np.isfinite(far) else 0.0]))
-    if np.pi / 4.0 * x[0] * y[0] <= LARGE_AREA_M2:
-        return
+    strength = float(result.criteria.strength[k])
     reach = beams.reach_m(result.criteria.aperture_m[k : k + 1], np.array([0.1 / strength]))[1]
     where = f"out to {number_up(reach[0])} m" if np.isfinite(reach[0]) else "at any distance"
-    yield Notice(
+    return Notice(
         code="large-skin-area",
         field=f"lines.{line - int(np.flatnonzero(evaluation.lines.laser == laser)[0])}",
         text="Where more than 100 cm2 of skin is exposed beyond 1400 nm for longer than 10 s, the published "

@@ -18,7 +18,7 @@ from service.contract.result import Notice
 
 __all__ = ["LONGER_SKIN", "SecondLook", "second_look"]
 
-LONGER_SKIN = "skin-longer-exposure"
+LONGER_SKIN, EXTENDED = "skin-longer-exposure", "extended-source"
 #: Seconds for which bare skin may stay in a visible beam (common practice, no source).
 SKIN_S = 10.0
 #: Exposures of visible light up to this duration are taken to end by a blink (IEC 60825-1, Class 2).
@@ -50,6 +50,11 @@ class SecondLook:
         result: NDArray[np.bool_] = self.point_far_m > self.evaluation.eye.far_m
         return result
 
+    def codes(self) -> list[list[str]]:
+        """The codes of the notices for each laser, in the order of `notices`."""
+        pairs = zip(self.longer().tolist(), self.nearer().tolist(), strict=True)
+        return [[LONGER_SKIN] * longer + [EXTENDED] * nearer for longer, nearer in pairs]
+
     def notices(self, laser: int) -> Iterator[Notice]:
         """Notices for one laser."""
         lines = self.evaluation.lines
@@ -66,7 +71,7 @@ class SecondLook:
         if self.nearer()[laser]:
             wide = int(np.flatnonzero(self.evaluation.conditions.extended[members])[0])
             yield Notice(
-                code="extended-source",
+                code=EXTENDED,
                 field=f"lines.{wide}.subtense_mrad",
                 text="The angle of the source is taken as the same at every distance; a real source looks "
                 "smaller from farther away, and a narrow beam looks like a point. As a point source this "
