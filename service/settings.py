@@ -17,12 +17,14 @@ class SettingsError(ValueError):
 class Settings:
     """What an operator may set.
 
-    `host`, `port`: where `blinkline serve` listens. `body_limit`: largest request body read [bytes].
+    `host`, `port`: where `blinkline serve` listens. `body_limit`: largest request body read [bytes],
+    `bulk_body_limit` that of `evaluate/bulk`, unpacked.
     """
 
     host: str = "127.0.0.1"
     port: int = 8321
     body_limit: int = 1_000_000
+    bulk_body_limit: int = 50_000_000
 
     @classmethod
     def from_environment(cls, environment: Mapping[str, str] = os.environ) -> Settings:

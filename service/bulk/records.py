@@ -83,7 +83,7 @@ class Records:
         """The whole answer as NDJSON, one piece per pass."""
         for chunk in self.chunks():
             yield b"\n".join(chunk) + b"\n"
-        yield to_json(self.closing().model_dump()) + b"\n"
+        yield to_json({"closing": self.closing().model_dump()}) + b"\n"
 
     def closing(self) -> Closing:
         """The closing record."""
