@@ -10,6 +10,10 @@ import uvicorn
 
 from service import __version__
 from service.app import create_app
+from service.bulk import command
+from service.contract.answer import rule_sets
+from service.contract.classification import schemes
+from service.garbage import settle
 from service.rules.tables import TableError
 from service.settings import Settings, SettingsError
 
@@ -24,10 +28,14 @@ def main(arguments: list[str] | None = None) -> int:
     serve = commands.add_parser("serve", help="serve pages and API")
     serve.add_argument("--host", help="address to listen on (default: BLINKLINE_HOST or 127.0.0.1)")
     serve.add_argument("--port", type=int, help="port to listen on (default: BLINKLINE_PORT or 8321)")
+    command.add_command(commands)
     chosen = parser.parse_args(arguments)
+    if chosen.command == "evaluate":
+        return _evaluate(chosen)
     try:
         settings = Settings.from_environment()
         app = create_app(settings)
+        settle()
     except (SettingsError, TableError) as error:
         print(f"blinkline: {error}", file=sys.stderr)
         return 2
@@ -41,6 +49,18 @@ def main(arguments: list[str] | None = None) -> int:
     config = uvicorn.Config(app, log_level="warning", server_header=False)
     uvicorn.Server(config).run(sockets=[listener])
     return 0
+
+
+def _evaluate(chosen: argparse.Namespace) -> int:
+    """Evaluate a file. Returns the exit code."""
+    try:
+        rule_sets()
+        schemes()
+    except TableError as error:
+        print(f"blinkline: {error}", file=sys.stderr)
+        return 2
+    settle()
+    return command.run(chosen)
 
 
 def _listen(host: str, port: int) -> socket.socket:

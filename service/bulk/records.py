@@ -55,15 +55,20 @@ class Records:
     items : what was sent, one by one: a line of NDJSON as bytes, JSON data, or a Problem for what cannot be
         used. A Problem that is raised ends the stream and is told in the closing record.
     detail : `summary` or `full`
-    first : index of the first item
+    rules_id : rule set of requests that name none; None leaves that to the request's default
     """
 
-    def __init__(self, items: Iterator[Any], detail: Detail, first: int = 0) -> None:
-        self.items, self.detail = items, detail
+    def __init__(self, items: Iterator[Any], detail: Detail, rules_id: str | None = None) -> None:
+        self.items, self.detail, self._rules_id = items, detail, rules_id
         self.answered = self.problems = 0
         self.stopped: str | None = None
         self.rules: dict[str, RulesInfo] = {}
-        self._next = first
+        self._next = 0
+
+    def go_on(self, answered: int, problems: int, rules: Sequence[str]) -> None:
+        """Count on from records that were made before, by the rule sets named."""
+        self.answered, self.problems, self._next = answered, problems, answered + problems
+        self.rules = {rules_id: _info(rules_id) for rules_id in rules}
 
     def chunks(self) -> Iterator[list[bytes]]:
         """Records without line ends, a list per pass; the closing record is not among them."""
@@ -83,7 +88,11 @@ class Records:
         """The whole answer as NDJSON, one piece per pass."""
         for chunk in self.chunks():
             yield b"\n".join(chunk) + b"\n"
-        yield to_json({"closing": self.closing().model_dump()}) + b"\n"
+        yield self.last_line()
+
+    def last_line(self) -> bytes:
+        """The line with the closing record."""
+        return to_json({"closing": self.closing().model_dump()}) + b"\n"
 
     def closing(self) -> Closing:
         """The closing record."""
@@ -106,6 +115,8 @@ class Records:
                 if len(item) > LINE_LIMIT:
                     raise BodyTooLarge(f"the request is larger than {LINE_LIMIT} bytes")
                 item = read_json(item)
+            if self._rules_id is not None and isinstance(item, dict):
+                item = {"rules": self._rules_id, **item}
             request = request_of(item)
             if request.rules not in self.rules:
                 self.rules[request.rules] = _info(request.rules)

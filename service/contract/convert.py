@@ -12,7 +12,7 @@ from service.contract.request import Cw, EvaluationRequest, Train
 from service.optics.beams import SQRT2, Beams
 from service.rules.compiled import CompiledRules
 
-__all__ = ["lines_of"]
+__all__ = ["conventional_durations", "lines_of"]
 
 
 def lines_of(requests: Sequence[EvaluationRequest], rules: CompiledRules) -> tuple[Lines, NDArray[np.intp]]:
@@ -49,13 +49,24 @@ def lines_of(requests: Sequence[EvaluationRequest], rules: CompiledRules) -> tup
             )
     columns = np.array(rows).T.copy()
     wavelength, emitted_, pulse_, rate_, exposure, subtense, *beam_columns = columns
-    duration_row = np.full(len(rows), -1, dtype=np.intp)
-    conventional = np.flatnonzero(np.isnan(exposure))
-    if conventional.size:
-        seconds, row = rules.default_duration(wavelength[conventional])
-        exposure[conventional], duration_row[conventional] = seconds, row
+    duration_row = conventional_durations(wavelength, exposure, rules)
     beams = Beams(np.array(tophat), *beam_columns)
     lines = Lines(
         np.array(laser), wavelength, np.array(mode), emitted_, pulse_, rate_, exposure, subtense, beams
     )
     return lines, duration_row
+
+
+def conventional_durations(
+    wavelength_nm: NDArray[np.float64], exposure_s: NDArray[np.float64], rules: CompiledRules
+) -> NDArray[np.intp]:
+    """Put the rule set's conventional duration, in place, where the exposure duration [s] is NaN.
+
+    Returns the duration row of each line, -1 where its duration was chosen.
+    """
+    duration_row = np.full(len(exposure_s), -1, dtype=np.intp)
+    conventional = np.flatnonzero(np.isnan(exposure_s))
+    if conventional.size:
+        seconds, row = rules.default_duration(wavelength_nm[conventional])
+        exposure_s[conventional], duration_row[conventional] = seconds, row
+    return duration_row
