@@ -40,7 +40,7 @@ class ClassLimits:
     ratio: dict[str, Floats]
     measured: dict[str, Ints]
 
-    def of(self, which: Ints) -> ClassLimits:
+    def of(self, which: slice) -> ClassLimits:
         """The criteria at `which`."""
         columns = (getattr(self, name)[which] for name in ("exposure", "line", "row", "limit"))
         named = (
@@ -77,14 +77,17 @@ def classify(lines: Lines, scheme: CompiledScheme) -> Classification:
     """
     lines = replace(lines, wavelength_nm=scheme.printed(lines.wavelength_nm))
     at = scheme.conditions(lines.wavelength_nm, lines.subtense_mrad)
-    every, target = _criteria(lines, scheme)
-    limits = {name: every.of(np.flatnonzero(target == n)) for n, name in enumerate(scheme.targets)}
+    every, target = _criteria(lines, scheme, at)
+    # The criteria stand target by target.
+    ends = np.searchsorted(target, np.arange(len(scheme.targets) + 1)).tolist()
+    limits = {name: every.of(slice(*ends[n : n + 2])) for n, name in enumerate(scheme.targets)}
     worst = _per_laser(every, target, lines, scheme)
-    number = _choose(lines, scheme, worst)
-    return Classification(scheme, lines, at, number, _available(lines, scheme, limits), limits, worst)
+    exists = [_exists(rule, lines) for rule in scheme.scheme.classes]
+    number = _choose(lines, scheme, worst, exists)
+    return Classification(scheme, lines, at, number, _available(lines, scheme, limits, exists), limits, worst)
 
 
-def _criteria(lines: Lines, scheme: CompiledScheme) -> tuple[ClassLimits, Ints]:
+def _criteria(lines: Lines, scheme: CompiledScheme, at: Conditions) -> tuple[ClassLimits, Ints]:
     """Limits and accessible emissions of every line by the limits of every class, in one pass.
 
     Also the number of the limits (in `scheme.targets`) of each criterion, ascending.
@@ -92,7 +95,7 @@ def _criteria(lines: Lines, scheme: CompiledScheme) -> tuple[ClassLimits, Ints]:
     base = np.stack([scheme.time_base(target, lines.wavelength_nm) for target in scheme.targets])
     target, line = np.nonzero(np.isfinite(base))
     timed = lines.take(line, base[target, line])
-    at = scheme.conditions(timed.wavelength_nm, timed.subtense_mrad)
+    at = at.take(line)
     found = exposures(timed, at, scheme)
     cell = scheme.cells(at, found.line, found.time_s)
     of_target = target[found.line]
@@ -171,31 +174,38 @@ def _exists(rule: ClassRule, lines: Lines) -> NDArray[np.bool_]:
 
 
 def _available(
-    lines: Lines, scheme: CompiledScheme, limits: dict[str, ClassLimits]
+    lines: Lines, scheme: CompiledScheme, limits: dict[str, ClassLimits], exists: list[NDArray[np.bool_]]
 ) -> dict[str, NDArray[np.bool_]]:
     """Whether some class with these limits exists for each laser, and the limits for one of its lines."""
     found = {}
     for target, table in limits.items():
-        rules = [rule for rule in scheme.scheme.classes if rule.limits == target]
-        exists = np.any([_exists(rule, lines) for rule in rules], axis=0) if rules else True
         has_rows = np.bincount(lines.laser[table.line], minlength=lines.lasers) > 0
-        found[target] = has_rows & exists
+        named = [
+            there for rule, there in zip(scheme.scheme.classes, exists, strict=True) if rule.limits == target
+        ]
+        found[target] = has_rows & np.logical_or.reduce(named) if named else has_rows
     return found
 
 
-def _choose(lines: Lines, scheme: CompiledScheme, worst: dict[str, dict[str, Floats]]) -> Ints:
+def _choose(
+    lines: Lines,
+    scheme: CompiledScheme,
+    worst: dict[str, dict[str, Floats]],
+    exists: list[NDArray[np.bool_]],
+) -> Ints:
     """Number of the first class whose conditions hold; the last class always does."""
     number = np.full(lines.lasers, len(scheme.scheme.classes) - 1, dtype=np.intp)
-    open_ = np.all([r <= HOLDS for r in worst[scheme.scheme.ceiling].values()], axis=0)
+    holds_all = {target: np.maximum.reduce(list(r.values())) <= HOLDS for target, r in worst.items()}
+    open_ = holds_all[scheme.scheme.ceiling]
     for k, rule in enumerate(scheme.scheme.classes[:-1]):
         assert rule.limits is not None
-        ratios = worst[rule.limits]
         if rule.aided_limits is None:
-            holds = np.all([r <= HOLDS for r in ratios.values()], axis=0)
+            holds = holds_all[rule.limits] & exists[k]
         else:
-            aided = [worst[rule.aided_limits][c] <= HOLDS for c in ratios if c != UNAIDED]
-            holds = np.all([ratios[UNAIDED] <= HOLDS, *aided], axis=0)
-        holds &= _exists(rule, lines)
+            ratios, aided = worst[rule.limits], worst[rule.aided_limits]
+            holds = (ratios[UNAIDED] <= HOLDS) & exists[k]
+            for condition in (c for c in ratios if c != UNAIDED):
+                holds &= aided[condition] <= HOLDS
         number[open_ & holds] = k
-        open_ &= ~holds
+        open_ = open_ & ~holds
     return number

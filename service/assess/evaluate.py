@@ -111,7 +111,7 @@ def _target(
 ) -> TargetResult:
     criteria = Criteria.of(target, found, cell, at, rules)
     laser = lines.laser[criteria.line]
-    start = np.flatnonzero(np.r_[True, laser[1:] != laser[:-1]])
+    start = np.r_[True, laser[1:] != laser[:-1]].nonzero()[0]
     place_of_line = lines.beams.narrowest_m()
     place = place_of_line[criteria.line]
     ratio = _ratio_at(criteria, lines, place_of_line)
@@ -131,12 +131,12 @@ def _target(
         worst[again], lasers_place[again] = sums.hazard_ratio[last], sums.place_m[last]
         np.maximum.at(lasers_far, sums.laser, sums.far_m)
         np.minimum.at(lasers_near, sums.laser, np.where(sums.far_m > 0.0, sums.near_m, np.inf))
-        moved = np.flatnonzero(lasers_place[laser] != place)
+        moved = (lasers_place[laser] != place).nonzero()[0]
         if moved.size:
             beams = lines.beams.take(criteria.line[moved])
             fraction = beams.fraction(criteria.aperture_m[moved], lasers_place[laser[moved]])
             ratio[moved] = criteria.strength[moved] * fraction
-    governing = np.flatnonzero(ratio == np.maximum.reduceat(ratio, start)[laser])
+    governing = (ratio == np.maximum.reduceat(ratio, start)[laser]).nonzero()[0]
     governing = governing[np.r_[True, laser[governing][1:] != laser[governing][:-1]]]
     lasers_near = np.where(np.isinf(lasers_near), 0.0, lasers_near)
     return TargetResult(criteria, ratio, far, lasers_place, worst, lasers_near, lasers_far, governing, sums)
@@ -152,7 +152,7 @@ def _ratio_at(criteria: Criteria, lines: Lines, place_m: Floats) -> Floats:
 def _alone(criteria: Criteria, lines: Lines, place: Floats, ratio: Floats) -> tuple[Floats, Floats]:
     """Near and far end [m] of the zone in which each criterion alone is exceeded; 0, 0 if nowhere."""
     near, far = np.zeros(ratio.shape), np.zeros(ratio.shape)
-    over = np.flatnonzero(ratio > 1.0)
+    over = (ratio > 1.0).nonzero()[0]
     if over.size:
         beams = lines.beams.take(criteria.line[over])
         aperture, strength = criteria.aperture_m[over], criteria.strength[over]
@@ -170,7 +170,7 @@ def _sums(criteria: Criteria, lines: Lines, rules: CompiledRules) -> Sums | None
     """Groups of criteria that add, for the lasers with several lines."""
     several = np.bincount(lines.laser, minlength=lines.lasers) > 1
     laser = lines.laser[criteria.line]
-    member = np.flatnonzero(several[laser])
+    member = several[laser].nonzero()[0]
     if not member.size:
         return None
     kind = rules.additivity[criteria.row[member]]
@@ -187,4 +187,4 @@ def _sums(criteria: Criteria, lines: Lines, rules: CompiledRules) -> Sums | None
     )
     place, peak = groups.peaks()
     near, far = groups.zones(place, peak)
-    return Sums(laser[order][new], np.split(order, np.flatnonzero(new)[1:]), place, peak, near, far)
+    return Sums(laser[order][new], np.split(order, new.nonzero()[0][1:]), place, peak, near, far)

@@ -65,7 +65,7 @@ def conventional_durations(
     Returns the duration row of each line, -1 where its duration was chosen.
     """
     duration_row = np.full(len(exposure_s), -1, dtype=np.intp)
-    conventional = np.flatnonzero(np.isnan(exposure_s))
+    conventional = np.isnan(exposure_s).nonzero()[0]
     if conventional.size:
         seconds, row = rules.default_duration(wavelength_nm[conventional])
         exposure_s[conventional], duration_row[conventional] = seconds, row

@@ -152,7 +152,7 @@ class CompiledScheme(LimitTable):
         number = self._measured[condition][w, t]
         aperture: Floats = self._measured_m[number]
         power = self._measured_power[number]
-        k = np.flatnonzero(power)
+        k = power.nonzero()[0]
         if k.size:
             aperture[k] *= time_s[k] ** power[k]
         return aperture, self._measured_at_m[number], number
