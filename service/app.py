@@ -15,7 +15,7 @@ from service.contract.problem import NotFound, Problem
 from service.files import DATA
 from service.rules.eyewear import eyewear_tables
 from service.settings import Settings
-from service.web import api, bulk, health, pages, rules_pages, static
+from service.web import api, bulk, health, metrics, pages, rules_pages, static
 from service.web.headers import Envelope
 from service.web.openapi import describe
 from service.web.problems import PlainProblem, problem_response
@@ -36,7 +36,15 @@ def create_app(settings: Settings | None = None) -> FastAPI:
         redoc_url=None,
     )
     app.state.settings = settings or Settings()
-    for router in (api.router, bulk.router, health.router, pages.router, rules_pages.router, static.router):
+    for router in (
+        api.router,
+        bulk.router,
+        health.router,
+        metrics.router,
+        pages.router,
+        rules_pages.router,
+        static.router,
+    ):
         app.include_router(router)
     describe(app)
 
@@ -61,5 +69,6 @@ def create_app(settings: Settings | None = None) -> FastAPI:
     }
     for kind, handler in handlers.items():
         app.add_exception_handler(kind, handler)
+    app.add_middleware(metrics.Measured)
     app.add_middleware(Envelope, on_failure=on_failure)
     return app
