@@ -17,7 +17,7 @@ from service.rules.airspace import airspace_tables
 from service.rules.eyewear import eyewear_tables
 from service.rules.materials import materials
 from service.settings import Settings
-from service.web import api, health, pages, rules_pages, static
+from service.web import api, bulk, health, metrics, pages, rules_pages, static
 from service.web.headers import Envelope
 from service.web.openapi import describe
 from service.web.problems import PlainProblem, problem_response
@@ -40,7 +40,15 @@ def create_app(settings: Settings | None = None) -> FastAPI:
         redoc_url=None,
     )
     app.state.settings = settings or Settings()
-    for router in (api.router, health.router, pages.router, rules_pages.router, static.router):
+    for router in (
+        api.router,
+        bulk.router,
+        health.router,
+        metrics.router,
+        pages.router,
+        rules_pages.router,
+        static.router,
+    ):
         app.include_router(router)
     describe(app)
 
@@ -65,5 +73,6 @@ def create_app(settings: Settings | None = None) -> FastAPI:
     }
     for kind, handler in handlers.items():
         app.add_exception_handler(kind, handler)
+    app.add_middleware(metrics.Measured)
     app.add_middleware(Envelope, on_failure=on_failure)
     return app

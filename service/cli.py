@@ -3,15 +3,14 @@
 from __future__ import annotations
 
 import argparse
-import socket
 import sys
 
-import uvicorn
-
-from service import __version__
-from service.app import create_app
+from service import __version__, serve
+from service.bulk import command as evaluate
+from service.contract.answer import rule_sets
+from service.contract.classification import schemes
+from service.garbage import settle
 from service.rules.tables import TableError
-from service.settings import Settings, SettingsError
 
 __all__ = ["main"]
 
@@ -21,39 +20,22 @@ def main(arguments: list[str] | None = None) -> int:
     parser = argparse.ArgumentParser(prog="blinkline", description="Laser hazard evaluation service.")
     parser.add_argument("--version", action="version", version=f"blinkline {__version__}")
     commands = parser.add_subparsers(dest="command", required=True)
-    serve = commands.add_parser("serve", help="serve pages and API")
-    serve.add_argument("--host", help="address to listen on (default: BLINKLINE_HOST or 127.0.0.1)")
-    serve.add_argument("--port", type=int, help="port to listen on (default: BLINKLINE_PORT or 8321)")
+    serve.add_command(commands)
+    evaluate.add_command(commands)
     chosen = parser.parse_args(arguments)
+    return serve.run(chosen) if chosen.command == "serve" else _evaluate(chosen)
+
+
+def _evaluate(chosen: argparse.Namespace) -> int:
+    """Evaluate a file. Returns the exit code."""
     try:
-        settings = Settings.from_environment()
-        app = create_app(settings)
-    except (SettingsError, TableError) as error:
+        rule_sets()
+        schemes()
+    except TableError as error:
         print(f"blinkline: {error}", file=sys.stderr)
         return 2
-    host, port = chosen.host or settings.host, settings.port if chosen.port is None else chosen.port
-    try:
-        listener = _listen(host, port)
-    except (OSError, OverflowError) as error:
-        print(f"blinkline: cannot listen on {host} port {port}: {error}", file=sys.stderr)
-        return 2
-    print(f"Blinkline {__version__} on http://{host}:{listener.getsockname()[1]}", flush=True)
-    config = uvicorn.Config(app, log_level="warning", server_header=False)
-    uvicorn.Server(config).run(sockets=[listener])
-    return 0
-
-
-def _listen(host: str, port: int) -> socket.socket:
-    """A listening socket. Raises OSError or OverflowError where address or port cannot be used."""
-    family = socket.AF_INET6 if ":" in host else socket.AF_INET
-    listener = socket.socket(family, socket.SOCK_STREAM)
-    try:
-        listener.setsockopt(socket.SOL_SOCKET, socket.SO_REUSEADDR, 1)
-        listener.bind((host, port))
-    except BaseException:
-        listener.close()
-        raise
-    return listener
+    settle()
+    return evaluate.run(chosen)
 
 
 if __name__ == "__main__":

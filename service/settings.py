@@ -6,6 +6,8 @@ import os
 from collections.abc import Mapping
 from dataclasses import dataclass, fields
 
+from service.logs import FORMS
+
 __all__ = ["Settings", "SettingsError"]
 
 
@@ -17,12 +19,15 @@ class SettingsError(ValueError):
 class Settings:
     """What an operator may set.
 
-    `host`, `port`: where `blinkline serve` listens. `body_limit`: largest request body read [bytes].
+    `host`, `port`: where `blinkline serve` listens. `body_limit`: largest request body read [bytes],
+    `bulk_body_limit` that of `evaluate/bulk`, unpacked. `log`: text or json.
     """
 
     host: str = "127.0.0.1"
     port: int = 8321
     body_limit: int = 1_000_000
+    bulk_body_limit: int = 50_000_000
+    log: str = "text"
 
     @classmethod
     def from_environment(cls, environment: Mapping[str, str] = os.environ) -> Settings:
@@ -37,6 +42,11 @@ class Settings:
             field = known[name]
             if field.name == "host":
                 values["host"] = text
+                continue
+            if field.name == "log":
+                if text not in FORMS:
+                    raise SettingsError(f"{name} is {text!r}, expected one of {', '.join(FORMS)}")
+                values["log"] = text
                 continue
             top = 65535 if field.name == "port" else 1_000_000_000
             if not text.isdecimal() or not 1 <= int(text) <= top:

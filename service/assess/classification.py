@@ -40,6 +40,15 @@ class ClassLimits:
     ratio: dict[str, Floats]
     measured: dict[str, Ints]
 
+    def of(self, which: slice) -> ClassLimits:
+        """The criteria at `which`."""
+        columns = (getattr(self, name)[which] for name in ("exposure", "line", "row", "limit"))
+        named = (
+            {condition: values[which] for condition, values in table.items()}
+            for table in (self.emission, self.ratio, self.measured)
+        )
+        return ClassLimits(self.exposures, *columns, *named)
+
 
 @dataclass(slots=True)
 class Classification:
@@ -68,76 +77,89 @@ def classify(lines: Lines, scheme: CompiledScheme) -> Classification:
     """
     lines = replace(lines, wavelength_nm=scheme.printed(lines.wavelength_nm))
     at = scheme.conditions(lines.wavelength_nm, lines.subtense_mrad)
-    kind = scheme.adding.of("eye", lines.wavelength_nm) * 4
-    limits: dict[str, ClassLimits] = {}
-    worst: dict[str, dict[str, Floats]] = {}
-    for target in scheme.targets:
-        base = scheme.time_base(target, lines.wavelength_nm)
-        covered = np.isfinite(base)
-        timed = replace(lines, exposure_s=np.where(covered, base, 1.0))
-        found = exposures(timed, at, scheme)
-        cell = scheme.cells(at, found.line, found.time_s)
-        rows = scheme.grid.rows(target, cell, (found.rule == TRAIN_RULE).astype(np.intp))
-        e, slot = np.nonzero((rows >= 0) & covered[found.line][:, None])
-        limits[target] = _against(lines, scheme, found, e, rows[e, slot], at)
-    for target, table in limits.items():
-        other = scheme.scheme.fallback.get(target)
-        present = np.zeros(lines.count, dtype=bool)
-        present[table.line] = True
-        worst[target] = {}
-        for condition in scheme.conditions_named:
-            each = _per_line(table, condition, kind, scheme, lines.count)
-            if other is not None:
-                instead = _per_line(limits[other], condition, kind, scheme, lines.count)
-                each = {
-                    k: np.where(present, v, instead.get(k, np.zeros(lines.count))) for k, v in each.items()
-                } | {k: np.where(present, 0.0, v) for k, v in instead.items() if k not in each}
-            worst[target][condition] = _per_laser(each, lines)
-    number = _choose(lines, scheme, worst)
-    return Classification(scheme, lines, at, number, _available(lines, scheme, limits), limits, worst)
+    every, target = _criteria(lines, scheme, at)
+    # The criteria stand target by target.
+    ends = np.searchsorted(target, np.arange(len(scheme.targets) + 1)).tolist()
+    limits = {name: every.of(slice(*ends[n : n + 2])) for n, name in enumerate(scheme.targets)}
+    worst = _per_laser(every, target, lines, scheme)
+    exists = [_exists(rule, lines) for rule in scheme.scheme.classes]
+    number = _choose(lines, scheme, worst, exists)
+    return Classification(scheme, lines, at, number, _available(lines, scheme, limits, exists), limits, worst)
+
+
+def _criteria(lines: Lines, scheme: CompiledScheme, at: Conditions) -> tuple[ClassLimits, Ints]:
+    """Limits and accessible emissions of every line by the limits of every class, in one pass.
+
+    Also the number of the limits (in `scheme.targets`) of each criterion, ascending.
+    """
+    base = np.stack([scheme.time_base(target, lines.wavelength_nm) for target in scheme.targets])
+    target, line = np.nonzero(np.isfinite(base))
+    timed = lines.take(line, base[target, line])
+    at = at.take(line)
+    found = exposures(timed, at, scheme)
+    cell = scheme.cells(at, found.line, found.time_s)
+    of_target = target[found.line]
+    rows = scheme.rows(of_target, cell, (found.rule == TRAIN_RULE).astype(np.intp))
+    e, slot = np.nonzero(rows >= 0)
+    row, case = rows[e, slot], found.line[e]
+    limit = scheme.values(row, at, case, found.time_s[e]) * found.share[e]
+    return _against(lines, scheme, found, e, row, line[case], limit), of_target[e]
 
 
 def _against(
-    lines: Lines, scheme: CompiledScheme, found: Exposures, e: Ints, row: NDArray[np.int16], at: Conditions
+    lines: Lines,
+    scheme: CompiledScheme,
+    found: Exposures,
+    e: Ints,
+    row: NDArray[np.int16],
+    line: Ints,
+    limit: Floats,
 ) -> ClassLimits:
-    """Limits and accessible emissions of the criteria `e` with their rows."""
-    line = found.line[e]
-    limit = scheme.values(row, at, line, found.time_s[e]) * found.share[e]
+    """Accessible emissions of the criteria `e` under every condition, against their limits."""
     wavelength, time = lines.wavelength_nm[line], found.aperture_s[e]
-    beams = lines.beams.take(line)
-    emission, ratio, measured = {}, {}, {}
     own = scheme.measured(UNAIDED, wavelength, time)
-    for condition in scheme.conditions_named:
+    names, apertures, distances, numbers = scheme.conditions_named, [], [], []
+    for condition in names:
         aperture, distance, number = scheme.measured(condition, wavelength, time)
         none = number < 0
-        aperture, distance = np.where(none, own[0], aperture), np.where(none, own[1], distance)
-        through = found.dose[e] * beams.most_inside(aperture, distance)
-        area = np.where(scheme.per_area[row], np.pi / 4.0 * aperture * aperture, 1.0)
-        emission[condition] = through / area
-        ratio[condition] = emission[condition] / limit
-        measured[condition] = np.where(none, own[2], number)
-    return ClassLimits(found, e, line, row, limit, emission, ratio, measured)
+        apertures.append(np.where(none, own[0], aperture))
+        distances.append(np.where(none, own[1], distance))
+        numbers.append(np.where(none, own[2], number))
+    aperture, distance = np.concatenate(apertures), np.concatenate(distances)
+    beams = lines.beams.take(np.tile(line, len(names)))
+    fraction = beams.most_inside(aperture, distance)
+    area = np.where(np.tile(scheme.per_area[row], len(names)), np.pi / 4.0 * aperture * aperture, 1.0)
+    emission = (np.tile(found.dose[e], len(names)) * fraction / area).reshape(len(names), -1)
+    ratio = emission / limit
+    by_name = (dict(zip(names, values, strict=True)) for values in (emission, ratio, numbers))
+    return ClassLimits(found, e, line, row, limit, *by_name)
 
 
-def _per_line(
-    table: ClassLimits, condition: str, kind: Ints, scheme: CompiledScheme, count: int
-) -> dict[int, Floats]:
-    """Worst ratio of each line by additivity class (band and tissue)."""
-    group = kind[table.line] + scheme.tissue[table.row]
-    found = {}
-    for name in np.unique(group):
-        mine = group == name
-        worst = np.zeros(count)
-        np.maximum.at(worst, table.line[mine], table.ratio[condition][mine])
-        found[int(name)] = worst
-    return found
+def _per_laser(
+    every: ClassLimits, target: Ints, lines: Lines, scheme: CompiledScheme
+) -> dict[str, dict[str, Floats]]:
+    """Worst ratio of each laser by limits and condition.
 
-
-def _per_laser(each: dict[int, Floats], lines: Lines) -> Floats:
-    """Lines of one class add; the worst class counts."""
-    worst = np.zeros(lines.lasers)
-    for ratios in each.values():
-        worst = np.maximum(worst, np.bincount(lines.laser, ratios, lines.lasers))
+    Each line enters an additivity class (band and tissue) with its worst criterion, the lines of one class
+    add, the worst class counts. A line for which limits do not exist is judged by those they fall back on.
+    """
+    kind = scheme.adding.of("eye", lines.wavelength_nm) * 4
+    names, group = np.unique(kind[every.line] + scheme.tissue[every.row], return_inverse=True)
+    shape = (len(scheme.targets), len(names), lines.count)
+    at = np.ravel_multi_index((target, group, every.line), shape)
+    present = np.zeros((shape[0], 1, shape[2]), dtype=bool)
+    present[target, 0, every.line] = True
+    start = np.flatnonzero(np.r_[True, lines.laser[1:] != lines.laser[:-1]])
+    worst: dict[str, dict[str, Floats]] = {name: {} for name in scheme.targets}
+    for condition, ratio in every.ratio.items():
+        line = np.zeros(shape)
+        np.maximum.at(line.reshape(-1), at, ratio)
+        for n, name in enumerate(scheme.targets):
+            other = scheme.scheme.fallback.get(name)
+            each = line[n]
+            if other is not None:
+                each = np.where(present[n], each, line[scheme.targets.index(other)])
+            worst[name][condition] = np.add.reduceat(each, start, axis=1).max(axis=0)
     return worst
 
 
@@ -152,31 +174,38 @@ def _exists(rule: ClassRule, lines: Lines) -> NDArray[np.bool_]:
 
 
 def _available(
-    lines: Lines, scheme: CompiledScheme, limits: dict[str, ClassLimits]
+    lines: Lines, scheme: CompiledScheme, limits: dict[str, ClassLimits], exists: list[NDArray[np.bool_]]
 ) -> dict[str, NDArray[np.bool_]]:
     """Whether some class with these limits exists for each laser, and the limits for one of its lines."""
     found = {}
     for target, table in limits.items():
-        rules = [rule for rule in scheme.scheme.classes if rule.limits == target]
-        exists = np.any([_exists(rule, lines) for rule in rules], axis=0) if rules else True
         has_rows = np.bincount(lines.laser[table.line], minlength=lines.lasers) > 0
-        found[target] = has_rows & exists
+        named = [
+            there for rule, there in zip(scheme.scheme.classes, exists, strict=True) if rule.limits == target
+        ]
+        found[target] = has_rows & np.logical_or.reduce(named) if named else has_rows
     return found
 
 
-def _choose(lines: Lines, scheme: CompiledScheme, worst: dict[str, dict[str, Floats]]) -> Ints:
+def _choose(
+    lines: Lines,
+    scheme: CompiledScheme,
+    worst: dict[str, dict[str, Floats]],
+    exists: list[NDArray[np.bool_]],
+) -> Ints:
     """Number of the first class whose conditions hold; the last class always does."""
     number = np.full(lines.lasers, len(scheme.scheme.classes) - 1, dtype=np.intp)
-    open_ = np.all([r <= HOLDS for r in worst[scheme.scheme.ceiling].values()], axis=0)
+    holds_all = {target: np.maximum.reduce(list(r.values())) <= HOLDS for target, r in worst.items()}
+    open_ = holds_all[scheme.scheme.ceiling]
     for k, rule in enumerate(scheme.scheme.classes[:-1]):
         assert rule.limits is not None
-        ratios = worst[rule.limits]
         if rule.aided_limits is None:
-            holds = np.all([r <= HOLDS for r in ratios.values()], axis=0)
+            holds = holds_all[rule.limits] & exists[k]
         else:
-            aided = [worst[rule.aided_limits][c] <= HOLDS for c in ratios if c != UNAIDED]
-            holds = np.all([ratios[UNAIDED] <= HOLDS, *aided], axis=0)
-        holds &= _exists(rule, lines)
+            ratios, aided = worst[rule.limits], worst[rule.aided_limits]
+            holds = (ratios[UNAIDED] <= HOLDS) & exists[k]
+            for condition in (c for c in ratios if c != UNAIDED):
+                holds &= aided[condition] <= HOLDS
         number[open_ & holds] = k
-        open_ &= ~holds
+        open_ = open_ & ~holds
     return number

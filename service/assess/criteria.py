@@ -70,7 +70,7 @@ def exposures(lines: Lines, at: Conditions, rules: LimitTable) -> Exposures:
         c_p_row=np.full(line.shape, -1, dtype=np.intp),
         dose=dose,
     )
-    which = np.flatnonzero(trains)
+    which = trains.nonzero()[0]
     if which.size:
         _add_trains(found, lines, at, rules, which, (np.cumsum(each) - each)[which])
     return found

@@ -21,7 +21,7 @@ from service.rules.ruleset import TARGETS
 if TYPE_CHECKING:
     from service.assess.look import Moving
 
-__all__ = ["Evaluation", "Sums", "TargetResult", "evaluate", "optical_density"]
+__all__ = ["Evaluation", "Sums", "TargetResult", "evaluate", "evaluate_target", "optical_density"]
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.intp]
@@ -112,6 +112,13 @@ def evaluate(lines: Lines, rules: CompiledRules, aid: Aid | None = None) -> Eval
     return Evaluation(rules, lines, at, found, eye, skin)
 
 
+def evaluate_target(target: str, lines: Lines, rules: CompiledRules) -> TargetResult:
+    """What `evaluate` gives for one target (eye or skin) alone."""
+    at = rules.conditions(lines.wavelength_nm, lines.subtense_mrad)
+    found = exposures(lines, at, rules)
+    return _target(target, lines, found, rules.cells(at, found.line, found.time_s), at, rules, None)
+
+
 def _target(
     target: str,
     lines: Lines,
@@ -125,7 +132,7 @@ def _target(
     if aid is not None and target == "eye":
         aid.collect(criteria, lines)
     laser = lines.laser[criteria.line]
-    start = np.flatnonzero(np.r_[True, laser[1:] != laser[:-1]])
+    start = np.r_[True, laser[1:] != laser[:-1]].nonzero()[0]
     place_of_line = lines.beams.last_waist_m()
     uneven = lines.beams.uneven()
     place = place_of_line[criteria.line]
@@ -149,12 +156,12 @@ def _target(
         worst[again], lasers_place[again] = sums.hazard_ratio[last], sums.place_m[last]
         np.maximum.at(lasers_far, sums.laser, sums.far_m)
         np.minimum.at(lasers_near, sums.laser, np.where(sums.far_m > 0.0, sums.near_m, np.inf))
-        moved = np.flatnonzero(lasers_place[laser] != place)
+        moved = (lasers_place[laser] != place).nonzero()[0]
         if moved.size:
             beams = lines.beams.take(criteria.line[moved])
             fraction = beams.fraction(criteria.aperture_m[moved], lasers_place[laser[moved]])
             ratio[moved] = criteria.strength[moved] * fraction
-    governing = np.flatnonzero(ratio == np.maximum.reduceat(ratio, start)[laser])
+    governing = (ratio == np.maximum.reduceat(ratio, start)[laser]).nonzero()[0]
     governing = governing[np.r_[True, laser[governing][1:] != laser[governing][:-1]]]
     lasers_near = np.where(np.isinf(lasers_near), 0.0, lasers_near)
     return TargetResult(criteria, ratio, far, lasers_place, worst, lasers_near, lasers_far, governing, sums)
@@ -173,7 +180,7 @@ def _ratio_at(criteria: Criteria, lines: Lines, place_m: Floats) -> Floats:
 def _alone(criteria: Criteria, lines: Lines, place: Floats, ratio: Floats) -> tuple[Floats, Floats]:
     """Near and far end [m] of the zone in which each criterion alone is exceeded; 0, 0 if nowhere."""
     near, far = np.zeros(ratio.shape), np.zeros(ratio.shape)
-    over = np.flatnonzero(ratio > 1.0)
+    over = (ratio > 1.0).nonzero()[0]
     if over.size:
         beams = lines.beams.take(criteria.line[over])
         aperture, strength = criteria.aperture_m[over], criteria.strength[over]
@@ -203,7 +210,7 @@ def _alone_uneven(criteria: Criteria, lines: Lines, which: Ints, near: Floats, f
 def _sums(criteria: Criteria, lines: Lines, rules: CompiledRules, grouped: NDArray[np.bool_]) -> Sums:
     """Groups of criteria that add, for lasers with several lines or with different waists."""
     laser = lines.laser[criteria.line]
-    member = np.flatnonzero(grouped[laser])
+    member = grouped[laser].nonzero()[0]
     kind = rules.additivity[criteria.row[member]]
     order = member[np.lexsort((criteria.line[member], kind, laser[member]))]
     kind = rules.additivity[criteria.row[order]]
@@ -218,4 +225,4 @@ def _sums(criteria: Criteria, lines: Lines, rules: CompiledRules, grouped: NDArr
     )
     place, peak = groups.peaks()
     near, far = groups.zones(place, peak)
-    return Sums(laser[order][new], np.split(order, np.flatnonzero(new)[1:]), place, peak, near, far)
+    return Sums(laser[order][new], np.split(order, new.nonzero()[0][1:]), place, peak, near, far)

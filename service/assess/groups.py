@@ -92,9 +92,10 @@ class Groups:
             places, values = self._sample(several)
             k = values.argmax(axis=1)
             rows = np.arange(len(several))
-            low = places[rows, np.maximum(k - 1, 0)]
-            high = places[rows, np.minimum(k + 1, places.shape[1] - 1)]
             best, top = places[rows, k], values[rows, k]
+            # The next other places: a waist may stand among the samples more than once.
+            low = np.max(np.where(places < best[:, None], places, 0.0), axis=1)
+            high = np.min(np.where(places > best[:, None], places, places[:, -1:]), axis=1)
             for _ in range(REFINEMENTS):
                 left, right = low + (high - low) / 3.0, high - (high - low) / 3.0
                 at_left, at_right = self.ratio(several, left), self.ratio(several, right)

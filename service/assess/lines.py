@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, fields
 
 import numpy as np
 from numpy.typing import NDArray
@@ -16,6 +16,8 @@ Ints = NDArray[np.intp]
 
 MODES = ("cw", "pulse", "train")
 CW, PULSE, TRAIN = range(3)
+#: Fields of `Lines` that are not plain columns.
+APART = ("laser", "beams")
 
 
 @dataclass(slots=True)
@@ -37,6 +39,22 @@ class Lines:
     exposure_s: Floats
     subtense_mrad: Floats
     beams: Beams
+
+    def of_lasers(self, which: Ints) -> Lines:
+        """The lines of some lasers, which are numbered anew; `which` ascends."""
+        number = np.full(self.lasers, -1, dtype=np.intp)
+        number[which] = np.arange(len(which))
+        index = np.flatnonzero(number[self.laser] >= 0)
+        if len(index) == self.count:
+            return self
+        columns = {f.name: getattr(self, f.name)[index] for f in fields(self) if f.name not in APART}
+        return Lines(laser=number[self.laser[index]], beams=self.beams.take(index), **columns)
+
+    def take(self, index: Ints, exposure_s: Floats) -> Lines:
+        """The lines at `index` with exposure durations [s] of their own, each a laser of its own."""
+        columns = {f.name: getattr(self, f.name)[index] for f in fields(self) if f.name not in APART}
+        columns["exposure_s"] = exposure_s
+        return Lines(laser=np.arange(len(index)), beams=self.beams.take(index), **columns)
 
     @property
     def count(self) -> int:

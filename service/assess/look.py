@@ -14,6 +14,7 @@ from service.assess.distance import falling_root
 from service.assess.evaluate import Evaluation, Sums, TargetResult, evaluate
 from service.assess.lines import CW, Lines
 from service.assess.moving import Setup
+from service.assess.viewing import ratios_at, sums_of_lines
 from service.rules.compiled import CompiledRules
 from service.rules.grid import SMALL_SOURCE_MRAD
 from service.rules.ruleset import TARGETS
@@ -137,7 +138,32 @@ class Moving:
             higher = ratio > found.ratio
             found.ratio = np.where(higher, ratio, found.ratio)
             found.limit_j_m2 = np.where(higher, limit, found.limit_j_m2)
+        if self.setup.scan is not None:
+            self._hold_below_still(found, target, places_m, keys, kinds)
         return found
+
+    def _hold_below_still(
+        self, found: Judged, target: str, places_m: Floats, keys: Ints, kinds: Ints
+    ) -> None:
+        """A sweeping beam is never worse than the same beam standing still, in place.
+
+        The grouping of pulses can say so where the exposure is shorter than the grouping time.
+        """
+        result = self.still.target(target)
+        criteria, count = result.criteria, self.setup.lines.count
+        ratios = ratios_at(self.still, result, np.broadcast_to(places_m[:, None], (len(places_m), count)))
+        found.worst = np.minimum(found.worst, sums_of_lines(self.still, result, ratios))
+        own = self.rules.additivity[criteria.row]
+        for column, kind in enumerate(kinds.tolist()):
+            there = np.unique(criteria.line[own == kind])
+            if there.size:
+                each = [ratios[:, (own == kind) & (criteria.line == line)].max(axis=1) for line in there]
+                found.sums[:, column] = np.minimum(found.sums[:, column], np.sum(each, axis=0))
+        effect = self._kind[criteria.row]
+        for column, key in enumerate(keys.tolist()):
+            same = (criteria.line == key // 400) & (effect == key % 100)
+            bound = ratios[:, same].max(axis=1) if same.any() else found.worst
+            found.ratio[:, column] = np.minimum(found.ratio[:, column], bound)
 
     def over(self, evaluation: Evaluation, target: str, places_m: Floats) -> tuple[Floats, Floats, Floats]:
         """Limit [J/m2] and ratio (places, criteria) of an evaluation's criteria, and the worst ratio."""
@@ -160,7 +186,8 @@ class Moving:
         if self.setup.spots is not None:
             nearest = float(self.setup.lines.beams.nearest_m[0])
             return self.setup.places(WORSE_THAN_SMALL * max(far, nearest), self.edges_mrad)
-        return self.setup.places(far if np.isfinite(far) else FARTHEST_M, self.edges_mrad)
+        # A slow sweep equals the standing beam; a hair more keeps rounding from leaving the end unsafe.
+        return self.setup.places(far * (1.0 + 1e-9) if np.isfinite(far) else FARTHEST_M, self.edges_mrad)
 
     def at(self, distance_m: float, variant: int | None = None) -> Evaluation:
         """The setup as somebody at a distance [m] meets it, limits as they hold there.

@@ -19,7 +19,7 @@ from pydantic import (
 from service.contract.strict import Strict
 from service.optics.beams import SQRT2
 
-__all__ = ["KINDS", "AnyBeam", "Beam", "FibreMultimode", "FibreSingleMode", "Moments"]
+__all__ = ["KINDS", "LEAST_MRAD", "AnyBeam", "Beam", "FibreMultimode", "FibreSingleMode", "Moments"]
 
 #: Smallest divergence other than none [mrad]; no source of light spreads less.
 LEAST_MRAD = 1e-6

@@ -15,7 +15,7 @@ from service.optics.air import extinction_per_m
 from service.optics.beams import Beams
 from service.rules.compiled import CompiledRules
 
-__all__ = ["behind_bench", "lines_of"]
+__all__ = ["behind_bench", "conventional_durations", "lines_of"]
 
 
 def lines_of(requests: Sequence[EvaluationRequest], rules: CompiledRules) -> tuple[Lines, NDArray[np.intp]]:
@@ -48,11 +48,7 @@ def lines_of(requests: Sequence[EvaluationRequest], rules: CompiledRules) -> tup
             rows.append((line.wavelength_nm, emitted, pulse, rate, chosen, line.subtense_mrad, *moments))
     columns = np.array(rows).T.copy()
     wavelength, emitted_, pulse_, rate_, exposure, subtense, dx, dy, px, py, waist = columns
-    duration_row = np.full(len(rows), -1, dtype=np.intp)
-    conventional = np.flatnonzero(np.isnan(exposure))
-    if conventional.size:
-        seconds, row = rules.default_duration(wavelength[conventional])
-        exposure[conventional], duration_row[conventional] = seconds, row
+    duration_row = conventional_durations(wavelength, exposure, rules)
     beams = Beams.with_waist(np.array(tophat), dx, dy, px, py, waist)
     lines = Lines(
         np.array(laser), wavelength, np.array(mode), emitted_, pulse_, rate_, exposure, subtense, beams
@@ -60,13 +56,29 @@ def lines_of(requests: Sequence[EvaluationRequest], rules: CompiledRules) -> tup
     return lines, duration_row
 
 
+def conventional_durations(
+    wavelength_nm: NDArray[np.float64], exposure_s: NDArray[np.float64], rules: CompiledRules
+) -> NDArray[np.intp]:
+    """Put the rule set's conventional duration, in place, where the exposure duration [s] is NaN.
+
+    Returns the duration row of each line, -1 where its duration was chosen.
+    """
+    duration_row = np.full(len(exposure_s), -1, dtype=np.intp)
+    conventional = np.isnan(exposure_s).nonzero()[0]
+    if conventional.size:
+        seconds, row = rules.default_duration(wavelength_nm[conventional])
+        exposure_s[conventional], duration_row[conventional] = seconds, row
+    return duration_row
+
+
 def behind_bench(requests: Sequence[EvaluationRequest], lines: Lines) -> Lines:
     """The lines behind the last element of each request's bench, in its air."""
-    if not any(r.bench or r.viewing.visibility_km for r in requests):
+    changed = [n for n, r in enumerate(requests) if r.bench or r.viewing.visibility_km]
+    if not changed:
         return lines
     beams, emitted = lines.beams.take(np.arange(lines.count)), lines.emitted.copy()
-    for number, request in enumerate(requests):
-        index = np.flatnonzero(lines.laser == number)
+    for number in changed:
+        request, index = requests[number], np.flatnonzero(lines.laser == number)
         if request.bench:
             behind, left = apply(request.bench, beams.take(index), lines.wavelength_nm[index])
             emitted[index] = np.maximum(emitted[index] * left, LEAST)

@@ -35,9 +35,11 @@ class Measures(Model):
 
 
 @cache
-def _entries() -> list[dict[str, Any]]:
+def _entries() -> list[tuple[dict[str, Any], Measure]]:
+    """Every entry in order, with what is shown of it."""
     entries: list[dict[str, Any]] = read_toml(DATA / "measures.toml")["measure"]
-    return sorted(entries, key=lambda e: ORDER.index(e["order"]))
+    entries.sort(key=lambda e: ORDER.index(e["order"]))
+    return [(e, Measure(**{k: e[k] for k in Measure.model_fields})) for e in entries]
 
 
 def measures_for(hazard_class: str, wavelengths_nm: list[float], irradiance_w_m2: float) -> Measures:
@@ -51,5 +53,5 @@ def measures_for(hazard_class: str, wavelengths_nm: list[float], irradiance_w_m2
             and irradiance_w_m2 >= entry.get("min_irradiance_w_m2", 0.0)
         )
 
-    items = [Measure(**{k: e[k] for k in Measure.model_fields}) for e in _entries() if fits(e)]
+    items = [measure for entry, measure in _entries() if fits(entry)]
     return Measures(reminder=REMINDER, items=items)

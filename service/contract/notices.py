@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 
 import numpy as np
+from numpy.typing import NDArray
 
 from service.assess.evaluate import Evaluation
 from service.assess.steps import number_up
@@ -13,8 +14,9 @@ from service.contract.request import Cw, EvaluationRequest, Line, Pulse, Train
 from service.contract.result import Notice
 from service.optics.beams import SQRT2
 from service.rules.ruleset import TARGETS
+from service.rules.tables import Row
 
-__all__ = ["notices_of"]
+__all__ = ["input_notices", "lasers_with_result_notices", "notices_of"]
 
 #: Above these a value is asked about (common practice, no source).
 WIDE_BEAM_MM = 1000.0
@@ -29,12 +31,18 @@ LARGE_AREA_M2 = 0.01
 def notices_of(request: EvaluationRequest, evaluation: Evaluation, laser: int) -> list[Notice]:
     """Every notice for one laser of an evaluation, in the order of its fields."""
     members = np.flatnonzero(evaluation.lines.laser == laser)
-    found: list[Notice] = []
-    for number, (line, k) in enumerate(zip(request.lines, members, strict=True)):
-        found += _line_notices(f"lines.{number}", line, float(evaluation.lines.exposure_s[k]))
+    found = input_notices(request, evaluation.lines.exposure_s[members].tolist())
     if request.bench:
         found += _focus(evaluation, members)
     found += _result_notices(evaluation, laser, members)
+    return found
+
+
+def input_notices(request: EvaluationRequest, exposure_s: list[float]) -> list[Notice]:
+    """The notices that need no result; `exposure_s` of each line of the request [s]."""
+    found: list[Notice] = []
+    for number, (line, seconds) in enumerate(zip(request.lines, exposure_s, strict=True)):
+        found += _line_notices(f"lines.{number}", line, seconds)
     return found
 
 
@@ -142,6 +150,25 @@ def _across(beam: Beam) -> str:
     return f"{x:.4g}" if x == y else f"{x:.4g} x {y:.4g}"
 
 
+def lasers_with_result_notices(evaluation: Evaluation) -> NDArray[np.bool_]:
+    """Which lasers of a batch may have a notice beyond `input_notices`: none has where this is False."""
+    rules, lines, pulses = evaluation.rules, evaluation.lines, evaluation.exposures
+    repetition = np.array([*_uncertain(rules.repetition.rows), False])
+    doubtful = np.zeros(lines.lasers, dtype=bool)
+    for target in TARGETS:
+        result = evaluation.target(target)
+        criteria = result.criteria
+        uncertain = np.array(_uncertain(rules.rules.limits))[criteria.row]
+        uncertain |= repetition[pulses.c_p_row[criteria.exposure]]
+        doubtful[lines.laser[criteria.line[uncertain]]] = True
+        doubtful |= np.isinf(result.far_m)
+    return doubtful | _large_area(evaluation)
+
+
+def _uncertain(rows: Sequence[Row]) -> list[bool]:
+    return [row.note.startswith("uncertain") for row in rows]
+
+
 def _result_notices(evaluation: Evaluation, laser: int, members: np.ndarray) -> Iterator[Notice]:
     rules = evaluation.rules.rules
     told: set[tuple[int, str]] = set()
@@ -153,7 +180,7 @@ def _result_notices(evaluation: Evaluation, laser: int, members: np.ndarray) -> 
                 field=None,
                 text=f"For the {target} the beam never falls below its limit: there is no hazard distance.",
             )
-        criteria = np.flatnonzero(np.isin(result.criteria.line, members))
+        criteria = np.arange(*np.searchsorted(result.criteria.line, [members[0], members[-1] + 1]))
         for k in criteria:
             row = rules.limits[result.criteria.row[k]]
             number = int(evaluation.exposures.c_p_row[result.criteria.exposure[k]])
@@ -164,7 +191,8 @@ def _result_notices(evaluation: Evaluation, laser: int, members: np.ndarray) -> 
                     told.add((line, uncertain.note))
                     text = f"{rules.title}, row {uncertain.row}: {uncertain.note}."
                     yield Notice(code="uncertain-value", field=f"lines.{line}", text=text)
-    yield from _large_area(evaluation, laser)
+    if _large_area(evaluation)[laser]:
+        yield _large_area_notice(evaluation, laser)
 
 
 def _focus(evaluation: Evaluation, members: np.ndarray) -> Iterator[Notice]:
@@ -183,25 +211,31 @@ def _focus(evaluation: Evaluation, members: np.ndarray) -> Iterator[Notice]:
             )
 
 
-def _large_area(evaluation: Evaluation, laser: int) -> Iterator[Notice]:
-    """The skin limits beyond 1400 nm fall for exposed areas above 100 cm2; that is not applied."""
+def _large_area(evaluation: Evaluation) -> NDArray[np.bool_]:
+    """Lasers for which the skin limits beyond 1400 nm fall, as they do above 100 cm2; that is not applied."""
+    result, lines = evaluation.skin, evaluation.lines
+    k = result.governing
+    line = result.criteria.line[k]
+    time = evaluation.exposures.time_s[result.criteria.exposure[k]]
+    there = (lines.wavelength_nm[line] >= 1400.0) & (time >= 10.0) & (result.hazard_ratio[k] > 0.1)
+    which = np.flatnonzero(there)
+    if which.size:
+        far = result.far_m[which]
+        x, y = lines.beams.take(line[which]).diameters_m(np.where(np.isfinite(far), far, 0.0))
+        there[which] = np.pi / 4.0 * x * y > LARGE_AREA_M2
+    return there
+
+
+def _large_area_notice(evaluation: Evaluation, laser: int) -> Notice:
+    """How far the skin would be at risk by the lower limit."""
     result = evaluation.skin
     k = int(result.governing[laser])
     line = int(result.criteria.line[k])
-    time = float(evaluation.exposures.time_s[result.criteria.exposure[k]])
-    if evaluation.lines.wavelength_nm[line] < 1400.0 or time < 10.0:
-        return
-    far = float(result.far_m[laser])
-    strength = float(result.criteria.strength[k])
-    if float(result.hazard_ratio[k]) <= 0.1:
-        return
     beams = evaluation.lines.beams.take(np.array([line]))
-    x, y = beams.diameters_m(np.array([far if np.isfinite(far) else 0.0]))
-    if np.pi / 4.0 * x[0] * y[0] <= LARGE_AREA_M2:
-        return
+    strength = float(result.criteria.strength[k])
     reach = beams.reach_m(result.criteria.aperture_m[k : k + 1], np.array([0.1 / strength]))[1]
     where = f"out to {number_up(reach[0])} m" if np.isfinite(reach[0]) else "at any distance"
-    yield Notice(
+    return Notice(
         code="large-skin-area",
         field=f"lines.{line - int(np.flatnonzero(evaluation.lines.laser == laser)[0])}",
         text="Where more than 100 cm2 of skin is exposed beyond 1400 nm for longer than 10 s, the published "

@@ -123,9 +123,12 @@ class WorkingStep(Model):
     criterion: int | None
 
 
+OF_STEP = tuple(f.name for f in fields(Step))
+
+
 def step_model(step: Step) -> WorkingStep:
     """A step of the working as it leaves the service."""
-    return WorkingStep.model_validate({f.name: getattr(step, f.name) for f in fields(step)})
+    return WorkingStep.model_validate({name: getattr(step, name) for name in OF_STEP})
 
 
 class Notice(Model):

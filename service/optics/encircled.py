@@ -36,10 +36,10 @@ def encircled_fraction(aperture_m: Floats, x_m: Floats, y_m: Floats, tophat: Boo
     """
     ratio = (aperture_m / x_m) ** 2
     fraction: Floats = -np.expm1(-ratio)
-    hat = np.flatnonzero(tophat)
+    hat = tophat.nonzero()[0]
     if hat.size:
         fraction[hat] = np.minimum(1.0, ratio[hat])
-    uneven = np.flatnonzero(x_m != y_m)
+    uneven = (x_m != y_m).nonzero()[0]
     if uneven.size:
         narrow = np.minimum(x_m[uneven], y_m[uneven])
         wide = np.maximum(x_m[uneven], y_m[uneven])

@@ -70,7 +70,7 @@ class Apertures:
         number = self.rows(row, wavelength_nm, time_s)
         diameter: Floats = self.coefficient[number]
         power = self.power[number]
-        k = np.flatnonzero(power)
+        k = power.nonzero()[0]
         if k.size:
             diameter[k] *= time_s[k] ** power[k]
         return diameter

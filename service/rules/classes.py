@@ -116,6 +116,7 @@ class CompiledScheme(LimitTable):
         self.tissue = np.array([tissues.get(row.tissue, 0) for row in scheme.limits])
         self.conditions_named = tuple(dict.fromkeys(row.condition for row in scheme.measurement))
         self.targets = self.grid.targets
+        self._compile()
 
     def printed(self, wavelength_nm: Floats) -> Floats:
         """Wavelengths [nm] at which to read this scheme's tables, for wavelengths of lines [nm].
@@ -146,16 +147,45 @@ class CompiledScheme(LimitTable):
 
     def measured(self, condition: str, wavelength_nm: Floats, time_s: Floats) -> tuple[Floats, Floats, Ints]:
         """Aperture [m], distance [m] and row number of a condition; row -1 where there is none."""
-        aperture, distance = np.zeros(wavelength_nm.shape), np.zeros(wavelength_nm.shape)
-        number = np.full(wavelength_nm.shape, -1, dtype=np.intp)
-        for k, row in enumerate(self.scheme.measurement):
-            if row.condition != condition:
-                continue
-            inside = _within(wavelength_nm, row.wavelength_from_nm, row.wavelength_to_nm, LAST_NM)
-            inside &= _within(time_s, row.time_from_s, row.time_to_s, LAST_S)
-            aperture[inside] = 1e-3 * row.coefficient_mm * time_s[inside] ** row.time_power
-            distance[inside], number[inside] = row.distance_m, k
-        return aperture, distance, number
+        w = np.searchsorted(self._measured_nm, wavelength_nm, "right")
+        t = np.searchsorted(self._measured_s, time_s, "right")
+        number = self._measured[condition][w, t]
+        aperture: Floats = self._measured_m[number]
+        power = self._measured_power[number]
+        k = power.nonzero()[0]
+        if k.size:
+            aperture[k] *= time_s[k] ** power[k]
+        return aperture, self._measured_at_m[number], number
+
+    def rows(self, target: Ints, cell: Ints, regular: Ints) -> NDArray[np.int16]:
+        """Row numbers by cell and slot, -1 where empty; `target` indexes `targets` for each exposure."""
+        found: NDArray[np.int16] = self._rows[target, cell + regular * self.grid.kind_stride]
+        return found
+
+    def _compile(self) -> None:
+        """Measurement rows by band of wavelength and time, and the limit rows of all targets in one table."""
+        rows = self.scheme.measurement
+        self._measured_nm = np.unique(
+            [r.wavelength_from_nm for r in rows] + [r.wavelength_to_nm for r in rows]
+        )
+        self._measured_s = np.unique([r.time_from_s for r in rows] + [r.time_to_s for r in rows])
+        low_nm, low_s = np.r_[-np.inf, self._measured_nm], np.r_[-np.inf, self._measured_s]
+        self._measured = {}
+        for condition in self.conditions_named:
+            number = self._measured[condition] = np.full((len(low_nm), len(low_s)), -1, dtype=np.intp)
+            for k, row in ((k, row) for k, row in enumerate(rows) if row.condition == condition):
+                w = _within(low_nm, row.wavelength_from_nm, row.wavelength_to_nm, LAST_NM)
+                t = _within(low_s, row.time_from_s, row.time_to_s, LAST_S)
+                number[np.ix_(w, t)] = k
+        # The last element stands for "no row".
+        self._measured_m = np.array([1e-3 * r.coefficient_mm for r in rows] + [0.0])
+        self._measured_power = np.array([r.time_power for r in rows] + [0.0])
+        self._measured_at_m = np.array([r.distance_m for r in rows] + [0.0])
+        slots = max(table.shape[1] for table in self.grid.table.values())
+        tables = [self.grid.table[target] for target in self.targets]
+        self._rows = np.stack(
+            [np.pad(t, ((0, 0), (0, slots - t.shape[1])), constant_values=-1) for t in tables]
+        )
 
 
 @lru_cache(maxsize=4)

@@ -53,7 +53,7 @@ class Factor:
         value: Floats = self._coefficient[piece]
         if self._has_slope:
             slope = self._slope[piece]
-            at = np.flatnonzero(slope)
+            at = slope.nonzero()[0]
             if at.size:
                 p = piece[at]
                 value[at] *= 10.0 ** (slope[at] * (x[at] - self._origin[p]) / self._per[p])
@@ -61,7 +61,7 @@ class Factor:
             value += self._offset[piece]
         if self._has_power:
             power = self._power[piece]
-            at = np.flatnonzero(power)
+            at = power.nonzero()[0]
             if at.size:
                 value[at] *= x[at] ** power[at]
         return value
@@ -72,7 +72,7 @@ class Factor:
             return np.full(x.shape, self._coefficient[1])
         value = self._values(np.searchsorted(self.edges, x, side="right"), x)
         if self.shared.size:
-            on = np.flatnonzero(np.isin(x, self.shared))
+            on = np.isin(x, self.shared).nonzero()[0]
             if on.size:
                 left = self._values(np.searchsorted(self.edges, x[on], side="left"), x[on])
                 value[on] = left if self._upper_ends else np.minimum(value[on], left)

@@ -37,7 +37,7 @@ class Grid:
     """Limit rows by wavelength [nm], time [s], subtense and break times.
 
     `table[target]` has one row per cell and kind (0: every row, 1: the rows to which the
-    repetitive-pulse factor applies) and one column per slot, -1 where empty.
+    repetitive-pulse factor applies, `kind_stride` cells later) and one column per slot, -1 where empty.
     """
 
     def __init__(self, rules: LimitSet, factors: dict[str, Factor]) -> None:
@@ -72,7 +72,7 @@ class Grid:
             self._check(target, rows, regions, rules)
             self.table[target] = self._paint(regions, regular)
         strides = [int(np.prod(self._shape[k + 1 :])) for k in range(len(self._shape))]
-        self._kind, self._w, self._t, self._s, *self._b = strides
+        self.kind_stride, self._w, self._t, self._s, *self._b = strides
 
     def _time(
         self,
@@ -229,4 +229,4 @@ class Grid:
 
     def rows(self, target: str, cell: Ints, regular: Ints | None = None) -> NDArray[np.int16]:
         """Row numbers by cell and slot, -1 where empty; `regular` 1 keeps only rows with C_P."""
-        return self.table[target][cell if regular is None else cell + regular * self._kind]
+        return self.table[target][cell if regular is None else cell + regular * self.kind_stride]

@@ -39,6 +39,17 @@ class Conditions:
     breaks: list[Floats]
     factors: dict[str, Floats]
 
+    def take(self, index: Ints) -> Conditions:
+        """The conditions of the lines at `index`."""
+        return Conditions(
+            wavelength_nm=self.wavelength_nm[index],
+            subtense_mrad=self.subtense_mrad[index],
+            extended=self.extended[index],
+            long_break_s=self.long_break_s[index],
+            breaks=[b[index] for b in self.breaks],
+            factors={name: values[index] for name, values in self.factors.items()},
+        )
+
 
 class LimitTable:
     """Limit rows and their factors ready for arrays.
@@ -100,7 +111,7 @@ class LimitTable:
                 continue
             factor = self.factors[behind.get(name, name)]
             low, high = factor.rows[0].from_, factor.rows[-1].to or np.inf
-            for k in np.flatnonzero(rows):
+            for k in rows.nonzero()[0]:
                 row = tables.limits[k]
                 if factor.variable == "wavelength_nm":
                     band = row.wavelength_from_nm, row.wavelength_to_nm
@@ -150,16 +161,16 @@ class LimitTable:
         limit: Floats = self.coefficient[row]
         power = self.time_power[row]
         for p in self.powers:
-            k = np.flatnonzero(power == p)
+            k = (power == p).nonzero()[0]
             if k.size:
                 limit[k] *= time_s[k] if p == 1.0 else time_s[k] ** p
         for name, exponent, rows in self.tokens:
-            k = np.flatnonzero(rows[row])
+            k = rows[row].nonzero()[0]
             if not k.size:
                 continue
             value = self.value(name, at, line[k], time_s[k])
             limit[k] *= value if exponent == 1.0 else value**exponent
-        k = np.flatnonzero(self.capped[row])
+        k = self.capped[row].nonzero()[0]
         if k.size:
             cap = self.cap[row[k]] * time_s[k] ** self.cap_power[row[k]]
             limit[k] = np.minimum(limit[k], cap)
@@ -215,7 +226,7 @@ class LimitTable:
     def subtense_factor(self, alpha_mrad: Floats, time_s: Floats) -> Floats:
         """C_E (C6): alpha / alpha_min, beyond alpha_max(t) alpha^2 / (alpha_min alpha_max)."""
         value: Floats = alpha_mrad / SMALL_SOURCE_MRAD
-        k = np.flatnonzero(alpha_mrad > SMALL_SOURCE_MRAD)
+        k = (alpha_mrad > SMALL_SOURCE_MRAD).nonzero()[0]
         if k.size:
             alpha = alpha_mrad[k]
             value[k] *= np.maximum(1.0, alpha / self.factor("alpha_max")(time_s[k]))

@@ -84,7 +84,7 @@ class RepetitionFactor:
         """C_P from the row numbers and the pulse counts N: coefficient x N^power, within bounds."""
         value = np.ones(count.shape)
         for k, row in enumerate(self.rows):
-            at = np.flatnonzero(number == k)
+            at = (number == k).nonzero()[0]
             if at.size and (row.count_power or row.coefficient != 1.0):
                 factor = row.coefficient * count[at] ** row.count_power
                 value[at] = np.minimum(1.0, np.maximum(factor, row.floor or 0.0))

@@ -6,15 +6,23 @@ from typing import Any
 
 from fastapi import FastAPI
 from fastapi.openapi.utils import get_openapi
+from pydantic import BaseModel
 from pydantic.json_schema import models_json_schema
 
+from service.bulk.records import DETAILS
+from service.bulk.summary import Closing, ProblemRecord, Summary
 from service.contract.problem import ProblemDocument
 from service.contract.request import EvaluationRequest
+from service.web.bulk import NDJSON
 
 __all__ = ["describe"]
 
 TEMPLATE = "#/components/schemas/{model}"
+CLOSING = TEMPLATE.format(model="Closing")
+BULK = "/api/v1/evaluate/bulk"
 BODIES = ("/api/v1/evaluate", "/api/v1/compare")
+#: What stands on the lines of a bulk answer: with detail=full, whole results with an index.
+RECORDS: tuple[type[BaseModel], ...] = (Summary, ProblemRecord, Closing)
 EXAMPLES: dict[str, dict[str, Any]] = {
     "continuous": {
         "summary": "A green alignment beam, continuous wave",
@@ -59,6 +67,31 @@ EXAMPLES: dict[str, dict[str, Any]] = {
 }
 
 
+def _describe_bulk(operation: dict[str, Any], problem: dict[str, Any]) -> None:
+    """Parameter, body and answer of the bulk call."""
+    request = {"$ref": TEMPLATE.format(model="EvaluationRequest")}
+    names = [model.__name__ for model in RECORDS[:2]] + ["EvaluationResult"]
+    records: list[dict[str, Any]] = [{"$ref": TEMPLATE.format(model=name)} for name in names]
+    closing = {"type": "object", "required": ["closing"], "properties": {"closing": {"$ref": CLOSING}}}
+    operation["parameters"] = [
+        {"name": "detail", "in": "query", "schema": {"enum": list(DETAILS), "default": DETAILS[0]}}
+    ]
+    operation["requestBody"] = {
+        "required": True,
+        "content": {
+            NDJSON: {"schema": request},
+            "application/json": {"schema": {"type": "array", "items": request}},
+        },
+    }
+    operation["responses"] = {
+        "200": {
+            "description": "One record per line; the closing record is the last.",
+            "content": {NDJSON: {"schema": {"anyOf": [*records, closing]}}},
+        },
+        **dict.fromkeys(("400", "413", "415", "422"), problem),
+    }
+
+
 def describe(app: FastAPI) -> None:
     """Replace the application's OpenAPI builder by one that also knows bodies and problems."""
 
@@ -66,8 +99,10 @@ def describe(app: FastAPI) -> None:
         if app.openapi_schema:
             return app.openapi_schema
         document = get_openapi(title=app.title, version=app.version, routes=app.routes)
+        sent = [(model, "serialization") for model in (ProblemDocument, *RECORDS)]
         _, definitions = models_json_schema(
-            [(EvaluationRequest, "validation"), (ProblemDocument, "serialization")], ref_template=TEMPLATE
+            [(EvaluationRequest, "validation"), *sent],  # type: ignore[list-item]
+            ref_template=TEMPLATE,
         )
         document.setdefault("components", {}).setdefault("schemas", {}).update(definitions["$defs"])
         problem = {
@@ -88,6 +123,7 @@ def describe(app: FastAPI) -> None:
                         "required": True,
                         "content": {"application/json": {"schema": schema, "examples": EXAMPLES}},
                     }
+        _describe_bulk(document["paths"][BULK]["post"], problem)
         app.openapi_schema = document
         return document
 

@@ -6,14 +6,14 @@ import math
 from typing import Any
 
 import pytest
-from hypothesis import given, settings
+from hypothesis import Phase, given, settings
 from hypothesis import strategies as st
 
 from service.contract.answer import answer
 from service.contract.evaluation import EvaluationResult
 from service.contract.request import EvaluationRequest
 
-EXAMPLES = settings(max_examples=40, deadline=None, derandomize=True)
+EXAMPLES = settings(max_examples=40, deadline=None, derandomize=True, phases=(Phase.explicit, Phase.generate))
 QUARTER = 0.25
 #: 18 t^0.75 J/m2 over t, 400 to 700 nm, at 0.25 s (ICNIRP 2013, from memory).
 GLANCE = 18 * QUARTER**0.75 / QUARTER

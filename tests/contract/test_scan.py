@@ -6,7 +6,7 @@ import math
 from typing import Any
 
 import pytest
-from hypothesis import given, settings
+from hypothesis import Phase, given, settings
 from hypothesis import strategies as st
 from scipy import integrate
 
@@ -14,7 +14,7 @@ from service.contract.answer import answer
 from service.contract.evaluation import EvaluationResult
 from service.contract.request import EvaluationRequest
 
-EXAMPLES = settings(max_examples=40, deadline=None, derandomize=True)
+EXAMPLES = settings(max_examples=40, deadline=None, derandomize=True, phases=(Phase.explicit, Phase.generate))
 LINE = {"element": "scanner", "angle_deg": 30, "sweeps_hz": 100}
 #: Limiting aperture of the eye, 400 to 1400 nm [m].
 PUPIL = 7e-3

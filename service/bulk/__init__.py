@@ -1,0 +1,1 @@
+"""Many lasers at once: batches, streams of records, columns."""

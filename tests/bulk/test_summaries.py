@@ -1,0 +1,93 @@
+"""Summaries from one pass equal the whole answers of the same requests, bit for bit."""
+
+from __future__ import annotations
+
+import random
+from collections.abc import Iterator
+from typing import Any
+
+import pytest
+from pydantic import ValidationError
+
+from service.bulk.summary import Summary, summaries, summary_of
+from service.contract.answer import answer
+from service.contract.request import EvaluationRequest
+from tests.web.client import RULES, laser
+from tests.web.test_random_requests import requests
+
+
+def valid(bodies: Iterator[dict[str, Any]]) -> list[EvaluationRequest]:
+    found = []
+    for body in bodies:
+        try:
+            found.append(EvaluationRequest.model_validate(body))
+        except ValidationError:
+            continue
+    return found
+
+
+@pytest.fixture(scope="module")
+def sample() -> list[EvaluationRequest]:
+    """Random lasers: several lines, elliptical beams, trains, distant waists, every rule set."""
+    found = valid(requests(11))
+    random.Random(3).shuffle(found)
+    return found
+
+
+def plain(wavelength_nm: float, power_w: float, **more: Any) -> EvaluationRequest:
+    body = laser(wavelength_nm, {"mode": "cw", "power_w": power_w}, **more)
+    return EvaluationRequest.model_validate(body)
+
+
+def test_one_pass_equals_single_answers(sample: list[EvaluationRequest]) -> None:
+    together = summaries(sample, range(len(sample)))
+    for k, request in enumerate(sample):
+        assert together[k] == summary_of(answer(request), request.label, k), request
+
+
+def test_the_company_does_not_matter(sample: list[EvaluationRequest]) -> None:
+    """A laser's figures are the same in any batch: sizes below and above the width of vector units."""
+    whole = summaries(sample, range(len(sample)))
+    for size in (1, 3, 17):
+        for start in range(0, 68, size):
+            part = summaries(sample[start : start + size], range(start, start + size))
+            assert part == whole[start : start + len(part)]
+
+
+def test_summaries_have_the_documented_form(sample: list[EvaluationRequest]) -> None:
+    for record in summaries(sample[:50], range(50)):
+        assert Summary.model_validate(record).model_dump(mode="python") == record
+
+
+@pytest.mark.parametrize("rules", RULES)
+def test_every_code_of_a_notice_is_told(rules: str) -> None:
+    """A slip of units, a beam without spread, skin in a blink, an extended source, a large infrared beam."""
+    made = [
+        plain(532, 1e6, rules=rules),
+        plain(532, 0.1, rules=rules, divergence_mrad=0.0),
+        plain(532, 5.0, rules=rules, exposure_s=0.25),
+        plain(633, 0.1, rules=rules, subtense_mrad=20.0),
+        plain(10600, 500.0, rules=rules, diameter_mm=20.0, divergence_mrad=5.0, exposure_s=10.0),
+        plain(1240, 1.0, rules=rules, exposure_s=1e-13),
+    ]
+    together = summaries(made, range(len(made)))
+    for k, (request, found) in enumerate(zip(made, together, strict=True)):
+        assert found == summary_of(answer(request), request.label, k)
+    assert "unusual-power" in together[0]["notices"]
+    assert {"zero-divergence", "unbounded"} <= set(together[1]["notices"])
+    assert "skin-longer-exposure" in together[2]["notices"]
+    assert "extended-source" in together[3]["notices"]
+    assert "large-skin-area" in together[4]["notices"]
+
+
+def test_the_example_of_the_contract() -> None:
+    """532 nm, 0.1 W, 2 mm, 1 mrad, 0.25 s: limit 18 x 0.25^0.75 J/m2 (ICNIRP 2013, Table 5)."""
+    (found,) = summaries([plain(532, 0.1, exposure_s=0.25, label="Bench 4")], [7])
+    limit = 18.0 * 0.25**0.75
+    assert (found["index"], found["label"], found["rules"]) == (7, "Bench 4", "icnirp-2013")
+    assert found["classes"] == {"iec-60825-1-2014": "3B", "us-21cfr1040": "IIIb"}
+    assert found["eye"]["governing"]["row"] == "eye-vis-5us-10s"
+    assert found["eye"]["governing"]["rule"] == "exposure"
+    # The whole beam but exp(-(7 / 1.414)^2) passes 7 mm: ratio = P T / (pi / 4 x (7 mm)^2) / limit.
+    assert found["eye"]["hazard_ratio"] == pytest.approx(0.025 / 3.848451e-5 / limit, rel=1e-6)
+    assert found["skin"]["hazard_zone_m"] is None
