@@ -107,11 +107,13 @@ class Setup:
     def from_distances(self, distance_m: Floats, aperture_m: Floats, trusted_mrad: Floats) -> list[Lines]:
         """The lines as they meet somebody at each distance [m], in every variant to judge.
 
+        A spot never looks wider than from the nearest place at which an eye can see it sharply.
+
         Per line: `aperture_m`, the widest limiting aperture that it meets; `trusted_mrad` as in `Spots`.
         """
         base = spread_over(self.lines, len(distance_m))
         if self.spots is not None:
-            seen = self.spots.subtenses_mrad(distance_m, trusted_mrad)
+            seen = self.spots.subtenses_mrad(np.maximum(distance_m, NEAREST_M), trusted_mrad)
             return [replace(base, subtense_mrad=a.ravel()) for a in seen]
         assert self.scan is not None
         return [self._swept(base, distance_m, aperture_m, at_end=end) for end in (False, True)]
