@@ -222,8 +222,8 @@ def test_more_power_never_reaches_less_far(
 
 @pytest.mark.parametrize("distance_m", [0.0, 1e-6, 0.05])
 def test_nearer_than_an_eye_can_focus(distance_m: float) -> None:
-    """Nearer than 100 mm the spot counts as wide as from there: C_E = (d / 100 mm) / 1.5 mrad, 1 mm spot. At the
-    spot itself all that is scattered counts as if it entered the pupil."""
+    """Nearer than 100 mm the spot counts as wide as from there: C_E = (d / 100 mm) / 1.5 mrad, 1 mm spot.
+    At the spot itself all that is scattered counts as if it entered the pupil."""
     result = run(power=1.0, spot_mm=1.0, viewing={"distance_m": distance_m})
     at = result.eye.at_distance
     assert at is not None
