@@ -6,23 +6,26 @@ import numpy as np
 from numpy.typing import NDArray
 
 from service.assess.distance import falling_root
-from service.assess.lines import PULSE, Lines
+from service.assess.lines import CW, Lines
 
 __all__ = ["VISUAL_S", "interference_m", "visual_power_w"]
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.intp]
 
-#: A single flash counts as if its energy came in this time [s] (common practice, no source).
+#: A flash counts as if its energy came in this time [s] (common practice, no source).
 VISUAL_S = 0.1
 #: Places tried between the exit and the last waist.
 PLACES = 128
 
 
 def visual_power_w(lines: Lines, efficiency: Floats) -> Floats:
-    """Visually corrected power [W] of each line: average power x V; of one pulse energy / 0.1 s x V."""
-    flash = np.where(lines.mode == PULSE, lines.emitted / VISUAL_S, 0.0)
-    return (lines.average_power_w + flash) * efficiency
+    """Visually corrected power [W] of each line: average power x V, of a flash its energy / 0.1 s x V.
+
+    Pulses that come more seldom than every 0.1 s are flashes: their average power would hide them.
+    """
+    flash = np.where(lines.mode == CW, 0.0, lines.emitted / VISUAL_S)
+    return np.maximum(lines.average_power_w, flash) * efficiency
 
 
 def _irradiance(lines: Lines, power_w: Floats, distance_m: Floats) -> Floats:
@@ -52,7 +55,8 @@ def interference_m(lines: Lines, efficiency: Floats, levels_w_m2: Floats) -> Flo
     power = visual_power_w(lines, efficiency)
     nearest = float(lines.beams.nearest_m.max())
     last = max(nearest, float(lines.beams.last_waist_m().max()))
-    places = np.unique(np.linspace(nearest, last, PLACES))
+    waists = np.clip(np.concatenate([axis[2] for axis in lines.beams.axes()]), nearest, last)
+    places = np.unique(np.r_[np.linspace(nearest, last, PLACES), waists])
     over = _irradiance(lines, power, places)[:, None] > levels_w_m2
     found = np.zeros(len(levels_w_m2))
     some = np.flatnonzero(over.any(axis=0))

@@ -1,8 +1,9 @@
 """Setups whose limits change with the distance: a lit spot looks smaller, a sweeping beam passes faster.
 
 Someone at a distance is a laser of a batch, so that many distances are judged in one pass. A setup offers
-several variants at every distance (the spot by its mean and by its smaller width, the sweep in the middle
-and at its turning point); each is judged by itself and the worst counts.
+several variants at every distance (the spot by its mean and by its smaller width; the sweep in the middle and
+at its turning point, the rows of a raster evenly spread and in a burst); each is judged by itself and the
+worst counts.
 """
 
 from __future__ import annotations
@@ -15,7 +16,7 @@ from numpy.typing import NDArray
 from service.assess.aid import Aid
 from service.assess.lines import CW, TRAIN, Lines
 from service.optics.beams import Beams
-from service.optics.sweep import Scan, passes
+from service.optics.sweep import Scan, burst_s, passes
 from service.rules.grid import SMALL_SOURCE_MRAD
 
 __all__ = ["NEAREST_M", "Setup", "Spots", "lambertian", "spread_over"]
@@ -93,6 +94,19 @@ def spread_over(lines: Lines, places: int) -> Lines:
     return Lines(laser=np.repeat(np.arange(places), lines.count), beams=lines.beams.take(index), **columns)
 
 
+def _train(base: Lines, energy_j: Floats, pulse_s: Floats, rate_hz: Floats, exposure_s: Floats) -> Lines:
+    """The lines with the continuous ones as trains; the others as they are."""
+    swept = base.mode == CW
+    return replace(
+        base,
+        mode=np.where(swept, TRAIN, base.mode),
+        emitted=np.where(swept, energy_j, base.emitted),
+        pulse_s=np.where(swept, pulse_s, base.pulse_s),
+        rate_hz=np.where(swept, rate_hz, base.rate_hz),
+        exposure_s=np.where(swept, exposure_s, base.exposure_s),
+    )
+
+
 @dataclass(frozen=True, slots=True)
 class Setup:
     """One laser whose light ends on a diffuser (`spots`) or is swept (`scan`).
@@ -107,30 +121,46 @@ class Setup:
     def from_distances(self, distance_m: Floats, aperture_m: Floats, trusted_mrad: Floats) -> list[Lines]:
         """The lines as they meet somebody at each distance [m], in every variant to judge.
 
+        A spot never looks wider than from the nearest place at which an eye can see it sharply.
+
         Per line: `aperture_m`, the widest limiting aperture that it meets; `trusted_mrad` as in `Spots`.
         """
         base = spread_over(self.lines, len(distance_m))
         if self.spots is not None:
-            seen = self.spots.subtenses_mrad(distance_m, trusted_mrad)
+            seen = self.spots.subtenses_mrad(np.maximum(distance_m, NEAREST_M), trusted_mrad)
             return [replace(base, subtense_mrad=a.ravel()) for a in seen]
         assert self.scan is not None
-        return [self._swept(base, distance_m, aperture_m, at_end=end) for end in (False, True)]
+        swept = [self._swept(base, distance_m, aperture_m, at_end=end) for end in (False, True)]
+        return [lines for variants in swept for lines in variants]
 
-    def _swept(self, base: Lines, distance_m: Floats, aperture_m: Floats, *, at_end: bool) -> Lines:
-        """Continuous lines become trains of passes. Pulses are judged as if the beam stood still."""
+    def _swept(self, base: Lines, distance_m: Floats, aperture_m: Floats, *, at_end: bool) -> list[Lines]:
+        """Continuous lines become trains of passes. Pulses are judged as if the beam stood still.
+
+        Of a raster the passes are judged in three ways: spread evenly over the exposure; the rows of one
+        picture alone, as closely as they follow each other; and these rows as one pulse of every picture.
+        """
         assert self.scan is not None
+        scan, exposure, power = self.scan, base.exposure_s, base.emitted
         place = np.repeat(distance_m, self.lines.count)
         aperture = np.tile(aperture_m, len(distance_m))
-        duration, rate = passes(self.scan, base.beams, aperture, place, at_end=at_end)
-        duration = np.minimum(duration, base.exposure_s)
-        swept = base.mode == CW
-        return replace(
-            base,
-            mode=np.where(swept, TRAIN, base.mode),
-            emitted=np.where(swept, base.emitted * duration, base.emitted),
-            pulse_s=np.where(swept, duration, base.pulse_s),
-            rate_hz=np.where(swept, rate, base.rate_hz),
-        )
+        duration, rate = passes(scan, base.beams, aperture, place, at_end=at_end)
+        even = np.minimum(duration, exposure)
+        found = [_train(base, power * even, even, rate, exposure)]
+        if scan.rows > 1:
+            often = scan.sweeps_hz / (2.0 if at_end else 1.0)
+            burst = np.minimum(burst_s(scan, base.beams, aperture, place), exposure)
+            each = np.minimum(even, 1.0 / often)
+            found += [
+                _train(base, power * each, each, np.full(each.shape, often), np.maximum(burst, each)),
+                _train(
+                    base,
+                    power * each * often * burst,
+                    burst,
+                    np.full(each.shape, scan.sweeps_hz / scan.rows),
+                    exposure,
+                ),
+            ]
+        return found
 
     def places(self, farthest_m: float, edges_mrad: Floats) -> Floats:
         """Distances [m], ascending, between which every ratio only falls or jumps.

@@ -39,7 +39,9 @@ class Airspace(Model):
     """Visual interference of a beam with pilots, beside the distance of the eye hazard."""
 
     luminous_efficiency: list[float] = Field(description="V of each line, 0 outside 360 to 820 nm.")
-    visual_power_w: float = Field(description="Average power of all lines, each times its V.")
+    visual_power_w: float = Field(
+        description="Average power of all lines (of flashes energy / 0.1 s), each times its V."
+    )
     zones: list[AirspaceZone]
     eye_hazard_distance_m: float | None
     source: str = Field(description="Where V is from.")

@@ -16,9 +16,9 @@ from service.assess.steps import Step, number
 from service.contract.strict import Strict
 from service.files import DATA
 from service.optics.beams import Beams
-from service.optics.elements import expander, fresnel, lens, mirror, plate, space, through
+from service.optics.elements import expander, fresnel, lens, mirror, oblique, plate, space, through
 from service.optics.sweep import Scan
-from service.rules.materials import material_row, materials
+from service.rules.materials import materials, rows_around
 
 __all__ = [
     "ELEMENTS",
@@ -93,7 +93,8 @@ class WindowElement(Strict):
 class Reflector(Strict):
     """A flat reflecting surface: its reflectance, its refractive index, or a material of the table.
 
-    With an index the reflectance follows from angle and polarisation (Fresnel).
+    With an index the reflectance follows from angle and polarisation (Fresnel). A metal of the table reflects
+    more at an angle, in the strictest polarisation. A given reflectance holds at the angle as it is.
     """
 
     element: Literal["reflector"]
@@ -101,7 +102,9 @@ class Reflector(Strict):
     refractive_index: float | None = Field(None, ge=1, le=10)
     material: str | None = Field(None, max_length=100, description="See GET /api/v1/materials.")
     incidence_deg: float = Field(0.0, ge=0, le=90)
-    polarisation: Literal["s", "p", "unpolarised"] = "unpolarised"
+    polarisation: Literal["s", "p", "unpolarised"] = Field(
+        "s", description="s, the default, is the strictest."
+    )
     surfaces: Literal[1, 2] = Field(1, description="2: a plate that reflects from both sides.")
 
     @model_validator(mode="after")
@@ -114,15 +117,28 @@ class Reflector(Strict):
         return self
 
     def share(self, wavelength_nm: float) -> float:
-        """Share of the power that is reflected, never quite 0 (no surface is perfect)."""
-        one, index = self.reflectance, self.refractive_index
-        if self.material is not None:
-            row = material_row(materials(DATA)[self.material], wavelength_nm)
-            one, index = row.reflectance, row.refractive_index
-        if one is None:
-            assert index is not None
-            one = fresnel(index, math.radians(self.incidence_deg), self.polarisation)
+        """Share of the power that is reflected, never quite 0 (no surface is perfect).
+
+        Of a material the larger share of the rows around the wavelength. Raises ValueError outside them.
+        """
+        if self.material is None:
+            one = self._surface(self.reflectance, self.refractive_index)
+        else:
+            incidence = math.radians(self.incidence_deg)
+            one = max(
+                self._surface(None, row.refractive_index)
+                if row.reflectance is None
+                else oblique(row.reflectance, incidence)
+                for row in rows_around(materials(DATA)[self.material], wavelength_nm)
+            )
         return max(plate(one) if self.surfaces == 2 else one, 1e-20)
+
+    def _surface(self, reflectance: float | None, index: float | None) -> float:
+        """Reflectance of one surface, as given or by its index."""
+        if reflectance is not None:
+            return reflectance
+        assert index is not None
+        return fresnel(index, math.radians(self.incidence_deg), self.polarisation)
 
 
 class Diffuser(Strict):

@@ -9,7 +9,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from service.assess.lines import MODES, Lines
-from service.contract.bench import LEAST, apply
+from service.contract.bench import LEAST, Reflector, apply
+from service.contract.problem import FieldError, InvalidRequest
 from service.contract.request import Cw, EvaluationRequest, Train
 from service.optics.air import extinction_per_m
 from service.optics.beams import Beams
@@ -71,8 +72,31 @@ def conventional_durations(
     return duration_row
 
 
+def _known_materials(request: EvaluationRequest) -> None:
+    """Raises InvalidRequest where a material stands for a wavelength at which it is not known."""
+    for k, element in enumerate(request.bench):
+        if not isinstance(element, Reflector) or element.material is None:
+            continue
+        for line in request.lines:
+            try:
+                element.share(line.wavelength_nm)
+            except ValueError as error:
+                field = FieldError(
+                    field=f"bench.{k}.material",
+                    value=element.material,
+                    allowed=str(error),
+                    message=f"no value at {line.wavelength_nm:g} nm",
+                    remedy="Give the reflectance or the refractive index at that wavelength.",
+                )
+                text = f"bench.{k}.material: {element.material} has no value at {line.wavelength_nm:g} nm"
+                raise InvalidRequest(text, [field]) from None
+
+
 def behind_bench(requests: Sequence[EvaluationRequest], lines: Lines) -> Lines:
-    """The lines behind the last element of each request's bench, in its air."""
+    """The lines behind the last element of each request's bench, in its air.
+
+    Raises InvalidRequest where a material is not known at a wavelength.
+    """
     changed = [n for n, r in enumerate(requests) if r.bench or r.viewing.visibility_km]
     if not changed:
         return lines
@@ -80,6 +104,7 @@ def behind_bench(requests: Sequence[EvaluationRequest], lines: Lines) -> Lines:
     for number in changed:
         request, index = requests[number], np.flatnonzero(lines.laser == number)
         if request.bench:
+            _known_materials(request)
             behind, left = apply(request.bench, beams.take(index), lines.wavelength_nm[index])
             emitted[index] = np.maximum(emitted[index] * left, LEAST)
             for name in Beams.__slots__:

@@ -58,7 +58,10 @@ class SweptLine(Model):
 
     line: int
     distance_m: float
-    pass_s: float | None = Field(description="Duration of one pass; null for a pulsed line, not credited.")
+    pass_s: float | None = Field(
+        description="Duration of one pass, or of the rows of a raster that pass in one go where they count "
+        "as one; null for a pulsed line, not credited."
+    )
     passes_hz: float | None
 
 

@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 
 from service.optics.beams import Beams
 
-__all__ = ["Matrix", "expander", "fresnel", "lens", "mirror", "plate", "space", "through"]
+__all__ = ["Matrix", "expander", "fresnel", "lens", "mirror", "oblique", "plate", "space", "through"]
 
 Floats = NDArray[np.float64]
 
@@ -102,6 +102,19 @@ def fresnel(index: float, incidence_rad: float, polarisation: str) -> float:
     s = ((i - index * t) / (i + index * t)) ** 2
     p = ((index * i - t) / (index * i + t)) ** 2
     return {"s": s, "p": p, "unpolarised": (s + p) / 2.0}[polarisation]
+
+
+def oblique(reflectance: float, incidence_rad: float) -> float:
+    """Highest reflectance at an angle of a surface, a metal as a rule, of a known one at normal incidence.
+
+    1 - R_s = 4 u cos(i) / ((u + cos(i))^2 + v^2) with the complex index u + iv; against normal incidence that
+    is at least cos(i) times as much, and p reflects less than s. So 1 - (1 - R) cos(i), whatever the
+    polarisation.
+
+    Reference: derived from Born and Wolf, Principles of Optics, section 14.2 (from memory), for indices whose
+    square is large against 1.
+    """
+    return 1.0 - (1.0 - reflectance) * float(np.cos(incidence_rad))
 
 
 def plate(reflectance: float) -> float:

@@ -39,14 +39,14 @@ def encircled_fraction(aperture_m: Floats, x_m: Floats, y_m: Floats, tophat: Boo
     hat = tophat.nonzero()[0]
     if hat.size:
         fraction[hat] = np.minimum(1.0, ratio[hat])
-    uneven = (x_m != y_m).nonzero()[0]
-    if uneven.size:
-        narrow = np.minimum(x_m[uneven], y_m[uneven])
-        wide = np.maximum(x_m[uneven], y_m[uneven])
-        a, flat = aperture_m[uneven], tophat[uneven]
-        fraction[uneven] = np.where(
-            flat, _elliptical_tophat(a, narrow, wide), _elliptical_gaussian(a, narrow, wide)
-        )
+    uneven = x_m != y_m
+    for form, which in (
+        (_elliptical_tophat, np.flatnonzero(uneven & tophat)),
+        (_elliptical_gaussian, np.flatnonzero(uneven & ~tophat)),
+    ):
+        if which.size:
+            x, y = x_m[which], y_m[which]
+            fraction[which] = form(aperture_m[which], np.minimum(x, y), np.maximum(x, y))
     return fraction
 
 

@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 
 from service.optics.beams import Beams
 
-__all__ = ["Scan", "mean_chord_m", "passes"]
+__all__ = ["Scan", "burst_s", "mean_chord_m", "passes"]
 
 Floats = NDArray[np.float64]
 
@@ -96,7 +96,24 @@ def passes(
         else:
             cycles = scan.sweeps_hz
             duration = share / cycles / (np.pi / 2.0 if scan.sinusoidal else 1.0)
-        spacing = distance_m * scan.height_rad / max(scan.rows - 1, 1)
-        touching = np.where(spacing > 0.0, (aperture_m + across) / spacing + 1.0, np.inf)
-    rate = cycles / scan.rows * np.minimum(scan.rows, touching)
+    rate = cycles / scan.rows * _touching(scan, aperture_m, across, distance_m)
     return np.minimum(duration, 1.0 / rate), rate
+
+
+def burst_s(scan: Scan, beams: Beams, aperture_m: Floats, distance_m: Floats) -> Floats:
+    """Time [s] in which the rows of one picture that can touch an aperture follow each other.
+
+    The passes of a raster do not come evenly: rows above each other come one after the other, then none until
+    the next picture. At least one sweep to and fro. Parameters as of `passes`.
+    """
+    _, across = beams.diameters_m(distance_m)
+    rows = np.maximum(_touching(scan, aperture_m, across, distance_m), min(scan.rows, 2))
+    return rows / scan.sweeps_hz
+
+
+def _touching(scan: Scan, aperture_m: Floats, across_m: Floats, distance_m: Floats) -> Floats:
+    """Rows that can touch an aperture: (aperture + beam) / spacing + 1, at most all."""
+    with np.errstate(divide="ignore", invalid="ignore"):
+        spacing = distance_m * scan.height_rad / max(scan.rows - 1, 1)
+        touching = np.where(spacing > 0.0, (aperture_m + across_m) / spacing + 1.0, np.inf)
+    return np.minimum(scan.rows, touching)

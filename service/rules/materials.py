@@ -2,14 +2,13 @@
 
 from __future__ import annotations
 
-import math
 from dataclasses import dataclass
 from functools import lru_cache
 from pathlib import Path
 
 from service.rules.tables import Row, TableError, read_rows, read_sources
 
-__all__ = ["MaterialRow", "material_row", "materials"]
+__all__ = ["MaterialRow", "materials", "rows_around"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -30,10 +29,22 @@ def materials(data: Path) -> dict[str, list[MaterialRow]]:
     for row in read_rows(path, MaterialRow, read_sources(data / "sources.toml")):
         if (row.refractive_index is None) == (row.reflectance is None):
             raise TableError(path, row.line, "give refractive_index or reflectance, one of the two")
-        found.setdefault(row.material, []).append(row)
+        rows = found.setdefault(row.material, [])
+        if rows and row.wavelength_nm <= rows[-1].wavelength_nm:
+            raise TableError(path, row.line, "the wavelengths of a material must ascend")
+        rows.append(row)
     return found
 
 
-def material_row(rows: list[MaterialRow], wavelength_nm: float) -> MaterialRow:
-    """The row whose wavelength lies nearest, counted in powers of ten."""
-    return min(rows, key=lambda r: abs(math.log(r.wavelength_nm / wavelength_nm)))
+def rows_around(rows: list[MaterialRow], wavelength_nm: float) -> tuple[MaterialRow, ...]:
+    """The rows on both sides of a wavelength, or the one at it. Raises ValueError outside the rows.
+
+    Between two rows either can be nearer to the truth (gold turns from 75 % to 95 % between green and red),
+    so whoever wants a safe reflectance takes the larger of both. Nothing is carried beyond the rows: glass
+    that reflects 4 % of visible light reflects a good part of what a CO2 laser sends.
+    """
+    below = [row for row in rows if row.wavelength_nm <= wavelength_nm]
+    above = [row for row in rows if row.wavelength_nm >= wavelength_nm]
+    if not below or not above:
+        raise ValueError(f"known from {rows[0].wavelength_nm:g} to {rows[-1].wavelength_nm:g} nm only")
+    return (below[-1], above[0])

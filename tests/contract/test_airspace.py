@@ -98,3 +98,13 @@ def test_levels_are_from_memory_and_the_authority_decides() -> None:
     found = airspace(line(555, cw(1)))
     assert {z.known for z in found.zones} == {"memory"}
     assert "authority decides" in found.reminder
+
+
+def test_rare_pulses_count_as_flashes() -> None:
+    """A flash every 100 s of 1 mJ is a flash of 1 mJ / 0.1 s, not a mean of 10 uW (common practice)."""
+    train = {"mode": "train", "energy_j": 1e-3, "pulse_s": 1e-8, "rate_hz": 0.01}
+    single = {"mode": "pulse", "energy_j": 1e-3, "pulse_s": 1e-8}
+    rare, flash = airspace(line(555, train)), airspace(line(555, single))
+    assert rare.visual_power_w == pytest.approx(1e-3 / 0.1, rel=1e-12)
+    assert [z.distance_m for z in rare.zones] == [z.distance_m for z in flash.zones]
+    assert reach(rare, "critical") > 0.0

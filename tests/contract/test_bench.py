@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import cmath
 import math
 from typing import Any
 
@@ -12,7 +13,9 @@ from hypothesis import strategies as st
 
 from service.contract.answer import answer
 from service.contract.evaluation import EvaluationResult
+from service.contract.problem import InvalidRequest
 from service.contract.request import EvaluationRequest
+from service.optics.elements import oblique
 from tests.assess.strategies import line, log
 
 EXAMPLES = settings(max_examples=120, deadline=None, derandomize=True)
@@ -107,15 +110,79 @@ def test_reflection_and_window_scale_the_ratio() -> None:
     assert filtered == pytest.approx(0.01 * whole, rel=1e-12)
 
 
+def reflected(wavelength: float, **reflector: Any) -> float:
+    """Share of the power that a reflector sends on."""
+    whole = run(wavelength=wavelength).eye.hazard_ratio
+    return run([{"element": "reflector", **reflector}], wavelength=wavelength).eye.hazard_ratio / whole
+
+
 def test_materials_by_wavelength() -> None:
     """From memory: crown glass 1.517 at 589 nm, ((n-1)/(n+1))^2; gold reflects 75 % green, 99 % infrared."""
-    whole = run().eye.hazard_ratio
-    glass = run([{"element": "reflector", "material": "crown glass"}]).eye.hazard_ratio
-    assert glass == pytest.approx((0.517 / 2.517) ** 2 * whole, rel=1e-9)
-    gold = [{"element": "reflector", "material": "gold"}]
-    assert run(gold).eye.hazard_ratio == pytest.approx(0.75 * whole, rel=1e-9)
-    infrared = run(wavelength=1064).eye.hazard_ratio
-    assert run(gold, wavelength=1064).eye.hazard_ratio == pytest.approx(0.99 * infrared, rel=1e-9)
+    assert reflected(589, material="crown glass") == pytest.approx((0.517 / 2.517) ** 2, rel=1e-9)
+    assert reflected(532, material="gold") == pytest.approx(0.75, rel=1e-9)
+    assert reflected(1064, material="gold") == pytest.approx(0.99, rel=1e-9)
+
+
+@pytest.mark.parametrize(
+    ("material", "wavelength", "true"),
+    [
+        # Reflectances of evaporated films and of bulk glass, plastic and silicon (handbooks, from memory).
+        ("gold", 633, 0.93),
+        ("gold", 780, 0.975),
+        ("copper", 650, 0.96),
+        ("copper", 700, 0.97),
+        ("aluminium", 905, 0.89),
+        ("aluminium", 1550, 0.974),
+        ("silver", 10600, 0.99),
+        ("silicon", 405, 0.48),
+        ("silicon", 532, 0.37),
+        ("polycarbonate", 405, (0.62 / 2.62) ** 2),
+        ("fused silica", 193, (0.56 / 2.56) ** 2),
+        ("sapphire", 266, (0.83 / 2.83) ** 2),
+        ("water", 2940, (0.30 / 2.30) ** 2),
+    ],
+)
+def test_a_material_never_reflects_less_than_in_truth(material: str, wavelength: float, true: float) -> None:
+    assert reflected(wavelength, material=material) >= true
+
+
+@pytest.mark.parametrize(
+    ("material", "wavelength"), [("crown glass", 10600), ("fused silica", 9300), ("silicon", 266)]
+)
+def test_a_material_is_not_carried_beyond_its_rows(material: str, wavelength: float) -> None:
+    """Glass reflects up to a half and more around 9 um (silica), silicon 70 % in the UV."""
+    with pytest.raises(InvalidRequest, match=f"{material} has no value at {wavelength} nm"):
+        reflected(wavelength, material=material)
+
+
+def metal(index: complex, angle: float) -> tuple[float, float]:
+    """Fresnel with a complex index: R_s and R_p."""
+    i = math.cos(angle)
+    t = cmath.sqrt(1 - (math.sin(angle) / index) ** 2)
+    return abs((i - index * t) / (i + index * t)) ** 2, abs((index * i - t) / (index * i + t)) ** 2
+
+
+@pytest.mark.parametrize("index", [2.7 + 3.9j, 1.1 + 2.6j, 0.9 + 6.5j, 0.2 + 3.4j, 2.9 + 3.1j])
+@pytest.mark.parametrize("degrees", [0, 30, 45, 60, 75, 85, 89])
+def test_a_metal_reflects_more_at_an_angle(index: complex, degrees: float) -> None:
+    """Against Fresnel's equations with complex indices like those of steel, copper, aluminium and gold."""
+    s, p = metal(index, math.radians(degrees))
+    bound = oblique(metal(index, 0.0)[0], math.radians(degrees))
+    assert max(s, p) <= bound * (1 + 1e-3)
+    assert bound <= 1.0
+
+
+def test_steel_at_grazing_incidence() -> None:
+    """1 - 0.35 cos(80 deg) instead of the 65 % at normal incidence."""
+    grazing = reflected(532, material="stainless steel", incidence_deg=80)
+    assert grazing == pytest.approx(1 - 0.35 * math.cos(math.radians(80)), rel=1e-9)
+
+
+def test_the_strictest_polarisation_is_the_default() -> None:
+    """Glass of 1.5 at 45 degrees: R_s = 9.2 %, R_p = R_s^2 = 0.85 % (Born and Wolf 1.5: at 45 degrees)."""
+    assert reflected(532, refractive_index=1.5, incidence_deg=45) == pytest.approx(0.0920, abs=5e-5)
+    p = reflected(532, refractive_index=1.5, incidence_deg=45, polarisation="p")
+    assert p == pytest.approx(0.0920**2, rel=2e-3)
 
 
 def test_external_focus_has_a_zone_of_its_own() -> None:

@@ -218,3 +218,16 @@ def test_more_power_never_reaches_less_far(
         assert again.over_distance is not None
         assert max(again.over_distance.eye.hazard_ratio) <= 1.0 + 1e-9
     assert far[1] >= far[0] * (1 - 1e-9)
+
+
+@pytest.mark.parametrize("distance_m", [0.0, 1e-6, 0.05])
+def test_nearer_than_an_eye_can_focus(distance_m: float) -> None:
+    """Nearer than 100 mm the spot counts as wide as from there: C_E = (d / 100 mm) / 1.5 mrad, 1 mm spot.
+    At the spot itself all that is scattered counts as if it entered the pupil."""
+    result = run(power=1.0, spot_mm=1.0, viewing={"distance_m": distance_m})
+    at = result.eye.at_distance
+    assert at is not None
+    d = 2 * max(distance_m, 1e-9)
+    inside = min(1.0, (7e-3 / d) ** 2)
+    c_e = 1.0 / 0.1 / 1.5
+    assert at.hazard_ratio == pytest.approx(inside / (math.pi / 4 * 7e-3**2) / (GLANCE * c_e), rel=1e-6)
