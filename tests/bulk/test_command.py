@@ -16,6 +16,7 @@ import pytest
 
 from service import cli
 from service.bulk import command
+from service.bulk.checkpoint import Checkpoint
 from service.bulk.records import Records, body_lines
 from tests.web.client import GOOD, changed
 from tests.web.test_cli import COMMAND, PATIENCE_S, environment
@@ -141,7 +142,7 @@ def test_it_does_not_go_on_with_what_does_not_fit(
 ) -> None:
     """Other input, other options or other tables: a mixture is never written."""
     out, kept = tmp_path / "out.ndjson", many.read_bytes()
-    monkeypatch.setattr(command.Checkpoint, "clear", lambda self: None)
+    monkeypatch.setattr(Checkpoint, "clear", lambda self: None)
     assert run(many, "-o", out) == 1
     before = out.read_bytes()
     many.write_bytes(kept.replace(b"532", b"533").replace(b'"cw"', b'"cw "', 1))
