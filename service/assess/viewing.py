@@ -7,7 +7,7 @@ from numpy.typing import NDArray
 
 from service.assess.evaluate import Evaluation, TargetResult
 
-__all__ = ["ratios_at", "sum_of_lines"]
+__all__ = ["ratios_at", "sum_of_lines", "worst_sum"]
 
 Floats = NDArray[np.float64]
 
@@ -36,9 +36,14 @@ def sum_of_lines(evaluation: Evaluation, result: TargetResult, ratio: Floats) ->
     ratio : (criteria,) ratios of exposure to limit
     """
     kind = evaluation.rules.additivity[result.criteria.row]
+    return worst_sum(kind.tolist(), result.criteria.line.tolist(), ratio.tolist())
+
+
+def worst_sum(kind: list[int], line: list[int], ratio: list[float]) -> float:
+    """Worst sum of the criteria of one laser, given the additivity class, line and ratio of each."""
     worst: dict[tuple[int, int], float] = {}
-    for name, line, value in zip(kind.tolist(), result.criteria.line.tolist(), ratio.tolist(), strict=True):
-        worst[name, line] = max(worst.get((name, line), 0.0), value)
+    for name, number, value in zip(kind, line, ratio, strict=True):
+        worst[name, number] = max(worst.get((name, number), 0.0), value)
     sums: dict[int, float] = {}
     for (name, _), value in worst.items():
         sums[name] = sums.get(name, 0.0) + value
