@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+import doctest
 import math
 from typing import Any
 
 import numpy as np
 import pytest
 
+from service import columns as columns_module
 from service.bulk.flat import UnknownColumn
 from service.columns import COLUMNS, evaluate_columns
 from service.contract.answer import answer
@@ -218,3 +220,9 @@ def test_names_and_lengths_are_checked() -> None:
 def test_no_row_is_no_answer() -> None:
     found = evaluate_columns({name: [] for name in COLUMNS})
     assert all(len(column) == 0 for column in found.values())
+
+
+def test_the_example_of_the_module_holds() -> None:
+    tried = doctest.testmod(columns_module)
+    assert tried.attempted > 3
+    assert tried.failed == 0
