@@ -5,8 +5,8 @@
 >>> power = np.geomspace(1e-3, 1.0, 4)
 >>> found = evaluate_columns({"wavelength_nm": 532, "mode": "cw", "power_w": power,
 ...                           "diameter_mm": 2.0, "divergence_mrad": 1.0})
->>> sorted(found)[:3]
-['class_iec_60825_1_2014', 'class_us_21cfr1040', 'eye_effect']
+>>> found["class_iec_60825_1_2014"].tolist()
+['2', '3B', '3B', '4']
 >>> len(found["eye_hazard_distance_m"])
 4
 """
@@ -47,7 +47,14 @@ Column = NDArray[Any]
 CHUNK = 16_384
 #: Rows of one pass where notices are wanted.
 NOTICE_CHUNK = 1000
-FLOATS = ("hazard_distance_m", "hazard_from_m", "hazard_ratio", "optical_density")
+FLOATS = (
+    "hazard_distance_m",
+    "hazard_from_m",
+    "hazard_ratio",
+    "optical_density",
+    "ratio_at_distance",
+    "density_at_distance",
+)
 
 
 def evaluate_columns(columns: Mapping[str, Any], *, notices: bool = False) -> dict[str, Column]:
@@ -59,8 +66,9 @@ def evaluate_columns(columns: Mapping[str, Any], *, notices: bool = False) -> di
         fields with their units (see `COLUMNS`): wavelength_nm [nm], power_w [W], energy_j [J],
         average_power_w [W], pulse_s [s], rate_hz [Hz], diameter_mm [mm], divergence_mrad [mrad] (full
         angle), diameter_y_mm and divergence_y_mrad for elliptical beams, waist_m [m], subtense_mrad [mrad],
-        exposure_s [s]; text in label, rules, mode, profile, level, diameter_at. A single value holds for
-        every row. NaN, None and empty text are fields that are not given; the API's defaults then hold.
+        exposure_s [s], distance_m [m] (viewing distance); text in label, rules, mode, profile, level,
+        diameter_at. A single value holds for every row. NaN, None and empty text are fields that are not
+        given; the API's defaults then hold.
     notices : also list the codes of the API's notices in the column `notices` (slower: every row is read as
         a request; otherwise the column is empty)
 
@@ -69,7 +77,8 @@ def evaluate_columns(columns: Mapping[str, Any], *, notices: bool = False) -> di
     dict of arrays, one element per row. For `eye` and `skin`: `eye_hazard_distance_m` and
     `eye_hazard_from_m` [m] (ends of the hazard zone; 0 where nothing is exceeded, infinite where a beam
     never falls below its limit), `eye_hazard_ratio`, `eye_optical_density`, and the governing criterion in
-    `eye_line`, `eye_rule`, `eye_tissue`, `eye_effect`, `eye_row`. The hazard class by scheme in
+    `eye_line`, `eye_rule`, `eye_tissue`, `eye_effect`, `eye_row`; where a viewing distance is given
+    `eye_ratio_at_distance` and `eye_density_at_distance`, else NaN. The hazard class by scheme in
     `class_iec_60825_1_2014` and `class_us_21cfr1040`; `rules` and `rules_digest` tell which tables made the
     row. A row that cannot be used has its reason in `problem` and NaN in every number.
 

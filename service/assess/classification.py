@@ -9,6 +9,7 @@ from numpy.typing import NDArray
 
 from service.assess.criteria import TRAIN_RULE, Exposures, exposures
 from service.assess.lines import Lines
+from service.optics.beams import Beams
 from service.rules.classes import UNAIDED, ClassRule, CompiledScheme
 from service.rules.limits import Conditions
 
@@ -126,13 +127,33 @@ def _against(
         distances.append(np.where(none, own[1], distance))
         numbers.append(np.where(none, own[2], number))
     aperture, distance = np.concatenate(apertures), np.concatenate(distances)
-    beams = lines.beams.take(np.tile(line, len(names)))
-    fraction = beams.most_inside(aperture, distance)
+    fraction = _fractions(lines.beams, np.tile(line, len(names)), aperture, distance)
     area = np.where(np.tile(scheme.per_area[row], len(names)), np.pi / 4.0 * aperture * aperture, 1.0)
     emission = (np.tile(found.dose[e], len(names)) * fraction / area).reshape(len(names), -1)
     ratio = emission / limit
     by_name = (dict(zip(names, values, strict=True)) for values in (emission, ratio, numbers))
     return ClassLimits(found, e, line, row, limit, *by_name)
+
+
+def _fractions(beams: Beams, line: Ints, aperture_m: Floats, distance_m: Floats) -> Floats:
+    """Fraction of each line's beam inside an aperture [m] at a distance [m], or at the worst place beyond it.
+
+    Limits share apertures and distances: each elliptical beam, whose fraction takes an integral, is asked for
+    each of them once.
+    """
+    round_ = (beams.diameter_x_m == beams.diameter_y_m) & (beams.divergence_x_rad == beams.divergence_y_rad)
+    asked = again = np.arange(len(line))
+    uneven = np.flatnonzero(~round_[line])
+    if uneven.size:
+        order = uneven[np.lexsort((aperture_m[uneven], distance_m[uneven], line[uneven]))]
+        key = np.stack([line[order], distance_m[order], aperture_m[order]])
+        new = np.r_[True, (key[:, 1:] != key[:, :-1]).any(axis=0)]
+        again = again.copy()
+        again[order] = order[new][np.cumsum(new) - 1]
+        asked = np.flatnonzero(again == asked)
+    fraction = np.empty(len(line))
+    fraction[asked] = beams.take(line[asked]).most_inside(aperture_m[asked], distance_m[asked])
+    return fraction[again]
 
 
 def _per_laser(

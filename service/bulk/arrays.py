@@ -40,8 +40,8 @@ def ranges() -> Ranges:
 def quick_lines(part: dict[str, NDArray[Any]], allowed: Ranges) -> tuple[NDArray[np.bool_], Lines]:
     """Lines of a table, and the rows that are sure to be valid; the other rows' lines mean nothing.
 
-    A row that is not plain (text where a number is expected, a diameter at the exit away from the waist, an
-    angle next to nothing, anything out of range) is left to be read as a request.
+    A row that is not plain (text where a number is expected, a diameter at the exit away from the waist, a
+    viewing distance, an angle next to nothing, anything out of range) is left to be read as a request.
 
     Parameters
     ----------
@@ -95,6 +95,7 @@ def quick_lines(part: dict[str, NDArray[Any]], allowed: Ranges) -> tuple[NDArray
     within("subtense_mrad", subtense, needed=True)
     within("waist_m", waist, needed=True)
     ok &= (chosen["diameter_at"] == 0) | (waist == 0.0)
+    ok &= np.isnan(number("distance_m"))
     axes = []
     flat = chosen["profile"] == 1
     to_1e = np.where(flat | (chosen["level"] == 1), 1e-3, 1e-3 / SQRT2)

@@ -37,6 +37,7 @@ NUMBERS = (
     "divergence_mrad",
     "divergence_y_mrad",
     "waist_m",
+    "distance_m",
 )
 #: Columns of a laser. A cell that is empty (a number that is NaN) is a field that is not given.
 COLUMNS = TEXTS + NUMBERS
@@ -82,7 +83,10 @@ def nested(row: Mapping[str, Any]) -> dict[str, Any]:
             beam[name] = [given.get(name), given[y]]
         elif name in given:
             beam[name] = given[name]
-    return {**{k: given[k] for k in TOP if k in given}, "lines": [line]}
+    top: dict[str, Any] = {k: given[k] for k in TOP if k in given}
+    if "distance_m" in given:
+        top["viewing"] = {"distance_m": given["distance_m"]}
+    return {**top, "lines": [line]}
 
 
 def class_column(scheme: str) -> str:
@@ -101,6 +105,8 @@ OF_TARGET = (
     "tissue",
     "effect",
     "row",
+    "ratio_at_distance",
+    "density_at_distance",
 )
 
 
@@ -130,6 +136,9 @@ def flat_record(record: Mapping[str, Any]) -> dict[str, Any]:
         for name in ("hazard_ratio", "optical_density"):
             flat[f"{target}_{name}"] = found[name]
         flat |= {f"{target}_{name}": value for name, value in found["governing"].items()}
+        if (there := found["at_distance"]) is not None:
+            flat[f"{target}_ratio_at_distance"] = there["hazard_ratio"]
+            flat[f"{target}_density_at_distance"] = there["optical_density"]
     flat |= {class_column(scheme): name for scheme, name in record["classes"].items()}
     flat["notices"] = " ".join(record["notices"])
     flat["problem"] = ""

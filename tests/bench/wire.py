@@ -86,7 +86,7 @@ class Running:
     def resident_mb(self, name: str = "VmRSS") -> float:
         """Resident memory now, or at most so far (VmHWM) [MB]."""
         with open(f"/proc/{self.process.pid}/status") as status:
-            return next(int(line.split()[1]) / 1024 for line in status if line.startswith(name))
+            return next((int(line.split()[1]) / 1024 for line in status if line.startswith(name)), 0.0)
 
 
 @contextmanager

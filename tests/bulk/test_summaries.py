@@ -31,7 +31,7 @@ def sample() -> list[EvaluationRequest]:
     """Random lasers: several lines, elliptical beams, trains, distant waists, every rule set."""
     found = valid(requests(11))
     random.Random(3).shuffle(found)
-    return found
+    return found[:110]
 
 
 def plain(wavelength_nm: float, power_w: float, **more: Any) -> EvaluationRequest:
@@ -49,7 +49,7 @@ def test_the_company_does_not_matter(sample: list[EvaluationRequest]) -> None:
     """A laser's figures are the same in any batch: sizes below and above the width of vector units."""
     whole = summaries(sample, range(len(sample)))
     for size in (1, 3, 17):
-        for start in range(0, 68, size):
+        for start in range(0, 51, size):
             part = summaries(sample[start : start + size], range(start, start + size))
             assert part == whole[start : start + len(part)]
 

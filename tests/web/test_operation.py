@@ -10,6 +10,7 @@ import signal
 import subprocess
 import sys
 import threading
+import time
 from pathlib import Path
 
 import httpx
@@ -59,10 +60,15 @@ def test_requests_are_counted_by_route(client: Client) -> None:
 def test_workers_share_address_and_numbers(tmp_path: Path) -> None:
     with serving(tmp_path, "--port", "0", "--workers", "2") as url, httpx.Client(timeout=PATIENCE_S) as http:
         answers = [httpx.post(f"{url}{EVALUATE}", json=GOOD, timeout=PATIENCE_S) for _ in range(12)]
-        numbers = counted(http.get(f"{url}/metrics").text)
+        end = time.monotonic() + PATIENCE_S
+        while True:
+            # A worker counts a request just after its answer has left.
+            number = counted(http.get(f"{url}/metrics").text)[requests_of(EVALUATE, "POST", 200)]
+            if number >= len(answers) or time.monotonic() > end:
+                break
     assert {answer.status_code for answer in answers} == {200}
     assert len({answer.text for answer in answers}) == 1
-    assert numbers[requests_of(EVALUATE, "POST", 200)] == 12.0
+    assert number == len(answers)
 
 
 def test_a_signal_to_stop_finishes_what_runs(tmp_path: Path) -> None:
@@ -97,7 +103,7 @@ def test_a_signal_to_stop_finishes_what_runs(tmp_path: Path) -> None:
 
 def test_one_evaluation_is_answered_beside_a_large_one(tmp_path: Path) -> None:
     """A stream of many is computed off the event loop: single requests go on meanwhile."""
-    sent = (json.dumps(GOOD) + "\n").encode() * 40_000
+    sent = (json.dumps(GOOD) + "\n").encode() * 20_000
     headers = {"content-type": "application/x-ndjson", "accept-encoding": "identity"}
     with serving(tmp_path, "--port", "0") as url:
         ended = threading.Event()
