@@ -22,7 +22,7 @@ import typst
 
 from service.files import TEMPLATES
 
-__all__ = ["MEDIA", "PageFormat", "TypesetError", "Unprintable", "pages", "pdf", "unprintable"]
+__all__ = ["MEDIA", "PageFormat", "TypesetError", "Unprintable", "facts", "pages", "pdf", "unprintable"]
 
 PageFormat = Literal["svg", "png"]
 MEDIA = {"pdf": "application/pdf", "svg": "image/svg+xml", "png": "image/png"}
@@ -71,6 +71,17 @@ def pages(
     return _compile(template, data, dated, form, dots_per_inch)
 
 
+def facts(template: str, data: dict[str, Any], label: str) -> Any:
+    """The value of the template's one ``#metadata(...)`` with this label. Raises as `pdf`."""
+    _printable(data)
+    inputs = {"data": json.dumps(data, allow_nan=False)}
+    try:
+        found = _new_compiler(template, inputs).query(label, field="value", one=True)
+    except typst.TypstError as error:
+        raise _refusal(error) from None
+    return json.loads(found)
+
+
 def unprintable(text: str) -> list[str]:
     """Characters of a text that cannot be printed, each once: not in the font, or control and format."""
     glyphs = _glyphs()
@@ -78,15 +89,25 @@ def unprintable(text: str) -> list[str]:
 
 
 def _visible(character: str) -> bool:
-    """Neither control, format (which may turn or hide text), surrogate, private, nor a line separator."""
+    """Neither control, format (may turn or hide text), private, a loose accent, nor a line separator."""
     category = unicodedata.category(character)
-    return category[0] != "C" and category not in ("Zl", "Zp")
+    return category[0] != "C" and category not in ("Mn", "Me", "Zl", "Zp")
+
+
+def _new_compiler(template: str | None = None, inputs: dict[str, str] | None = None) -> typst.Compiler:
+    return typst.Compiler(
+        input=template and str(TEMPLATES / template),
+        root=str(TEMPLATES),
+        font_paths=[str(FONTS)],
+        ignore_system_fonts=True,
+        sys_inputs=inputs or {},
+    )
 
 
 def _compiler() -> typst.Compiler:
     """The compiler of this thread: one must not be used by two at a time."""
     if not hasattr(_own, "compiler"):
-        _own.compiler = typst.Compiler(root=str(TEMPLATES), font_paths=[str(FONTS)], ignore_system_fonts=True)
+        _own.compiler = _new_compiler()
     compiler: typst.Compiler = _own.compiler
     return compiler
 
@@ -98,10 +119,7 @@ def _compile(
     form: Literal["pdf", "svg", "png"],
     dots_per_inch: float | None,
 ) -> list[bytes]:
-    for path, text in _texts(data, ""):
-        found = unprintable(text)
-        if found:
-            raise Unprintable(path, found)
+    _printable(data)
     options: dict[str, Any] = {"pdf_standards": ["ua-1"]} if form == "pdf" else {}
     midnight = datetime(dated.year, dated.month, dated.day, tzinfo=UTC)
     try:
@@ -114,11 +132,22 @@ def _compile(
             **options,
         )
     except typst.TypstError as error:
-        if error.message.startswith(REFUSED):
-            raise TypesetError(error.message.removeprefix(REFUSED)) from None
-        raise
+        raise _refusal(error) from None
     assert made is not None
     return made if isinstance(made, list) else [made]
+
+
+def _refusal(error: typst.TypstError) -> Exception:
+    """The template's own refusal, or the error as it is."""
+    own = error.message.startswith(REFUSED)
+    return TypesetError(error.message.removeprefix(REFUSED)) if own else error
+
+
+def _printable(data: dict[str, Any]) -> None:
+    for path, text in _texts(data, ""):
+        found = unprintable(text)
+        if found:
+            raise Unprintable(path, found)
 
 
 def _texts(value: Any, path: str) -> Iterator[tuple[str, str]]:
