@@ -142,9 +142,9 @@ HINTS = {
 
 
 @cache
-def _properties() -> dict[str, dict[str, Any]]:
-    """JSON schema of every field of the request by name."""
-    schema = EvaluationRequest.model_json_schema()
+def _properties(model: type[BaseModel]) -> dict[str, dict[str, Any]]:
+    """JSON schema of every field of a request by name."""
+    schema = model.model_json_schema()
     found = dict(schema["properties"])
     for definition in schema["$defs"].values():
         found.update(definition.get("properties", {}))
@@ -157,7 +157,7 @@ def _numbers(schema: dict[str, Any]) -> str:
     return f"{more}{low:g} to {schema['maximum']:g}"
 
 
-def _allowed(path: list[str]) -> str:
+def _allowed(path: list[str], model: type[BaseModel]) -> str:
     """What the field at `path` may hold, in words."""
     name = next((p for p in reversed(path) if not p.isdigit()), "")
     if name == "mode":
@@ -166,16 +166,22 @@ def _allowed(path: list[str]) -> str:
         return "an object with mode cw, pulse or train"
     if not name:
         return "an object"
-    schema = _properties().get(name)
+    schema = _properties(model).get(name)
     if schema is None:
         return "no such field"
     if "anyOf" in schema:
         kinds = [s for s in schema["anyOf"] if s.get("type") != "null"]
         schema = next((s for s in kinds if s.get("type") == "number"), kinds[0])
+    if path[-1].isdigit() and "type" in schema.get("items", {}):
+        schema = schema["items"]
     if schema.get("type") == "number":
         unit = UNITS.get(name.rsplit("_", 1)[-1], "")
         pair = ", or a list of two" if name in PAIRS else ""
         return f"a number, {_numbers(schema)} {unit}".rstrip() + pair
+    if schema.get("type") == "integer":
+        return f"a whole number, {_numbers(schema)}"
+    if schema.get("type") == "boolean":
+        return "true or false"
     if "enum" in schema:
         return ", ".join(map(str, schema["enum"]))
     if path[-1].isdigit() and "$ref" in schema.get("items", {}):
@@ -228,7 +234,7 @@ def _one_for_both_axes(errors: list[FieldError]) -> list[FieldError]:
     return kept
 
 
-def invalid_request(error: ValidationError) -> InvalidRequest:
+def invalid_request(error: ValidationError, model: type[BaseModel] = EvaluationRequest) -> InvalidRequest:
     """The problem for a request that failed validation."""
     errors = []
     for item in error.errors(include_url=False)[: 4 * LISTED]:
@@ -265,7 +271,7 @@ def invalid_request(error: ValidationError) -> InvalidRequest:
             FieldError(
                 field=(".".join(path) or "body")[:SHOWN],
                 value=shown(value),
-                allowed="no such field" if kind == "extra_forbidden" else _allowed(path),
+                allowed="no such field" if kind == "extra_forbidden" else _allowed(path, model),
                 message=message,
                 remedy=remedy,
             )

@@ -27,6 +27,7 @@ __all__ = [
     "Eyewear",
     "EyewearRange",
     "Line",
+    "Strict",
     "Viewing",
     "Window",
 ]

@@ -20,7 +20,7 @@ from service.sign.request import SignOptions
 from service.sign.rows import Figure, Row, Speech, beyond_every_filter, distances, eyewear, outputs
 from service.sign.tables import ClassWords, SignTables, sign_tables
 
-__all__ = ["Headline", "LeftOut", "SignContent", "SiteDefaults", "refuse", "sign_content"]
+__all__ = ["Headline", "LeftOut", "SignContent", "SiteDefaults", "edition", "refuse", "sign_content"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -137,19 +137,24 @@ def sign_content(
 
 
 def _check_days(options: SignOptions) -> None:
-    days = (options.valid_from, options.valid_to)
-    for name, day in zip(("valid_from", "valid_to"), days, strict=True):
-        if options.kind == "temporary" and day is None:
+    """A temporary area has both its days, in order; another sign has none."""
+    temporary = options.kind == "temporary"
+    problems = []
+    for name, day in (("valid_from", options.valid_from), ("valid_to", options.valid_to)):
+        if temporary and day is None:
             remedy = "Give the first and the last day of the temporary controlled area."
-            raise refuse(name, None, "a date, YYYY-MM-DD", "a temporary area needs its days", remedy)
-        if options.kind != "temporary" and day is not None:
+            problems.append(
+                refuse(name, None, "a date, YYYY-MM-DD", "a temporary area needs its days", remedy)
+            )
+        if not temporary and day is not None:
             remedy = "Leave it out, or ask for kind temporary."
-            raise refuse(name, day, "no value", "only a temporary area has days", remedy)
+            problems.append(refuse(name, day, "no value", "only a temporary area has days", remedy))
+    if problems:
+        raise InvalidRequest(problems[0].detail, [e for p in problems for e in p.errors])
     if options.valid_from and options.valid_to and options.valid_to < options.valid_from:
         allowed = f"{options.valid_from} or later"
-        raise refuse(
-            "valid_to", options.valid_to, allowed, "the last day lies before the first", "Swap the days."
-        )
+        message = "the last day lies before the first"
+        raise refuse("valid_to", options.valid_to, allowed, message, "Swap the days.")
 
 
 def _class_of(result: EvaluationResult, options: SignOptions) -> HazardClass:
@@ -274,14 +279,14 @@ def _footer(
     if options.kind == "aperture":
         return []
     if options.kind == "label":
-        return [f"{_edition(found.title)} · {day}"]
-    assessed = f"{speech.joined('assessed')} {day}: {result.rules.title} · {_edition(found.title)}"
+        return [f"{edition(found.title)} · {day}"]
+    assessed = f"{speech.joined('assessed')} {day}: {result.rules.title} · {edition(found.title)}"
     return [
         assessed,
         f"{speech.joined('evaluation')} {digest} · Blinkline {result.provenance.service_version}",
     ]
 
 
-def _edition(title: str) -> str:
+def edition(title: str) -> str:
     """Name and edition of a document without the place in it: IEC 60825-1:2014."""
     return title.partition(" (")[0].partition(", ")[0]

@@ -1,8 +1,8 @@
 """Figures as a sign prints them: three digits, rounded to the safe side, with a prefix to the unit.
 
 Powers, energies, rates, densities and distances are rounded up; pulse durations down, because the same
-energy in a shorter time is the harder pulse. Wavelengths are printed as given. A number and its unit keep together
-(no-break space).
+energy in a shorter time is the harder pulse. Wavelengths are printed as given. A no-break
+space keeps number and unit together.
 """
 
 from __future__ import annotations

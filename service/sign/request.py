@@ -7,19 +7,13 @@ import unicodedata
 from datetime import date
 from typing import Annotated, Literal
 
-from pydantic import AfterValidator, BaseModel, ConfigDict, Field
+from pydantic import AfterValidator, Field
 
-from service.contract.request import EvaluationRequest
+from service.contract.request import EvaluationRequest, Strict
 
 __all__ = ["SignOptions", "SignRequest"]
 
 ADDRESS = re.compile(r"https?://[!-~]+")
-
-
-class Strict(BaseModel):
-    """Refuses unknown fields, text for numbers, NaN and infinity; cannot be changed afterwards."""
-
-    model_config = ConfigDict(extra="forbid", strict=True, frozen=True, allow_inf_nan=False)
 
 
 def _composed(text: str) -> str:

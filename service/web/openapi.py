@@ -6,15 +6,21 @@ from typing import Any
 
 from fastapi import FastAPI
 from fastapi.openapi.utils import get_openapi
+from pydantic import BaseModel
 from pydantic.json_schema import models_json_schema
 
 from service.contract.problem import ProblemDocument
 from service.contract.request import EvaluationRequest
+from service.sign.request import SignRequest
 
 __all__ = ["describe"]
 
 TEMPLATE = "#/components/schemas/{model}"
-BODIES = ("/api/v1/evaluate", "/api/v1/compare")
+BODIES: dict[str, type[BaseModel]] = {
+    "/api/v1/evaluate": EvaluationRequest,
+    "/api/v1/compare": EvaluationRequest,
+    "/api/v1/sign": SignRequest,
+}
 EXAMPLES: dict[str, dict[str, Any]] = {
     "continuous": {
         "summary": "A green alignment beam, continuous wave",
@@ -58,6 +64,23 @@ EXAMPLES: dict[str, dict[str, Any]] = {
     },
 }
 
+SIGN_EXAMPLES: dict[str, dict[str, Any]] = {
+    "door": {
+        "summary": "A sign for the door, A4, in two languages",
+        "value": {
+            "evaluation": EXAMPLES["continuous"]["value"],
+            "sign": {"family": "iso", "sheet": "A4", "languages": ["en", "de"], "room": "Room 2.14"},
+        },
+    },
+    "labels": {
+        "summary": "Eight labels for the housing on one sheet",
+        "value": {
+            "evaluation": EXAMPLES["continuous"]["value"],
+            "sign": {"kind": "label", "label_mm": [74, 37], "copies": 8},
+        },
+    },
+}
+
 
 def describe(app: FastAPI) -> None:
     """Replace the application's OpenAPI builder by one that also knows bodies and problems."""
@@ -67,7 +90,8 @@ def describe(app: FastAPI) -> None:
             return app.openapi_schema
         document = get_openapi(title=app.title, version=app.version, routes=app.routes)
         _, definitions = models_json_schema(
-            [(EvaluationRequest, "validation"), (ProblemDocument, "serialization")], ref_template=TEMPLATE
+            [*((m, "validation") for m in set(BODIES.values())), (ProblemDocument, "serialization")],
+            ref_template=TEMPLATE,
         )
         document.setdefault("components", {}).setdefault("schemas", {}).update(definitions["$defs"])
         problem = {
@@ -83,10 +107,11 @@ def describe(app: FastAPI) -> None:
                 for status in statuses:
                     operation["responses"][status] = problem
                 if path in BODIES:
-                    schema = {"$ref": TEMPLATE.format(model="EvaluationRequest")}
+                    schema = {"$ref": TEMPLATE.format(model=BODIES[path].__name__)}
+                    examples = SIGN_EXAMPLES if BODIES[path] is SignRequest else EXAMPLES
                     operation["requestBody"] = {
                         "required": True,
-                        "content": {"application/json": {"schema": schema, "examples": EXAMPLES}},
+                        "content": {"application/json": {"schema": schema, "examples": examples}},
                     }
         app.openapi_schema = document
         return document
