@@ -153,7 +153,8 @@ def _data(content: SignContent, options: SignOptions, sheet: Sheet, code: str | 
         "headlines": [h.model_dump() for h in content.headlines],
         "notes": [n.model_dump() for n in content.notes],
         "rows": [{"id": row.id, "label": row.label, "lines": row.lines} for row in content.rows],
-        "footer": [*content.footer, *([content.address] if short_address else [])],
+        "footer": content.footer,
+        "address": content.address if short_address else None,
         "qr": code,
         "qr_mm": QR_SHARE * min(sheet.sign),
     }
