@@ -146,7 +146,7 @@ def _properties(model: type[BaseModel]) -> dict[str, dict[str, Any]]:
     """JSON schema of every field of a request by name."""
     schema = model.model_json_schema()
     found = dict(schema["properties"])
-    for definition in schema["$defs"].values():
+    for definition in schema.get("$defs", {}).values():
         found.update(definition.get("properties", {}))
     return found
 

@@ -24,6 +24,13 @@ TEMPLATE = "sign/sheet.typ"
 #: Side of the QR code as a share of the sign's short side, and squares of white around it.
 QR_SHARE = 0.19
 QUIET = 4
+#: Fields whose text people write, by the row that carries it.
+FIELDS = {
+    "laser": "evaluation.label",
+    "room": "sign.room",
+    "officer": "sign.lso_name",
+    "extra": "sign.extra_lines",
+}
 #: Longest address that is printed beside its code.
 ADDRESS_LENGTH = 60
 
@@ -67,12 +74,14 @@ class SetSign:
                 "Choose a larger sheet, one language, fewer signs, or shorten names and lines.",
             ) from None
         except typeset.Unprintable as error:
-            raise _unprintable(error) from None
+            raise _unprintable(error, self.content) from None
 
 
-def _unprintable(error: typeset.Unprintable) -> InvalidRequest:
+def _unprintable(error: typeset.Unprintable, content: SignContent) -> InvalidRequest:
+    """The problem for a text with characters that cannot be printed, under the field it came from."""
     shown = ", ".join(f"U+{ord(c):04X}" for c in error.characters[:8])
-    field = "evaluation.label" if error.path in ("title",) or ".laser." in error.path else "sign"
+    place = error.path.split(".")
+    field = FIELDS[content.rows[int(place[1])].id if place[0] == "rows" else "laser"]
     problem = FieldError(
         field=field,
         value=None,
@@ -102,7 +111,17 @@ def _code(address: str | None, sheet: Sheet) -> tuple[str | None, str | None]:
             "are read reliably; a larger sheet or a shorter address carries it"
         )
     drawn = io.BytesIO()
-    code.save(drawn, kind="svg", border=QUIET, xmldecl=False, light="#ffffff", nl=False)
+    code.save(
+        drawn,
+        kind="svg",
+        border=QUIET,
+        xmldecl=False,
+        light="#ffffff",
+        nl=False,
+        omitsize=True,
+        svgclass=None,
+        lineclass=None,
+    )
     return drawn.getvalue().decode(), None
 
 

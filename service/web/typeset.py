@@ -7,7 +7,9 @@ place something calls ``panic("refused: " + reason)``.
 
 from __future__ import annotations
 
+import base64
 import json
+import re
 import struct
 import threading
 import unicodedata
@@ -30,6 +32,11 @@ FONTS = Path(font_source_sans_pro.__file__).parent / "files"
 #: Faces that templates use: a character must be in each. The italic lacks Greek, so templates stand upright.
 FACES = ("Regular", "Semibold", "Bold")
 REFUSED = "panicked with: refused: "
+#: A drawing within a drawing, as the typesetter writes it.
+DRAWING = re.compile(
+    rb'<image( transform="[^"]*")? xlink:href="data:image/svg\+xml;base64,([^"]*)" '
+    rb'(width="[^"]*" height="[^"]*" preserveAspectRatio="none")/>'
+)
 _own = threading.local()
 
 
@@ -68,7 +75,14 @@ def pages(
     template: str, data: dict[str, Any], dated: date, form: PageFormat, dots_per_inch: float = 144.0
 ) -> list[bytes]:
     """The pages as pictures, in order; `dots_per_inch` counts for PNG alone. Otherwise as `pdf`."""
-    return _compile(template, data, dated, form, dots_per_inch)
+    made = _compile(template, data, dated, form, dots_per_inch)
+    return [DRAWING.sub(_inlined, page) for page in made] if form == "svg" else made
+
+
+def _inlined(found: re.Match[bytes]) -> bytes:
+    """A drawing within a drawing as shapes of its own: the policy of pages forbids data addresses."""
+    place, size = found[1] or b"", found[3]
+    return b"<g%s>%s</g>" % (place, base64.b64decode(found[2]).replace(b"<svg ", b"<svg %s " % size, 1))
 
 
 def facts(template: str, data: dict[str, Any], label: str) -> Any:
@@ -77,7 +91,7 @@ def facts(template: str, data: dict[str, Any], label: str) -> Any:
     inputs = {"data": json.dumps(data, allow_nan=False)}
     try:
         found = _new_compiler(template, inputs).query(label, field="value", one=True)
-    except typst.TypstError as error:
+    except RuntimeError as error:
         raise _refusal(error) from None
     return json.loads(found)
 
@@ -137,10 +151,10 @@ def _compile(
     return made if isinstance(made, list) else [made]
 
 
-def _refusal(error: typst.TypstError) -> Exception:
+def _refusal(error: RuntimeError) -> Exception:
     """The template's own refusal, or the error as it is."""
-    own = error.message.startswith(REFUSED)
-    return TypesetError(error.message.removeprefix(REFUSED)) if own else error
+    message = str(error).removeprefix("failed to compile document: ")
+    return TypesetError(message.removeprefix(REFUSED)) if message.startswith(REFUSED) else error
 
 
 def _printable(data: dict[str, Any]) -> None:

@@ -1,16 +1,15 @@
-"""Reading a sign back from its PDF: words, letter boxes, drawn shapes."""
+"""Reading a sign back from its PDF: words, and the box of every letter's ink."""
 
 from __future__ import annotations
 
-import io
 import re
 from dataclasses import dataclass
-from itertools import pairwise
-from typing import Any
 
-import pdfplumber
+import numpy as np
+import pypdfium2
+import pypdfium2.raw as raw
 
-__all__ = ["MM", "Read", "assert_set_well", "read"]
+__all__ = ["CAPITAL", "MM", "Read", "assert_set_well", "read"]
 
 #: Points in a millimetre.
 MM = 72.0 / 25.4
@@ -20,61 +19,68 @@ CAPITAL = 0.66
 
 @dataclass
 class Read:
-    """What a PDF holds: its pages, letters, and all text with plain blanks on one line."""
+    """A PDF's pages and the first one's size [pt], text with single blanks, ink boxes and letter sizes.
+
+    `boxes` are left, top, right, bottom [pt] from the left upper corner, one row per letter.
+    """
 
     pages: int
     size: tuple[float, float]
-    letters: list[dict[str, Any]]
     text: str
-    metadata: dict[str, Any]
+    letters: str
+    boxes: np.ndarray
+    sizes: np.ndarray
 
 
 def read(document: bytes) -> Read:
-    with pdfplumber.open(io.BytesIO(document)) as opened:
-        page = opened.pages[0]
-        letters = [c for c in page.chars if c["text"].strip("\u00a0 ")]
-        text = re.sub(r"\s+", " ", "".join(c["text"] for c in page.chars).replace("\u00a0", " "))
-        size = (float(page.width), float(page.height))
-        return Read(len(opened.pages), size, letters, text, opened.metadata)
+    """Read a PDF back."""
+    with pypdfium2.PdfDocument(document) as opened:
+        page = opened[0]
+        width, height = page.get_size()
+        found = page.get_textpage()
+        everything, letters, boxes, sizes = [], [], [], []
+        for k in range(found.count_chars()):
+            character = chr(raw.FPDFText_GetUnicode(found, k))
+            everything.append(character)
+            if raw.FPDFText_IsGenerated(found, k) or not character.strip("\u00a0 "):
+                continue
+            left, bottom, right, top = found.get_charbox(k)
+            letters.append(character)
+            boxes.append((left, height - top, right, height - bottom))
+            sizes.append(raw.FPDFText_GetFontSize(found, k))
+        text = re.sub(r"\s+", " ", "".join(everything).replace("\u00a0", " "))
+        count = len(opened)
+    return Read(count, (width, height), text, "".join(letters), np.array(boxes), np.array(sizes))
 
 
 def assert_set_well(
     found: Read, corner: tuple[float, float], sign: tuple[float, float], least_mm: float
-) -> None:
-    """One page; every letter inside the sign's edge, large enough, and on no other letter. Lengths in mm."""
+) -> int:
+    """One page; every letter of the sign inside its edge, large enough, and on no other. Lengths in mm.
+
+    Returns the number of letters on this sign.
+    """
     assert found.pages == 1
     left, top = (c * MM for c in corner)
     right, bottom = left + sign[0] * MM, top + sign[1] * MM
-    rows: dict[float, list[dict[str, Any]]] = {}
-    for letter in found.letters:
-        size = letter["size"]
-        assert size * CAPITAL >= least_mm * MM - 0.01, letter
-        # The box of a letter is taller than its ink; from capitals' top to a fifth below the line counts.
-        line = letter["bottom"] - 0.27 * size
-        assert left < letter["x0"], letter
-        assert letter["x1"] < right, letter
-        assert top < line - CAPITAL * size, letter
-        assert line + 0.2 * size < bottom, letter
-        rows.setdefault(round(line, 1), []).append(letter)
-    for letters in rows.values():
-        ordered = sorted(letters, key=lambda c: c["x0"])
-        for one, other in pairwise(ordered):
-            assert one["x1"] <= other["x0"] + 0.12 * one["size"], (one["text"], other["text"])
-    _lines_apart(rows)
-
-
-def _lines_apart(rows: dict[float, list[dict[str, Any]]]) -> None:
-    """Ink of lines that stand above each other does not touch: capitals' top below the line before."""
-    spans = [
-        (line, min(c["x0"] for c in cs), max(c["x1"] for c in cs), max(c["size"] for c in cs))
-        for line, cs in sorted(rows.items())
-    ]
-    for k, (line, left, right, _) in enumerate(spans):
-        for below, other_left, other_right, size in spans[k + 1 :]:
-            if other_left < right and left < other_right and not _columns_apart(rows, line, below):
-                assert below - CAPITAL * size >= line - 0.01, (line, below)
-
-
-def _columns_apart(rows: dict[float, list[dict[str, Any]]], one: float, other: float) -> bool:
-    """Whether no letter of one line stands above a letter of the other."""
-    return not any(a["x0"] < b["x1"] and b["x0"] < a["x1"] for a in rows[one] for b in rows[other])
+    middle = (found.boxes[:, :2] + found.boxes[:, 2:]) / 2.0
+    own = ((middle > (left, top)) & (middle < (right, bottom))).all(axis=1)
+    boxes, sizes = found.boxes[own], found.sizes[own]
+    assert len(boxes) > 10
+    assert (sizes * CAPITAL >= least_mm * MM - 0.01).all(), sizes.min()
+    assert (boxes[:, :2] > (left, top)).all()
+    assert (boxes[:, 2:] < (right, bottom)).all()
+    # Neighbours in a line may lean into each other (AV); letters of different lines and columns may not.
+    across = np.minimum(boxes[:, None, 2], boxes[None, :, 2]) - np.maximum(
+        boxes[:, None, 0], boxes[None, :, 0]
+    )
+    along = np.minimum(boxes[:, None, 3], boxes[None, :, 3]) - np.maximum(
+        boxes[:, None, 1], boxes[None, :, 1]
+    )
+    size = np.maximum(sizes[:, None], sizes[None, :])
+    meet = (across > 0.13 * size) & (along > 0.02 * size)
+    # A ligature is one glyph that stands for two letters: they share their box.
+    meet &= (boxes[:, None] != boxes[None, :]).any(axis=2)
+    letters = np.array(list(found.letters))[own]
+    assert not meet.any(), [(letters[a], letters[b]) for a, b in np.argwhere(meet)[:5]]
+    return len(boxes)
