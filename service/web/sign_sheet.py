@@ -70,7 +70,7 @@ class SetSign:
                 "sheet",
                 None,
                 "a sheet or label with room for the text",
-                f"the {part} does not fit on this sheet with letters of {least:.1f} mm, the smallest allowed",
+                f"there is no room for the {part} with capitals of {least:.1f} mm, the smallest allowed",
                 "Choose a larger sheet, one language, fewer signs, or shorten names and lines.",
             ) from None
         except typeset.Unprintable as error:

@@ -200,7 +200,7 @@ def test_very_long_names_shrink_wrap_or_are_refused(client: Client) -> None:
     assert "very long names" in words(client, data)
     data["evaluation"]["label"] = "W" * 200
     document = assert_problem(made(client, data), 422, "sign.sheet")
-    assert "does not fit" in document["errors"][0]["message"]
+    assert "no room" in document["errors"][0]["message"]
 
 
 def test_the_description_knows_signs(client: Client) -> None:

@@ -169,7 +169,7 @@ def test_what_does_not_fit_is_refused_with_the_reason(options: dict[str, Any], f
         sign("4", **options).pdf()
     (error,) = caught.value.errors
     assert error.field == field
-    assert "does not fit" in error.message
+    assert "no room" in error.message
     assert "mm" in error.message
     assert error.remedy
 
