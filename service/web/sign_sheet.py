@@ -5,6 +5,7 @@ from __future__ import annotations
 import io
 from collections.abc import Callable
 from datetime import date
+from functools import lru_cache
 from typing import Any, TypeVar
 
 import segno
@@ -58,7 +59,7 @@ class SetSign:
 
     def facts(self) -> dict[str, Any]:
         """Sizes as set: letter heights [mm], side of the symbol [mm], distances [m]. Raises as `pdf`."""
-        return self._set(lambda: dict(typeset.facts(TEMPLATE, self.data, "<facts>")))
+        return self._set(lambda: dict(typeset.facts(TEMPLATE, self.data)))
 
     def _set(self, make: Callable[[], Made]) -> Made:
         try:
@@ -102,14 +103,20 @@ def _code(address: str | None, sheet: Sheet) -> tuple[str | None, str | None]:
     if address is None:
         return None, None
     least = sign_tables().sheets.layout.qr_module_least_mm
-    code = segno.make(address, error="l", micro=False)
-    modules = code.symbol_size(border=QUIET)[0]
+    drawn, modules = _drawn(address)
     square = QR_SHARE * min(sheet.sign) / modules
     if square < least:
         return None, (
             f"the code of this address would have squares of {square:.2f} mm, below the {least:g} mm that "
             "are read reliably; a larger sheet or a shorter address carries it"
         )
+    return drawn, None
+
+
+@lru_cache(maxsize=256)
+def _drawn(address: str) -> tuple[str, int]:
+    """QR code of an address as SVG, and its squares along a side with the quiet edge."""
+    code = segno.make(address, error="l", micro=False)
     drawn = io.BytesIO()
     code.save(
         drawn,
@@ -122,7 +129,7 @@ def _code(address: str | None, sheet: Sheet) -> tuple[str | None, str | None]:
         svgclass=None,
         lineclass=None,
     )
-    return drawn.getvalue().decode(), None
+    return drawn.getvalue().decode(), int(code.symbol_size(border=QUIET)[0])
 
 
 def _data(content: SignContent, options: SignOptions, sheet: Sheet, code: str | None) -> dict[str, Any]:

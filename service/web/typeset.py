@@ -32,6 +32,7 @@ FONTS = Path(font_source_sans_pro.__file__).parent / "files"
 #: Faces that templates use: a character must be in each. The italic lacks Greek, so templates stand upright.
 FACES = ("Regular", "Semibold", "Bold")
 REFUSED = "panicked with: refused: "
+TOLD = "panicked with: facts: "
 #: A drawing within a drawing, as the typesetter writes it.
 DRAWING = re.compile(
     rb'<image( transform="[^"]*")? xlink:href="data:image/svg\+xml;base64,([^"]*)" '
@@ -42,6 +43,10 @@ _own = threading.local()
 
 class TypesetError(ValueError):
     """The template refused its data; the message is the reason it gave."""
+
+
+class _Told(Exception):
+    """Facts that a template told, as JSON."""
 
 
 class Unprintable(ValueError):
@@ -85,15 +90,17 @@ def _inlined(found: re.Match[bytes]) -> bytes:
     return b"<g%s>%s</g>" % (place, base64.b64decode(found[2]).replace(b"<svg ", b"<svg %s " % size, 1))
 
 
-def facts(template: str, data: dict[str, Any], label: str) -> Any:
-    """The value of the template's one ``#metadata(...)`` with this label. Raises as `pdf`."""
-    _printable(data)
-    inputs = {"data": json.dumps(data, allow_nan=False)}
+def facts(template: str, data: dict[str, Any]) -> Any:
+    """What the template tells about its layout, as JSON gives it. Raises as `pdf`.
+
+    The template is run with ``sys.inputs.facts`` set and answers ``panic("facts: " + json.encode(...))``: the
+    typesetter's own queries take a compiler for each question and keep its memory.
+    """
     try:
-        found = _new_compiler(template, inputs).query(label, field="value", one=True)
-    except RuntimeError as error:
-        raise _refusal(error) from None
-    return json.loads(found)
+        _compile(template, data, date(2000, 1, 1), "svg", None, {"facts": "asked"})
+    except _Told as told:
+        return json.loads(str(told))
+    raise TypesetError(f"{template} tells no facts")
 
 
 def unprintable(text: str) -> list[str]:
@@ -108,20 +115,10 @@ def _visible(character: str) -> bool:
     return category[0] != "C" and category not in ("Mn", "Me", "Zl", "Zp")
 
 
-def _new_compiler(template: str | None = None, inputs: dict[str, str] | None = None) -> typst.Compiler:
-    return typst.Compiler(
-        input=template and str(TEMPLATES / template),
-        root=str(TEMPLATES),
-        font_paths=[str(FONTS)],
-        ignore_system_fonts=True,
-        sys_inputs=inputs or {},
-    )
-
-
 def _compiler() -> typst.Compiler:
     """The compiler of this thread: one must not be used by two at a time."""
     if not hasattr(_own, "compiler"):
-        _own.compiler = _new_compiler()
+        _own.compiler = typst.Compiler(root=str(TEMPLATES), font_paths=[str(FONTS)], ignore_system_fonts=True)
     compiler: typst.Compiler = _own.compiler
     return compiler
 
@@ -132,6 +129,7 @@ def _compile(
     dated: date,
     form: Literal["pdf", "svg", "png"],
     dots_per_inch: float | None,
+    inputs: dict[str, str] | None = None,
 ) -> list[bytes]:
     _printable(data)
     options: dict[str, Any] = {"pdf_standards": ["ua-1"]} if form == "pdf" else {}
@@ -141,7 +139,7 @@ def _compile(
             input=str(TEMPLATES / template),
             format=form,
             ppi=dots_per_inch,
-            sys_inputs={"data": json.dumps(data, allow_nan=False)},
+            sys_inputs={"data": json.dumps(data, allow_nan=False), **(inputs or {})},
             timestamp=int(midnight.timestamp()),
             **options,
         )
@@ -151,10 +149,12 @@ def _compile(
     return made if isinstance(made, list) else [made]
 
 
-def _refusal(error: RuntimeError) -> Exception:
-    """The template's own refusal, or the error as it is."""
-    message = str(error).removeprefix("failed to compile document: ")
-    return TypesetError(message.removeprefix(REFUSED)) if message.startswith(REFUSED) else error
+def _refusal(error: typst.TypstError) -> Exception:
+    """What the template said by stopping: its refusal, its facts, or the error as it is."""
+    for start, kind in ((REFUSED, TypesetError), (TOLD, _Told)):
+        if error.message.startswith(start):
+            return kind(error.message.removeprefix(start))
+    return error
 
 
 def _printable(data: dict[str, Any]) -> None:

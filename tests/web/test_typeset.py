@@ -24,6 +24,7 @@ TEMPLATE = """
 #set page(width: 100mm, height: 60mm, footer: page-number(before: "page "))
 #set text(font: font, lang: data.lang, fallback: false)
 #if "refuse" in data { panic("refused: " + data.refuse) }
+#if "facts" in sys.inputs and "told" in data { panic("facts: " + json.encode(data.told)) }
 = #data.title
 #for text in data.texts [#text #pagebreak(weak: true)]
 """
@@ -139,6 +140,14 @@ def test_glyphs_agree_with_the_typesetter() -> None:
 def test_a_refusal_carries_its_reason(template: str) -> None:
     with pytest.raises(TypesetError, match=r"^no room for the name$"):
         typeset.pdf(template, {**DATA, "refuse": "no room for the name"}, DAY)
+
+
+def test_a_template_tells_facts_when_asked(template: str) -> None:
+    told = {"size_mm": 1.5, "words": 'said "so" \\ <b>', "none": None}
+    assert typeset.facts(template, {**DATA, "told": told}) == told
+    assert typeset.pdf(template, {**DATA, "told": told}, DAY).startswith(b"%PDF")
+    with pytest.raises(TypesetError, match="tells no facts"):
+        typeset.facts(template, DATA)
 
 
 def test_threads_do_not_meet(template: str) -> None:
