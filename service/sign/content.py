@@ -7,6 +7,7 @@ laser label. Nothing is printed empty.
 
 from __future__ import annotations
 
+import unicodedata
 from dataclasses import dataclass
 from datetime import date
 
@@ -104,7 +105,7 @@ def sign_content(
     words = tables.class_words(found.scheme, found.hazard_class)
     speech = Speech([tables.phrases[key] for key in options.languages])
     signal = _signal(options, words, site, tables)
-    label: str = result.inputs.get("label", "")
+    label = _label(result)
     left_out: list[LeftOut] = []
     door = options.kind in ("area", "temporary")
     figures: list[Figure] = []
@@ -240,7 +241,7 @@ def _door_rows(
 ) -> list[Row]:
     """The rows of a sign for the door; what is missing is left out and told."""
     rows: list[Row | None] = []
-    label = result.inputs.get("label", "")
+    label = _label(result)
     officer = " · ".join(
         t
         for t in (
@@ -285,6 +286,11 @@ def _footer(
         assessed,
         f"{speech.joined('evaluation')} {digest} · Blinkline {result.provenance.service_version}",
     ]
+
+
+def _label(result: EvaluationResult) -> str:
+    """Name of the laser in one line, letters and their accents as one character each."""
+    return unicodedata.normalize("NFC", " ".join(result.inputs.get("label", "").split()))
 
 
 def edition(title: str) -> str:

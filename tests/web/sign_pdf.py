@@ -2,14 +2,17 @@
 
 from __future__ import annotations
 
+import io
 import re
 from dataclasses import dataclass
 
 import numpy as np
 import pypdfium2
 import pypdfium2.raw as raw
+import zxingcpp
+from PIL import Image
 
-__all__ = ["CAPITAL", "MM", "Read", "assert_set_well", "read"]
+__all__ = ["CAPITAL", "MM", "Read", "assert_set_well", "codes", "read"]
 
 #: Points in a millimetre.
 MM = 72.0 / 25.4
@@ -51,6 +54,12 @@ def read(document: bytes) -> Read:
         text = re.sub(r"\s+", " ", "".join(everything).replace("\u00a0", " "))
         count = len(opened)
     return Read(count, (width, height), text, "".join(letters), np.array(boxes), np.array(sizes))
+
+
+def codes(picture: bytes) -> list[str]:
+    """Texts of the codes in a PNG, read as a camera would."""
+    opened = Image.open(io.BytesIO(picture)).convert("L")
+    return [found.text for found in zxingcpp.read_barcodes(opened)]
 
 
 def assert_set_well(

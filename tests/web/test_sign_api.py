@@ -7,6 +7,8 @@ from typing import Any
 
 import httpx
 import pytest
+from hypothesis import given, settings
+from hypothesis import strategies as st
 
 from tests.sign.lasers import CLASSES, LASERS
 from tests.web.client import GOOD, JSON, Client, strict_json
@@ -191,7 +193,11 @@ def test_what_cannot_be_printed_is_refused_by_name(client: Client, text: str, ac
 
 
 def test_loose_accents_are_joined(client: Client) -> None:
-    assert "Café" in words(client, body(room="Cafe\u0301"))
+    data = body(room="Cafe\u0301")
+    data["evaluation"]["label"] = "Line\nbreak of the the\u0301"
+    found = words(client, data)
+    assert "Café" in found
+    assert "Line break of the thé" in found
 
 
 def test_very_long_names_shrink_wrap_or_are_refused(client: Client) -> None:
@@ -201,6 +207,46 @@ def test_very_long_names_shrink_wrap_or_are_refused(client: Client) -> None:
     data["evaluation"]["label"] = "W" * 200
     document = assert_problem(made(client, data), 422, "sign.sheet")
     assert "no room" in document["errors"][0]["message"]
+
+
+OPTIONS = st.fixed_dictionaries(
+    {},
+    optional={
+        "family": st.sampled_from(["iso", "ansi"]),
+        "kind": st.sampled_from(["area", "temporary", "label", "aperture"]),
+        "sheet": st.sampled_from(["A3", "A4", "A5", "A6", "Letter", "own"]),
+        "orientation": st.sampled_from(["portrait", "landscape"]),
+        "label_mm": st.lists(st.floats(5, 310), min_size=1, max_size=3),
+        "copies": st.integers(-1, 20),
+        "languages": st.lists(st.sampled_from(["en", "de", "fr", "es", "it", "nl"]), max_size=3),
+        "scheme": st.sampled_from(["iec-60825-1-2014", "us-21cfr1040", "none"]),
+        "signal_word": st.sampled_from(["auto", "danger", "warning", "caution"]),
+        "extra_lines": st.lists(st.text(max_size=130), max_size=5),
+        "room": st.text(max_size=90),
+        "lso_name": st.text(st.characters(max_codepoint=0x24F), max_size=80),
+        "whole_room": st.booleans(),
+        "valid_from": st.sampled_from(["2026-12-01", "2026-13-01"]),
+        "valid_to": st.just("2026-12-05"),
+        "address": st.sampled_from(["https://a.example/", "ftp://a", "https://a.example/" + "x" * 1900]),
+    },
+)
+
+
+@given(OPTIONS, st.sampled_from(CLASSES), st.text(max_size=60), st.sampled_from(["pdf", "json"]))
+@settings(max_examples=80, deadline=None)
+def test_any_request_is_a_sign_or_a_problem(
+    client: Client, sign: dict[str, Any], hazard_class: str, label: str, form: str
+) -> None:
+    data = {"evaluation": {**LASERS[hazard_class], "label": label}, "sign": sign}
+    response = client.post(f"{SIGN}?format={form}", json=data)
+    if response.status_code == 200:
+        assert form == "json" or read(response.content).pages == 1
+    elif response.status_code == 422:
+        document = assert_problem(response, 422, response.json()["errors"][0]["field"])
+        assert all(error["remedy"] for error in document["errors"])
+    else:
+        # Half of a character cannot be sent as UTF-8.
+        assert response.status_code == 400, response.text
 
 
 def test_the_description_knows_signs(client: Client) -> None:

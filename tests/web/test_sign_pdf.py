@@ -13,7 +13,7 @@ import pytest
 
 from service.contract.problem import InvalidRequest
 from tests.sign.lasers import CLASSES, LASERS, content, evaluation, result, sign
-from tests.web.sign_pdf import CAPITAL, MM, assert_set_well, read
+from tests.web.sign_pdf import CAPITAL, MM, assert_set_well, codes, read
 
 SHEETS = ("A3", "A4", "A5", "A6", "Letter")
 LANGUAGES = ("en", "de", "fr", "es", "it", "nl")
@@ -181,6 +181,14 @@ def test_long_text_shrinks_then_wraps() -> None:
     assert long.facts()["details_mm"] < short["details_mm"]
     found, made = set_and_read("3B", **DOOR, extra_lines=[line] * 4)
     assert_says_everything(found, made)
+
+
+@pytest.mark.parametrize("sheet", ["A4", "A6"])
+@pytest.mark.parametrize("orientation", ["portrait", "landscape"])
+def test_the_code_can_be_read(sheet: str, orientation: str) -> None:
+    address = DOOR["address"] + "&wavelength_nm-1=532&mode-1=cw&power_w-1=0.1&diameter_mm-1=2"
+    options = {**DOOR, "address": address, "sheet": sheet, "orientation": orientation}
+    assert codes(sign("3B", **options).picture("png")) == [address]
 
 
 def test_an_address_too_long_for_the_sheet_is_left_out_and_told() -> None:
