@@ -23,6 +23,9 @@ from service.sign.tables import ClassWords, SignTables, sign_tables
 
 __all__ = ["Headline", "LeftOut", "SignContent", "SiteDefaults", "edition", "refuse", "sign_content"]
 
+#: What only signs for the door carry.
+DOOR_ONLY = ("room", "lso_name", "lso_phone", "whole_room", "address")
+
 
 @dataclass(frozen=True, slots=True)
 class SiteDefaults:
@@ -110,6 +113,10 @@ def sign_content(
     door = options.kind in ("area", "temporary")
     figures: list[Figure] = []
     rows = _door_rows(result, options, site, speech, figures, left_out) if door else []
+    if not door:
+        given = {n: getattr(options, n) for n in DOOR_ONLY}
+        reason = "labels do not carry it"
+        left_out += [LeftOut(field=f"sign.{n}", reason=f"{n}: {reason}") for n, v in given.items() if v]
     if options.kind == "label":
         rows = [outputs(result, speech, figures)]
     title = " / ".join(speech.each("class", found.hazard_class))

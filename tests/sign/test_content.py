@@ -218,6 +218,8 @@ def test_labels_carry_class_output_standard_and_date() -> None:
     assert rows(found) == {"output": ["532 nm: 100 mW, continuous"]}
     assert found.footer == ["IEC 60825-1:2014 · 2026-12-01"]
     assert (found.notes, found.address, found.left_out) == ([], None, [])
+    told = content("3B", kind="label", room="Room 2.14", whole_room=True).left_out
+    assert [entry.field for entry in told] == ["sign.room", "sign.whole_room"]
     aperture = content("3B", kind="aperture")
     assert aperture.headlines[0].radiation == "LASER APERTURE"
     assert (aperture.rows, aperture.footer, aperture.symbol) == ([], [], False)
