@@ -18,7 +18,16 @@ from service.contract.evaluation import EvaluationResult
 from service.contract.problem import FieldError, InvalidRequest
 from service.contract.result import Model
 from service.sign.request import SignOptions
-from service.sign.rows import Figure, Row, Speech, beyond_every_filter, distances, eyewear, outputs
+from service.sign.rows import (
+    Figure,
+    Row,
+    Speech,
+    beyond_every_filter,
+    distances,
+    eyewear,
+    needs_eyewear,
+    outputs,
+)
 from service.sign.tables import ClassWords, SignTables, sign_tables
 
 __all__ = ["Headline", "LeftOut", "SignContent", "SiteDefaults", "edition", "refuse", "sign_content"]
@@ -228,8 +237,7 @@ def _headlines(
 def _notes(
     result: EvaluationResult, words: ClassWords, options: SignOptions, tables: SignTables
 ) -> list[Spoken]:
-    needed = any(p.worst_place.optical_density > 0.0 for p in result.protection.lines)
-    wear = needed and not beyond_every_filter(result)
+    wear = needs_eyewear(result) and not beyond_every_filter(result)
     keys = (["controlled"] if words.controlled else []) + (["wear"] if wear else [])
     keys.append("ask_entering" if words.controlled else "ask")
     return [

@@ -259,3 +259,52 @@ def test_no_printed_figure_is_smaller_than_the_answer(
         if figure.unit == "nm":
             scale = 1e3 if text[1] == "µm" else 1.0
         assert float(text[0]) * scale >= figure.value * (1 - 1e-12), figure
+
+
+def with_bench(*elements: Any, **viewing: Any) -> EvaluationResult:
+    return evaluated(line(532, cw(0.1)), bench=list(elements), viewing=viewing)
+
+
+def test_a_sweeping_beam_counts_as_if_it_stopped() -> None:
+    found = with_bench({"element": "scanner", "angle_deg": 20.0, "sweeps_hz": 100.0})
+    assert found.scan is not None
+    swept, stopped = found.eye.hazard_distance_m, found.scan.failure_eye.hazard_distance_m
+    assert swept is not None
+    assert stopped is not None
+    assert swept < stopped
+    # The beam standing still is the published example: 99.8 m.
+    assert rows(content(found))["distance"][0] == "eye: 99.8 m"
+    (figure,) = (f for f in content(found).figures if f.path.startswith("scan.failure_eye"))
+    assert figure.value == stopped
+
+
+def test_an_optical_aid_is_told_and_asks_for_more_density() -> None:
+    aid = {"objective_mm": 50.0, "magnification": 7.0, "transmittance": 1.0}
+    found, bare = with_bench(aid=aid), with_bench()
+    assert found.eye_aided is not None
+    shown = rows(content(found))
+    assert [text.partition(":")[0] for text in shown["distance"]] == ["eye", "eye with optical aid"]
+    far = found.eye_aided.hazard_distance_m
+    assert far is not None
+    assert far > 99.8
+    density = float(shown["eyewear"][0].partition("≥ ")[2].partition(",")[0])
+    assert found.eye_aided.hazard_ratio * 10.0**-density <= 1.0
+    assert density >= 2.1
+    assert rows(content(bare))["distance"] == ["eye: 99.8 m"]
+
+
+def test_behind_a_diffuser_figures_hold_for_scattered_light_and_say_so() -> None:
+    strong = line(532, cw(20.0))
+    found = evaluated(strong, bench=[{"element": "diffuser", "reflectance": 0.9}])
+    labels = {r.id: r.label for r in content(found, languages=["en", "de"]).rows}
+    wanted = "Hazard distance (scattered light only) / Sicherheitsabstand (nur Streulicht)"
+    assert labels["distance"] == wanted
+    assert "(scattered light only)" in labels["eyewear"]
+    # The class stays that of the laser.
+    assert content(found).hazard_class == "4"
+
+
+def test_in_an_open_resonator_the_circulating_beam_is_the_output() -> None:
+    """0.1 W through a mirror that passes 2 % circulate as 5 W."""
+    open_line = {**line(532, cw(0.1)), "output_mirror_reflectance": 0.98}
+    assert rows(content(evaluated(open_line)))["output"] == ["532 nm: 5 W, continuous"]
