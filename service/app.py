@@ -17,7 +17,8 @@ from service.rules.airspace import airspace_tables
 from service.rules.eyewear import eyewear_tables
 from service.rules.materials import materials
 from service.settings import Settings
-from service.web import api, bulk, health, metrics, pages, rules_pages, static
+from service.sign.tables import sign_tables
+from service.web import api, bulk, health, metrics, pages, rules_pages, sign, static
 from service.web.headers import Envelope
 from service.web.openapi import describe
 from service.web.problems import PlainProblem, problem_response
@@ -30,6 +31,7 @@ def create_app(settings: Settings | None = None) -> FastAPI:
     rule_sets()
     schemes()
     eyewear_tables(DATA)
+    sign_tables()
     airspace_tables(DATA)
     materials(DATA)
     app = FastAPI(
@@ -47,6 +49,7 @@ def create_app(settings: Settings | None = None) -> FastAPI:
         metrics.router,
         pages.router,
         rules_pages.router,
+        sign.router,
         static.router,
     ):
         app.include_router(router)

@@ -3,12 +3,26 @@
 from __future__ import annotations
 
 import os
+import re
 from collections.abc import Mapping
 from dataclasses import dataclass, fields
 
 from service.logs import FORMS
 
 __all__ = ["Settings", "SettingsError"]
+
+ANY = re.compile(r".*", re.DOTALL)
+#: Settings that only some texts fit, with those in words.
+TEXTS = {
+    "log": (re.compile("|".join(FORMS)), f"one of {', '.join(FORMS)}"),
+    "public_address": (
+        re.compile(r"(https?://[!-~]*[!-.0-~])?"),
+        "an http or https address without a last /",
+    ),
+    "sign_policy": (re.compile(r"standard|strict"), "standard or strict"),
+    "lso_name": (re.compile(r"[^\n\t]{0,80}"), "one line of at most 80 characters"),
+    "lso_phone": (re.compile(r"[^\n\t]{0,40}"), "one line of at most 40 characters"),
+}
 
 
 class SettingsError(ValueError):
@@ -21,6 +35,9 @@ class Settings:
 
     `host`, `port`: where `blinkline serve` listens. `body_limit`: largest request body read [bytes],
     `bulk_body_limit` that of `evaluate/bulk`, unpacked. `log`: text or json.
+    For signs: `public_address`: where people reach this service (blank: as the request says);
+    `sign_policy`: signal words by the class (`standard`) or DANGER for every 3B and 4 (`strict`);
+    `lso_name`, `lso_phone`: laser safety officer of the site.
     """
 
     host: str = "127.0.0.1"
@@ -28,6 +45,10 @@ class Settings:
     body_limit: int = 1_000_000
     bulk_body_limit: int = 50_000_000
     log: str = "text"
+    public_address: str = ""
+    sign_policy: str = "standard"
+    lso_name: str = ""
+    lso_phone: str = ""
 
     @classmethod
     def from_environment(cls, environment: Mapping[str, str] = os.environ) -> Settings:
@@ -40,13 +61,11 @@ class Settings:
             if name not in known:
                 raise SettingsError(f"{name} is no setting; there are {', '.join(sorted(known))}")
             field = known[name]
-            if field.name == "host":
-                values["host"] = text
-                continue
-            if field.name == "log":
-                if text not in FORMS:
-                    raise SettingsError(f"{name} is {text!r}, expected one of {', '.join(FORMS)}")
-                values["log"] = text
+            if isinstance(field.default, str):
+                pattern, words = TEXTS.get(field.name, (ANY, ""))
+                if not pattern.fullmatch(text):
+                    raise SettingsError(f"{name} is {text!r}, expected {words}")
+                values[field.name] = text
                 continue
             top = 65535 if field.name == "port" else 1_000_000_000
             if not text.isdecimal() or not 1 <= int(text) <= top:

@@ -154,14 +154,14 @@ HINTS = {
 
 
 @cache
-def _request_schema() -> dict[str, Any]:
-    """JSON schema of the request."""
-    return EvaluationRequest.model_json_schema()
+def _request_schema(model: type[BaseModel]) -> dict[str, Any]:
+    """JSON schema of a request."""
+    return {"$defs": {}, **model.model_json_schema()}
 
 
-def _step(node: dict[str, Any], part: str) -> dict[str, Any] | None:
+def _step(node: dict[str, Any], part: str, model: type[BaseModel]) -> dict[str, Any] | None:
     """Schema of one part of a path: a field, the kind of a union, or an item of a list."""
-    definitions = _request_schema()["$defs"]
+    definitions = _request_schema(model)["$defs"]
     kinds = node.get("oneOf") or node.get("anyOf") or [node]
     if part in BEAM_KINDS and any(k.get("$ref", "").endswith(BEAM_KINDS[part]) for k in kinds):
         return dict(definitions[BEAM_KINDS[part]])
@@ -176,13 +176,13 @@ def _step(node: dict[str, Any], part: str) -> dict[str, Any] | None:
     return node if part.isdigit() else None
 
 
-def _schema_at(loc: list[str]) -> dict[str, Any] | None:
+def _schema_at(loc: list[str], model: type[BaseModel]) -> dict[str, Any] | None:
     """JSON schema of the field at a path, kinds of unions among its parts; None where there is none."""
-    node: dict[str, Any] | None = _request_schema()
+    node: dict[str, Any] | None = _request_schema(model)
     for part in loc:
         if node is None:
             return None
-        node = _step(node, part)
+        node = _step(node, part, model)
     return node
 
 
@@ -192,7 +192,7 @@ def _numbers(schema: dict[str, Any]) -> str:
     return f"{more}{low:g} to {schema['maximum']:g}"
 
 
-def _allowed(path: list[str], loc: list[str]) -> str:
+def _allowed(path: list[str], loc: list[str], model: type[BaseModel]) -> str:
     """What the field at `path` may hold, in words; `loc` is the path with the kinds of the unions."""
     name = next((p for p in reversed(path) if not p.isdigit()), "")
     if name == "mode":
@@ -205,7 +205,7 @@ def _allowed(path: list[str], loc: list[str]) -> str:
         return "an object with mode cw, pulse or train"
     if not name:
         return "an object"
-    schema = _schema_at(loc)
+    schema = _schema_at(loc, model)
     if schema is None:
         return "no such field"
     if "anyOf" in schema:
@@ -276,7 +276,7 @@ def _one_for_both_axes(errors: list[FieldError]) -> list[FieldError]:
     return kept
 
 
-def invalid_request(error: ValidationError) -> InvalidRequest:
+def invalid_request(error: ValidationError, model: type[BaseModel] = EvaluationRequest) -> InvalidRequest:
     """The problem for a request that failed validation."""
     errors = []
     for item in error.errors(include_url=False)[: 4 * LISTED]:
@@ -314,7 +314,7 @@ def invalid_request(error: ValidationError) -> InvalidRequest:
             FieldError(
                 field=(".".join(path) or "body")[:SHOWN],
                 value=shown(value),
-                allowed="no such field" if kind == "extra_forbidden" else _allowed(path, loc),
+                allowed="no such field" if kind == "extra_forbidden" else _allowed(path, loc, model),
                 message=message,
                 remedy=remedy,
             )

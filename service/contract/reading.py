@@ -6,14 +6,16 @@ import json
 import math
 import re
 from collections.abc import Iterator
-from typing import Any
+from typing import Any, TypeVar
 
-from pydantic import ValidationError
+from pydantic import BaseModel, ValidationError
 
 from service.contract.problem import FieldError, InvalidRequest, MalformedBody, Problem, invalid_request
 from service.contract.request import EvaluationRequest
 
-__all__ = ["array_items", "read_json", "request_of"]
+__all__ = ["array_items", "model_of", "read_json", "request_of"]
+
+Read = TypeVar("Read", bound=BaseModel)
 
 #: Integers with more digits than any double holds are read as infinite, and refused by their field.
 MAX_DIGITS = 400
@@ -161,9 +163,14 @@ def array_items(body: bytes | bytearray) -> Iterator[Any | Problem]:
         raise _malformed(text, at, "Extra data")
 
 
+def model_of(model: type[Read], data: Any) -> Read:
+    """The request of some kind in JSON data. Raises InvalidRequest naming every field in error."""
+    try:
+        return model.model_validate(data)
+    except ValidationError as error:
+        raise invalid_request(error, model) from None
+
+
 def request_of(data: Any) -> EvaluationRequest:
     """The evaluation request in JSON data. Raises InvalidRequest naming every field in error."""
-    try:
-        return EvaluationRequest.model_validate(data)
-    except ValidationError as error:
-        raise invalid_request(error) from None
+    return model_of(EvaluationRequest, data)

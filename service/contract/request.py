@@ -25,6 +25,7 @@ __all__ = [
     "Eyewear",
     "EyewearRange",
     "Line",
+    "Strict",
     "Viewing",
     "Window",
 ]

@@ -2,13 +2,18 @@
 
 from __future__ import annotations
 
+from typing import TypeVar
+
+from pydantic import BaseModel
 from starlette.requests import Request
 
 from service.contract.problem import BodyTooLarge, UnsupportedMedia
-from service.contract.reading import read_json, request_of
+from service.contract.reading import model_of, read_json
 from service.contract.request import EvaluationRequest
 
-__all__ = ["read_request"]
+__all__ = ["read_model", "read_request"]
+
+Read = TypeVar("Read", bound=BaseModel)
 
 
 async def _read_body(request: Request) -> bytes:
@@ -28,4 +33,9 @@ async def _read_body(request: Request) -> bytes:
 
 async def read_request(request: Request) -> EvaluationRequest:
     """The evaluation request in the body. Raises a Problem that names what is wrong."""
-    return request_of(read_json(await _read_body(request)))
+    return await read_model(request, EvaluationRequest)
+
+
+async def read_model(request: Request, model: type[Read]) -> Read:
+    """The request of some kind in the body. Raises a Problem that names what is wrong."""
+    return model_of(model, read_json(await _read_body(request)))

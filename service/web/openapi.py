@@ -13,6 +13,7 @@ from service.bulk.records import DETAILS
 from service.bulk.summary import Closing, ProblemRecord, Summary
 from service.contract.problem import ProblemDocument
 from service.contract.request import EvaluationRequest
+from service.sign.request import SignRequest
 from service.web.bulk import NDJSON
 
 __all__ = ["describe"]
@@ -20,7 +21,11 @@ __all__ = ["describe"]
 TEMPLATE = "#/components/schemas/{model}"
 CLOSING = TEMPLATE.format(model="Closing")
 BULK = "/api/v1/evaluate/bulk"
-BODIES = ("/api/v1/evaluate", "/api/v1/compare")
+BODIES: dict[str, type[BaseModel]] = {
+    "/api/v1/evaluate": EvaluationRequest,
+    "/api/v1/compare": EvaluationRequest,
+    "/api/v1/sign": SignRequest,
+}
 #: What stands on the lines of a bulk answer: with detail=full, whole results with an index.
 RECORDS: tuple[type[BaseModel], ...] = (Summary, ProblemRecord, Closing)
 EXAMPLES: dict[str, dict[str, Any]] = {
@@ -66,6 +71,23 @@ EXAMPLES: dict[str, dict[str, Any]] = {
     },
 }
 
+SIGN_EXAMPLES: dict[str, dict[str, Any]] = {
+    "door": {
+        "summary": "A sign for the door, A4, in two languages",
+        "value": {
+            "evaluation": EXAMPLES["continuous"]["value"],
+            "sign": {"family": "iso", "sheet": "A4", "languages": ["en", "de"], "room": "Room 2.14"},
+        },
+    },
+    "labels": {
+        "summary": "Eight labels for the housing on one sheet",
+        "value": {
+            "evaluation": EXAMPLES["continuous"]["value"],
+            "sign": {"kind": "label", "label_mm": [74, 37], "copies": 8},
+        },
+    },
+}
+
 
 def _describe_bulk(operation: dict[str, Any], problem: dict[str, Any]) -> None:
     """Parameter, body and answer of the bulk call."""
@@ -101,7 +123,7 @@ def describe(app: FastAPI) -> None:
         document = get_openapi(title=app.title, version=app.version, routes=app.routes)
         sent = [(model, "serialization") for model in (ProblemDocument, *RECORDS)]
         _, definitions = models_json_schema(
-            [(EvaluationRequest, "validation"), *sent],  # type: ignore[list-item]
+            [*((m, "validation") for m in dict.fromkeys(BODIES.values())), *sent],  # type: ignore[list-item]
             ref_template=TEMPLATE,
         )
         document.setdefault("components", {}).setdefault("schemas", {}).update(definitions["$defs"])
@@ -118,10 +140,11 @@ def describe(app: FastAPI) -> None:
                 for status in statuses:
                     operation["responses"][status] = problem
                 if path in BODIES:
-                    schema = {"$ref": TEMPLATE.format(model="EvaluationRequest")}
+                    schema = {"$ref": TEMPLATE.format(model=BODIES[path].__name__)}
+                    examples = SIGN_EXAMPLES if BODIES[path] is SignRequest else EXAMPLES
                     operation["requestBody"] = {
                         "required": True,
-                        "content": {"application/json": {"schema": schema, "examples": EXAMPLES}},
+                        "content": {"application/json": {"schema": schema, "examples": examples}},
                     }
         _describe_bulk(document["paths"][BULK]["post"], problem)
         app.openapi_schema = document

@@ -16,7 +16,9 @@ assert str(service.files.DATA).startswith({folder!r}), service.files.DATA
 async def main():
     transport = httpx.ASGITransport(app=create_app())
     async with httpx.AsyncClient(transport=transport, base_url="http://test") as client:
-        for path in ("/", "/rules", "/rules/eu-2006-25", "/health/ready", "/favicon.ico"):
+        beam = "wavelength_nm-1=532&mode-1=cw&power_w-1=0.1&diameter_mm-1=2&divergence_mrad-1=1"
+        sheet = "/sign/sheet.pdf?v=1&lines=1&" + beam
+        for path in ("/", "/rules", "/rules/eu-2006-25", "/health/ready", "/favicon.ico", sheet):
             answer = await client.get(path)
             assert answer.status_code == 200, (path, answer.text)
 asyncio.run(main())
