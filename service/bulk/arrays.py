@@ -10,7 +10,8 @@ from numpy.typing import NDArray
 
 from service.assess.lines import CW, MODES, PULSE, TRAIN, Lines
 from service.bulk.flat import absent
-from service.contract.request import LEAST_MRAD, EvaluationRequest
+from service.contract.beam import LEAST_MRAD
+from service.contract.request import EvaluationRequest
 from service.optics.beams import SQRT2, Beams
 
 __all__ = ["quick_lines", "ranges"]
@@ -20,6 +21,17 @@ Ranges = dict[str, tuple[float, float]]
 #: Which emission columns a mode must have; the others must be empty.
 NEEDS = {CW: ("power_w",), PULSE: ("energy_j", "pulse_s"), TRAIN: ("pulse_s", "rate_hz")}
 EMISSION = ("power_w", "energy_j", "pulse_s", "rate_hz", "average_power_w")
+#: Numbers of rows that are read as requests: fibre ends, open resonators, what is said of viewing.
+APART = (
+    "distance_m",
+    "visibility_km",
+    "mode_field_diameter_um",
+    "numerical_aperture",
+    "core_diameter_um",
+    "output_mirror_reflectance",
+)
+#: The parts of a request that columns hold.
+MODELS = ("Beam", "Cw", "Line", "Pulse", "Train", "Viewing")
 CHOICES = {"profile": ("gaussian", "tophat"), "level": ("1/e2", "1/e"), "diameter_at": ("waist", "exit")}
 
 
@@ -28,7 +40,7 @@ def ranges() -> Ranges:
     """Allowed range of every number of a request by name, as its published schema says."""
     schema = EvaluationRequest.model_json_schema()
     found: Ranges = {}
-    for part in (schema, *schema["$defs"].values()):
+    for part in (schema, *(schema["$defs"][model] for model in MODELS)):
         for name, field in part.get("properties", {}).items():
             number = next((f for f in (field, *field.get("anyOf", ())) if f.get("type") == "number"), None)
             if number is not None and "minimum" in number:
@@ -94,7 +106,8 @@ def quick_lines(part: dict[str, NDArray[Any]], allowed: Ranges) -> tuple[NDArray
     within("subtense_mrad", subtense, needed=True)
     within("waist_m", waist, needed=True)
     ok &= (chosen["diameter_at"] == 0) | (waist == 0.0)
-    ok &= np.isnan(number("distance_m"))
+    for name in APART:
+        ok &= np.isnan(number(name))
     axes = []
     flat = chosen["profile"] == 1
     to_1e = np.where(flat | (chosen["level"] == 1), 1e-3, 1e-3 / SQRT2)
@@ -106,7 +119,7 @@ def quick_lines(part: dict[str, NDArray[Any]], allowed: Ranges) -> tuple[NDArray
                 ok &= (values == 0.0) | (values >= LEAST_MRAD)
             axes.append(values * to_1e)
     dx, dy, px, py = axes
-    beams = Beams(flat, dx, dy, px, py, waist)
+    beams = Beams.with_waist(flat, dx, dy, px, py, waist)
     ones = np.ones(count)
     pulse = np.where(mode == CW, ones, number("pulse_s"))
     return ok, Lines(np.arange(count), wavelength, mode, emitted, pulse, rate, exposure, subtense, beams)
