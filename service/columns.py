@@ -66,9 +66,9 @@ def evaluate_columns(columns: Mapping[str, Any], *, notices: bool = False) -> di
         fields with their units (see `COLUMNS`): wavelength_nm [nm], power_w [W], energy_j [J],
         average_power_w [W], pulse_s [s], rate_hz [Hz], diameter_mm [mm], divergence_mrad [mrad] (full
         angle), diameter_y_mm and divergence_y_mrad for elliptical beams, waist_m [m], subtense_mrad [mrad],
-        exposure_s [s], distance_m [m] (viewing distance); text in label, rules, mode, profile, level,
-        diameter_at. A single value holds for every row. NaN, None and empty text are fields that are not
-        given; the API's defaults then hold.
+        exposure_s [s], distance_m [m] (viewing distance), those of fibre ends; text in label, rules, mode,
+        profile, level, diameter_at. A single value holds for every row. NaN, None and empty text are fields
+        that are not given; the API's defaults then hold.
     notices : also list the codes of the API's notices in the column `notices` (slower: every row is read as
         a request; otherwise the column is empty)
 

@@ -136,14 +136,14 @@ def _against(
 
 
 def _fractions(beams: Beams, line: Ints, aperture_m: Floats, distance_m: Floats) -> Floats:
-    """Fraction of each line's beam inside an aperture [m] at a distance [m], or at the worst place beyond it.
+    """Most of each line's beam inside an aperture [m] at a distance [m] or beyond it.
 
-    Limits share apertures and distances: each elliptical beam, whose fraction takes an integral, is asked for
-    each of them once.
+    Limits share apertures and distances: each beam that is not round, whose fraction takes an integral, is
+    asked for each of them once.
     """
-    round_ = (beams.diameter_x_m == beams.diameter_y_m) & (beams.divergence_x_rad == beams.divergence_y_rad)
+    same = [x == y for x, y in zip(*beams.axes(), strict=True)]
     asked = again = np.arange(len(line))
-    uneven = np.flatnonzero(~round_[line])
+    uneven = np.flatnonzero(~np.logical_and.reduce(same)[line])
     if uneven.size:
         order = uneven[np.lexsort((aperture_m[uneven], distance_m[uneven], line[uneven]))]
         key = np.stack([line[order], distance_m[order], aperture_m[order]])

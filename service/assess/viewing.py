@@ -7,15 +7,7 @@ from numpy.typing import NDArray
 
 from service.assess.evaluate import Evaluation, TargetResult
 
-__all__ = [
-    "over_distances",
-    "ratios_at",
-    "ratios_from",
-    "seen_from",
-    "sum_of_lines",
-    "sums_of_lines",
-    "worst_sum",
-]
+__all__ = ["over_distances", "ratios_at", "ratios_from", "seen_from", "sum_of_lines", "sums_of_lines"]
 
 Floats = NDArray[np.float64]
 
@@ -105,16 +97,4 @@ def seen_from(evaluation: Evaluation, distance_m: float) -> Evaluation:
 
 def sum_of_lines(evaluation: Evaluation, result: TargetResult, ratio: Floats) -> float:
     """`sums_of_lines` at one place, `ratio` being (criteria,)."""
-    kind = evaluation.rules.additivity[result.criteria.row]
-    return worst_sum(kind.tolist(), result.criteria.line.tolist(), ratio.tolist())
-
-
-def worst_sum(kind: list[int], line: list[int], ratio: list[float]) -> float:
-    """Worst sum of the criteria of one laser, given the additivity class, line and ratio of each."""
-    worst: dict[tuple[int, int], float] = {}
-    for name, number, value in zip(kind, line, ratio, strict=True):
-        worst[name, number] = max(worst.get((name, number), 0.0), value)
-    sums: dict[int, float] = {}
-    for (name, _), value in worst.items():
-        sums[name] = sums.get(name, 0.0) + value
-    return max(sums.values())
+    return float(sums_of_lines(evaluation, result, ratio[None, :])[0])

@@ -21,6 +21,17 @@ Ranges = dict[str, tuple[float, float]]
 #: Which emission columns a mode must have; the others must be empty.
 NEEDS = {CW: ("power_w",), PULSE: ("energy_j", "pulse_s"), TRAIN: ("pulse_s", "rate_hz")}
 EMISSION = ("power_w", "energy_j", "pulse_s", "rate_hz", "average_power_w")
+#: Numbers of rows that are read as requests: fibre ends, open resonators, what is said of viewing.
+APART = (
+    "distance_m",
+    "visibility_km",
+    "mode_field_diameter_um",
+    "numerical_aperture",
+    "core_diameter_um",
+    "output_mirror_reflectance",
+)
+#: The parts of a request that columns hold.
+MODELS = ("Beam", "Cw", "Line", "Pulse", "Train", "Viewing")
 CHOICES = {"profile": ("gaussian", "tophat"), "level": ("1/e2", "1/e"), "diameter_at": ("waist", "exit")}
 
 
@@ -29,7 +40,7 @@ def ranges() -> Ranges:
     """Allowed range of every number of a request by name, as its published schema says."""
     schema = EvaluationRequest.model_json_schema()
     found: Ranges = {}
-    for part in (schema, *schema["$defs"].values()):
+    for part in (schema, *(schema["$defs"][model] for model in MODELS)):
         for name, field in part.get("properties", {}).items():
             number = next((f for f in (field, *field.get("anyOf", ())) if f.get("type") == "number"), None)
             if number is not None and "minimum" in number:
@@ -95,7 +106,8 @@ def quick_lines(part: dict[str, NDArray[Any]], allowed: Ranges) -> tuple[NDArray
     within("subtense_mrad", subtense, needed=True)
     within("waist_m", waist, needed=True)
     ok &= (chosen["diameter_at"] == 0) | (waist == 0.0)
-    ok &= np.isnan(number("distance_m"))
+    for name in APART:
+        ok &= np.isnan(number(name))
     axes = []
     flat = chosen["profile"] == 1
     to_1e = np.where(flat | (chosen["level"] == 1), 1e-3, 1e-3 / SQRT2)

@@ -38,12 +38,22 @@ NUMBERS = (
     "divergence_y_mrad",
     "waist_m",
     "distance_m",
+    "visibility_km",
+    "mode_field_diameter_um",
+    "numerical_aperture",
+    "core_diameter_um",
+    "output_mirror_reflectance",
 )
 #: Columns of a laser. A cell that is empty (a number that is NaN) is a field that is not given.
 COLUMNS = TEXTS + NUMBERS
 TOP = ("label", "rules", "exposure_s")
 EMISSION = ("mode", "power_w", "energy_j", "pulse_s", "rate_hz", "average_power_w")
-BEAM = ("profile", "level", "diameter_at", "waist_m")
+BEAM = (
+    *("profile", "level", "diameter_at", "waist_m"),
+    *("mode_field_diameter_um", "numerical_aperture", "core_diameter_um"),
+)
+LINE = ("wavelength_nm", "subtense_mrad", "output_mirror_reflectance")
+VIEWING = ("distance_m", "visibility_km")
 PAIRS = ("diameter_mm", "divergence_mrad")
 
 
@@ -74,7 +84,7 @@ def check_columns(names: list[str]) -> None:
 def nested(row: Mapping[str, Any]) -> dict[str, Any]:
     """The request of a flat row of cells that are given: numbers or text by column."""
     given = dict(row)
-    line: dict[str, Any] = {k: given[k] for k in ("wavelength_nm", "subtense_mrad") if k in given}
+    line: dict[str, Any] = {k: given[k] for k in LINE if k in given}
     line["emission"] = {k: given[k] for k in EMISSION if k in given}
     beam = line["beam"] = {k: given[k] for k in BEAM if k in given}
     for name in PAIRS:
@@ -84,8 +94,8 @@ def nested(row: Mapping[str, Any]) -> dict[str, Any]:
         elif name in given:
             beam[name] = given[name]
     top: dict[str, Any] = {k: given[k] for k in TOP if k in given}
-    if "distance_m" in given:
-        top["viewing"] = {"distance_m": given["distance_m"]}
+    if viewing := {k: given[k] for k in VIEWING if k in given}:
+        top["viewing"] = viewing
     return {**top, "lines": [line]}
 
 

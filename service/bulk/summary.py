@@ -9,8 +9,6 @@ import numpy as np
 from pydantic import ConfigDict, Field
 
 from service import __version__
-from service.assess.evaluate import optical_density
-from service.assess.viewing import ratios_at, worst_sum
 from service.bulk.findings import Findings, find
 from service.contract.answer import answer, evaluate_batch, rule_set
 from service.contract.evaluation import EvaluationResult
@@ -100,8 +98,11 @@ class Closing(Model):
 
 
 def batched(request: EvaluationRequest) -> bool:
-    """Whether a request can be evaluated together with others; any other is answered alone."""
-    return not request.bench
+    """Whether a request can be evaluated together with others: a direct beam, with nothing said of viewing.
+
+    Any other is answered alone.
+    """
+    return not request.bench and not request.viewing.model_fields_set
 
 
 def summaries(requests: Sequence[EvaluationRequest], index: Sequence[int]) -> list[dict[str, Any]]:
@@ -120,9 +121,8 @@ def summaries(requests: Sequence[EvaluationRequest], index: Sequence[int]) -> li
     for rules_id, members in groups.items():
         chosen = [requests[k] for k in members]
         rules = rule_set(rules_id)
-        batch = evaluate_batch(chosen, rules)
-        findings = find(batch.lines, batch.evaluation)
-        targets = [_targets(chosen, findings, target) for target in TARGETS]
+        findings = find(*evaluate_batch(chosen, rules))
+        targets = [_targets(findings, target) for target in TARGETS]
         names = list(findings.classes)
         classes = zip(*(findings.class_names(name) for name in names), strict=True)
         codes = _codes(chosen, findings)
@@ -143,7 +143,7 @@ def summaries(requests: Sequence[EvaluationRequest], index: Sequence[int]) -> li
     return found
 
 
-def _targets(requests: Sequence[EvaluationRequest], findings: Findings, target: str) -> list[dict[str, Any]]:
+def _targets(findings: Findings, target: str) -> list[dict[str, Any]]:
     """The part of each summary for one target."""
     found = findings.targets[target]
     if not np.isfinite([found.near_m, found.ratio, found.density]).all():
@@ -155,7 +155,6 @@ def _targets(requests: Sequence[EvaluationRequest], findings: Findings, target: 
         found.density.tolist(),
         found.line.tolist(),
         *findings.governing_names(target),
-        _at_distances(requests, findings, target),
     )
     return [
         {
@@ -164,37 +163,10 @@ def _targets(requests: Sequence[EvaluationRequest], findings: Findings, target: 
             "hazard_ratio": ratio,
             "optical_density": density,
             "governing": {"line": line, "rule": rule, "tissue": tissue, "effect": effect, "row": row},
-            "at_distance": there,
+            "at_distance": None,
         }
-        for near, far, ratio, density, line, rule, tissue, effect, row, there in zip(*columns, strict=True)
+        for near, far, ratio, density, line, rule, tissue, effect, row in zip(*columns, strict=True)
     ]
-
-
-def _at_distances(
-    requests: Sequence[EvaluationRequest], findings: Findings, target: str
-) -> list[dict[str, Any] | None]:
-    """The exposure of one target at the viewing distance of each request; None where it names none."""
-    found: list[dict[str, Any] | None] = [None] * len(requests)
-    if all(r.viewing.distance_m is None for r in requests):
-        return found
-    evaluation = findings.evaluation
-    result, lines = evaluation.target(target), evaluation.lines
-    distance = np.array([r.viewing.distance_m or 0.0 for r in requests])
-    with np.errstate(over="ignore", under="ignore"):
-        each = ratios_at(evaluation, result, distance[lines.laser])
-    kind, line = evaluation.rules.additivity[result.criteria.row], result.criteria.line
-    ends = np.searchsorted(lines.laser[line], np.arange(len(requests) + 1)).tolist()
-    for k, request in enumerate(requests):
-        if request.viewing.distance_m is not None:
-            own = slice(ends[k], ends[k + 1])
-            worst = worst_sum(kind[own].tolist(), line[own].tolist(), each[own].tolist())
-            found[k] = {
-                "distance_m": request.viewing.distance_m,
-                "hazard_ratio": worst,
-                "optical_density": float(optical_density(np.array(worst))),
-                "exceeded": worst > 1.0,
-            }
-    return found
 
 
 def _codes(requests: Sequence[EvaluationRequest], findings: Findings) -> list[list[str]]:

@@ -5,11 +5,9 @@ from __future__ import annotations
 import hashlib
 import json
 from collections.abc import Sequence
-from dataclasses import dataclass
 from typing import Any, cast
 
 import numpy as np
-from numpy.typing import NDArray
 
 from service import __version__
 from service.assess.aid import Aid
@@ -56,7 +54,7 @@ from service.rules.compiled import CompiledRules, compiled_rules
 from service.rules.eyewear import eyewear_tables
 from service.rules.tables import read_toml
 
-__all__ = ["Batch", "answer", "cautions", "compare", "evaluate_batch", "rule_set", "rule_sets"]
+__all__ = ["answer", "cautions", "compare", "evaluate_batch", "rule_set", "rule_sets"]
 
 
 def rule_sets() -> dict[str, CompiledRules]:
@@ -88,39 +86,26 @@ def rule_set(rules_id: str) -> CompiledRules:
     return found
 
 
-@dataclass(slots=True)
-class Batch:
-    """Requests of one rule set evaluated in one pass; a single request is a batch of one.
+def evaluate_batch(requests: Sequence[EvaluationRequest], rules: CompiledRules) -> tuple[Lines, Evaluation]:
+    """Lines and evaluation of direct beams in one pass, whatever rule set their requests name.
 
-    `lines` as they leave the laser, `behind` as they leave the bench; `duration_row` of each line, -1 where
-    its duration was chosen.
+    At least one request; each figure is that of `answer`, for which a laser is a batch of one.
     """
-
-    requests: Sequence[EvaluationRequest]
-    lines: Lines
-    behind: Lines
-    duration_row: NDArray[np.intp]
-    evaluation: Evaluation
-
-
-def evaluate_batch(requests: Sequence[EvaluationRequest], rules: CompiledRules) -> Batch:
-    """Evaluate requests together, whatever rule set they name. At least one request.
-
-    One that ends on a diffuser or a scanner must be the only one, as its limits change over distance.
-    """
-    lines, duration_row = lines_of(requests, rules)
+    lines, _ = lines_of(requests, rules)
     with np.errstate(over="ignore", under="ignore"):
-        behind = behind_bench(requests, lines)
-        return Batch(requests, lines, behind, duration_row, _evaluate(requests, behind, rules))
+        return lines, evaluate(lines, rules)
 
 
 def answer(request: EvaluationRequest) -> EvaluationResult:
     """Evaluate one request. Raises InvalidRequest where its rule set is unknown."""
-    batch = evaluate_batch([request], rule_set(request.rules))
+    rules = rule_set(request.rules)
+    lines, duration_rows = lines_of([request], rules)
     with np.errstate(over="ignore", under="ignore"):
+        behind = behind_bench([request], lines)
+        evaluation = _evaluate(request, behind, rules)
         aid = request.viewing.aid
-        aided = None if aid is None else _evaluate([request], batch.behind, batch.evaluation.rules, _aid(aid))
-        return _result(request, batch, aided)
+        aided = None if aid is None else _evaluate(request, behind, rules, _aid(aid))
+        return _result(request, lines, evaluation, aided, duration_rows.tolist())
 
 
 def compare(request: EvaluationRequest) -> Comparison:
@@ -130,10 +115,10 @@ def compare(request: EvaluationRequest) -> Comparison:
 
 
 def _evaluate(
-    requests: Sequence[EvaluationRequest], lines: Lines, rules: CompiledRules, aid: Aid | None = None
+    request: EvaluationRequest, lines: Lines, rules: CompiledRules, aid: Aid | None = None
 ) -> Evaluation:
-    """Lines behind the bench, with the limits as they change over distance where they do."""
-    setup = setup_of(requests[0].bench, lines) if len(requests) == 1 else None
+    """One laser's lines behind its bench, with the limits as they change over distance where they do."""
+    setup = setup_of(request.bench, lines)
     return evaluate(lines, rules, aid) if setup is None else look(setup, rules, aid)
 
 
@@ -153,12 +138,17 @@ def _aid(aid: ViewingAid) -> Aid:
     return Aid(aid.objective_mm * 1e-3, aid.magnification, aid.transmittance)
 
 
-def _result(request: EvaluationRequest, batch: Batch, aided: Evaluation | None) -> EvaluationResult:
-    lines, evaluation = batch.lines, batch.evaluation
+def _result(
+    request: EvaluationRequest,
+    lines: Lines,
+    evaluation: Evaluation,
+    aided: Evaluation | None,
+    duration_rows: list[int],
+) -> EvaluationResult:
     rules = evaluation.rules
     published, standing = rules.rules, standing_still(evaluation)
     exposure = evaluation.lines.exposure_s
-    durations = [_duration(evaluation, k, row) for k, row in enumerate(batch.duration_row.tolist())]
+    durations = [_duration(evaluation, k, row) for k, row in enumerate(duration_rows)]
     same = float(exposure[0]) if (exposure == exposure[0]).all() else None
     inputs = request.model_copy(update={"exposure_s": same}).model_dump(mode="json", exclude_none=True)
     inputs.setdefault("exposure_s", None)

@@ -80,6 +80,36 @@ def test_every_code_of_a_notice_is_told(rules: str) -> None:
     assert "large-skin-area" in together[4]["notices"]
 
 
+def changed(base: EvaluationRequest, **more: Any) -> EvaluationRequest:
+    return EvaluationRequest.model_validate({**base.model_dump(exclude_unset=True), **more})
+
+
+@pytest.mark.parametrize("power_w", [1e-3, 5.0])
+def test_what_stands_in_the_beam_is_not_left_out(power_w: float) -> None:
+    """Benches, aids, haze, viewing distances, fibre ends and open resonators beside direct beams."""
+    direct = plain(1064, power_w)
+    fibre = laser(1064, {"mode": "cw", "power_w": power_w})
+    fibre["lines"][0]["beam"] = {"profile": "fibre_single_mode", "mode_field_diameter_um": 6.0}
+    resonator = laser(1064, {"mode": "cw", "power_w": power_w})
+    resonator["lines"][0]["output_mirror_reflectance"] = 0.9
+    made = [
+        direct,
+        changed(direct, bench=[{"element": "lens", "focal_mm": 50.0}]),
+        EvaluationRequest.model_validate(fibre),
+        changed(direct, bench=[{"element": "diffuser", "reflectance": 0.9, "viewing_deg": 0.0}]),
+        changed(direct, viewing={"aid": {"objective_mm": 50.0, "magnification": 7.0}}),
+        EvaluationRequest.model_validate(resonator),
+        changed(direct, viewing={"visibility_km": 1.0}),
+        changed(direct, viewing={"distance_m": 2.0}),
+        direct,
+    ]
+    together = summaries(made, range(len(made)))
+    for k, (request, found) in enumerate(zip(made, together, strict=True)):
+        assert found == summary_of(answer(request), request.label, k), request
+    assert together[0] == {**together[-1], "index": 0}
+    assert together[7]["eye"]["at_distance"]["distance_m"] == 2.0
+
+
 def test_the_example_of_the_contract() -> None:
     """532 nm, 0.1 W, 2 mm, 1 mrad, 0.25 s: limit 18 x 0.25^0.75 J/m2 (ICNIRP 2013, Table 5)."""
     (found,) = summaries([plain(532, 0.1, exposure_s=0.25, label="Bench 4")], [7])
