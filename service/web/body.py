@@ -2,77 +2,13 @@
 
 from __future__ import annotations
 
-import json
-import math
-from typing import Any
-
-from pydantic import ValidationError
 from starlette.requests import Request
 
-from service.contract.problem import (
-    BodyTooLarge,
-    FieldError,
-    InvalidRequest,
-    MalformedBody,
-    UnsupportedMedia,
-    invalid_request,
-)
+from service.contract.problem import BodyTooLarge, UnsupportedMedia
+from service.contract.reading import read_json, request_of
 from service.contract.request import EvaluationRequest
 
 __all__ = ["read_request"]
-
-#: Integers with more digits than any double holds are read as infinite, and refused by their field.
-MAX_DIGITS = 400
-
-
-class _Repeated(dict[str, Any]):
-    """An object in which a name stood twice: one of the two values would be lost."""
-
-    name = ""
-
-
-def _object(pairs: list[tuple[str, Any]]) -> dict[str, Any]:
-    found = dict(pairs)
-    if len(found) == len(pairs):
-        return found
-    seen: set[str] = set()
-    repeated = _Repeated(found)
-    for name, _ in pairs:
-        if name in seen:
-            repeated.name = name
-        seen.add(name)
-    return repeated
-
-
-def _integer(text: str) -> int | float:
-    return int(text) if len(text) <= MAX_DIGITS else math.copysign(math.inf, -1 if text[0] == "-" else 1)
-
-
-def _check(data: Any) -> None:
-    """Refuse repeated names, with their place, and halves of characters."""
-    todo: list[tuple[str, Any]] = [("", data)]
-    while todo:
-        path, value = todo.pop()
-        if isinstance(value, _Repeated):
-            field = f"{path}{value.name}"[:100]
-            error = FieldError(
-                field=field,
-                value=None,
-                allowed="one value",
-                message="this field stands twice",
-                remedy="Send each field once.",
-            )
-            raise InvalidRequest(f"{field}: this field stands twice", [error])
-        if isinstance(value, dict):
-            todo += [("", name) for name in value]
-            todo += [(f"{path}{name}.", inner) for name, inner in value.items()]
-        elif isinstance(value, list):
-            todo += [(f"{path}{n}.", inner) for n, inner in enumerate(value)]
-        elif isinstance(value, str) and not value.isascii():
-            try:
-                value.encode()
-            except UnicodeEncodeError:
-                raise MalformedBody("the body holds half of a character (a lone surrogate)") from None
 
 
 async def _read_body(request: Request) -> bytes:
@@ -92,17 +28,4 @@ async def _read_body(request: Request) -> bytes:
 
 async def read_request(request: Request) -> EvaluationRequest:
     """The evaluation request in the body. Raises a Problem that names what is wrong."""
-    body = await _read_body(request)
-    try:
-        data = json.loads(body.decode(), object_pairs_hook=_object, parse_int=_integer)
-        _check(data)
-    except json.JSONDecodeError as error:
-        raise MalformedBody(f"line {error.lineno}, column {error.colno}: {error.msg}") from None
-    except UnicodeDecodeError:
-        raise MalformedBody("the body is not UTF-8 text") from None
-    except RecursionError:
-        raise MalformedBody("the body is nested too deeply") from None
-    try:
-        return EvaluationRequest.model_validate(data)
-    except ValidationError as error:
-        raise invalid_request(error) from None
+    return request_of(read_json(await _read_body(request)))
