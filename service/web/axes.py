@@ -13,6 +13,8 @@ __all__ = ["Axis", "Tick", "decades", "number_runs"]
 LABELS = 8
 #: Decades written out as decimals; others as powers of ten.
 WRITTEN = (-3, 4)
+#: A logarithmic axis this short is labelled in even steps.
+STEPS_BELOW = 20.0
 
 
 @dataclass(frozen=True, slots=True)
@@ -62,7 +64,7 @@ class Axis:
 
     def ticks(self) -> list[Tick]:
         """Labelled and small ticks in order."""
-        return self._decades() if self.log else self._steps()
+        return self._decades() if self.log and self.high / self.low >= STEPS_BELOW else self._steps()
 
     def _decades(self) -> list[Tick]:
         first = math.floor(math.log10(self.low) + 1e-9)

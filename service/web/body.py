@@ -2,13 +2,15 @@
 
 from __future__ import annotations
 
+from typing import Any
+
 from starlette.requests import Request
 
 from service.contract.problem import BodyTooLarge, UnsupportedMedia
 from service.contract.reading import read_json, request_of
 from service.contract.request import EvaluationRequest
 
-__all__ = ["read_request"]
+__all__ = ["read_data", "read_request"]
 
 
 async def _read_body(request: Request) -> bytes:
@@ -26,6 +28,11 @@ async def _read_body(request: Request) -> bytes:
     return b"".join(parts)
 
 
+async def read_data(request: Request) -> Any:
+    """The JSON in the body. Raises a Problem where there is none."""
+    return read_json(await _read_body(request))
+
+
 async def read_request(request: Request) -> EvaluationRequest:
     """The evaluation request in the body. Raises a Problem that names what is wrong."""
-    return request_of(read_json(await _read_body(request)))
+    return request_of(await read_data(request))

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -47,10 +48,9 @@ class Chart:
     rows: list[Row]
 
 
-def request_of(result: EvaluationResult) -> EvaluationRequest:
-    """The request that an answer echoes with every default filled in."""
-    given = {name: value for name, value in result.inputs.items() if value is not None}
-    return EvaluationRequest.model_validate(given)
+def request_of(inputs: dict[str, Any]) -> EvaluationRequest:
+    """The request that an answer echoes as its inputs."""
+    return EvaluationRequest.model_validate({k: v for k, v in inputs.items() if v is not None})
 
 
 def _targets(result: EvaluationResult) -> list[tuple[str, str, TargetAnswer]]:
@@ -133,7 +133,7 @@ def chart_of(result: EvaluationResult) -> Chart:
     read = np.unique([*_three_digits(low, high, READINGS), *chosen])
     listed = sorted({*_one_two_five(low, high), *([] if viewing is None else [viewing])})
     places = np.unique([*_places(result, low, high, read), *listed])
-    found = along(request_of(result), places)
+    found = along(request_of(result.inputs), places)
     shown = (places >= low) & (places <= high)
     pairs = [(found.eye, result.eye), (found.skin, result.skin)]
     x = Axis(low, high, LEFT, RIGHT)

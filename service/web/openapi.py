@@ -6,15 +6,24 @@ from typing import Any
 
 from fastapi import FastAPI
 from fastapi.openapi.utils import get_openapi
+from pydantic import BaseModel
 from pydantic.json_schema import models_json_schema
 
 from service.contract.problem import ProblemDocument
 from service.contract.request import EvaluationRequest
+from service.contract.sweep import SweepRequest
 
 __all__ = ["describe"]
 
 TEMPLATE = "#/components/schemas/{model}"
 BODIES = ("/api/v1/evaluate", "/api/v1/compare")
+#: Bodies that hold an evaluation request beside fields of their own, each with what those may be.
+ENCLOSING: dict[str, tuple[type[BaseModel], dict[str, Any]]] = {
+    "/api/v1/sweep": (
+        SweepRequest,
+        {"sweep": {"field": "power_w", "start": 1e-4, "stop": 10.0, "points": 101, "spacing": "log"}},
+    ),
+}
 EXAMPLES: dict[str, dict[str, Any]] = {
     "continuous": {
         "summary": "A green alignment beam, continuous wave",
@@ -67,7 +76,12 @@ def describe(app: FastAPI) -> None:
             return app.openapi_schema
         document = get_openapi(title=app.title, version=app.version, routes=app.routes)
         _, definitions = models_json_schema(
-            [(EvaluationRequest, "validation"), (ProblemDocument, "serialization")], ref_template=TEMPLATE
+            [
+                (EvaluationRequest, "validation"),
+                *((model, "validation") for model, _ in ENCLOSING.values()),
+                (ProblemDocument, "serialization"),
+            ],
+            ref_template=TEMPLATE,
         )
         document.setdefault("components", {}).setdefault("schemas", {}).update(definitions["$defs"])
         problem = {
@@ -79,7 +93,8 @@ def describe(app: FastAPI) -> None:
         for path, operations in document["paths"].items():
             for operation in operations.values():
                 operation["responses"].pop("422", None)
-                statuses = ("400", "413", "415", "422") if path in BODIES else ("404",) if "{" in path else ()
+                bodied = path in BODIES or path in ENCLOSING
+                statuses = ("400", "413", "415", "422") if bodied else ("404",) if "{" in path else ()
                 for status in statuses:
                     operation["responses"][status] = problem
                 if path in BODIES:
@@ -87,6 +102,14 @@ def describe(app: FastAPI) -> None:
                     operation["requestBody"] = {
                         "required": True,
                         "content": {"application/json": {"schema": schema, "examples": EXAMPLES}},
+                    }
+                if path in ENCLOSING:
+                    model, own = ENCLOSING[path]
+                    example = {"evaluation": EXAMPLES["continuous"]["value"], **own}
+                    schema = {"$ref": TEMPLATE.format(model=model.__name__)}
+                    operation["requestBody"] = {
+                        "required": True,
+                        "content": {"application/json": {"schema": schema, "example": example}},
                     }
         app.openapi_schema = document
         return document
