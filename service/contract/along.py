@@ -7,13 +7,13 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from service.assess.along import ratios_along
 from service.assess.evaluate import Evaluation, TargetResult, evaluate
-from service.contract.answer import rule_set
-from service.contract.convert import lines_of
+from service.assess.viewing import ratios_at, sums_of_lines
+from service.contract.answer import aid_of, rule_set
+from service.contract.convert import behind_bench, lines_of
 from service.contract.request import EvaluationRequest
 
-__all__ = ["Along", "TargetAlong", "along"]
+__all__ = ["TargetAlong", "along"]
 
 Floats = NDArray[np.float64]
 
@@ -31,28 +31,24 @@ class TargetAlong:
     exposure_j_m2: Floats
 
 
-@dataclass(frozen=True, slots=True)
-class Along:
-    """What happens at each distance [m] from the last element."""
+def along(request: EvaluationRequest, distance_m: Floats) -> dict[str, TargetAlong]:
+    """One laser at many distances [m]: `eye`, `skin` and, with an optical aid, `eye_aided`.
 
-    distance_m: Floats
-    eye: TargetAlong
-    skin: TargetAlong
-
-
-def along(request: EvaluationRequest, distance_m: Floats) -> Along:
-    """One laser at many distances [m]. Raises InvalidRequest where its rule set is unknown."""
+    Raises InvalidRequest where the rule set is unknown.
+    """
     rules = rule_set(request.rules)
-    lines, _ = lines_of([request], rules)
     with np.errstate(over="ignore", under="ignore"):
-        evaluation = evaluate(lines, rules)
-        eye = _target(evaluation, evaluation.eye, distance_m)
-        skin = _target(evaluation, evaluation.skin, distance_m)
-    return Along(distance_m, eye, skin)
+        lines = behind_bench([request], lines_of([request], rules)[0])
+        plain = evaluate(lines, rules)
+        found = {name: _target(plain, plain.target(name), distance_m) for name in ("eye", "skin")}
+        if request.viewing.aid is not None:
+            aided = evaluate(lines, rules, aid_of(request.viewing.aid))
+            found["eye_aided"] = _target(aided, aided.eye, distance_m)
+    return found
 
 
 def _target(evaluation: Evaluation, result: TargetResult, distance_m: Floats) -> TargetAlong:
-    each, worst = ratios_along(evaluation, result, distance_m)
-    first = each.argmax(axis=0)
-    limit = result.criteria.limit_j_m2[first]
-    return TargetAlong(worst, limit, each.max(axis=0) * limit)
+    places = np.broadcast_to(distance_m[:, None], (len(distance_m), evaluation.lines.count))
+    each = ratios_at(evaluation, result, places)
+    limit = result.criteria.limit_j_m2[each.argmax(axis=1)]
+    return TargetAlong(sums_of_lines(evaluation, result, each), limit, each.max(axis=1) * limit)

@@ -44,7 +44,7 @@ from service.rules.compiled import CompiledRules, compiled_rules
 from service.rules.eyewear import eyewear_tables
 from service.rules.tables import read_toml
 
-__all__ = ["answer", "cautions", "compare", "rule_set", "rule_sets"]
+__all__ = ["aid_of", "answer", "cautions", "compare", "rule_set", "rule_sets"]
 
 
 def rule_sets() -> dict[str, CompiledRules]:
@@ -83,7 +83,7 @@ def answer(request: EvaluationRequest) -> EvaluationResult:
     with np.errstate(over="ignore", under="ignore"):
         behind = behind_bench([request], lines)
         evaluation = evaluate(behind, rules)
-        aided = None if request.viewing.aid is None else evaluate(behind, rules, _aid(request.viewing.aid))
+        aided = None if request.viewing.aid is None else evaluate(behind, rules, aid_of(request.viewing.aid))
         return _result(request, lines, evaluation, aided, duration_rows.tolist())
 
 
@@ -93,7 +93,8 @@ def compare(request: EvaluationRequest) -> Comparison:
     return Comparison(results=[answer(request.model_copy(update={"rules": key})) for key in rule_sets()])
 
 
-def _aid(aid: ViewingAid) -> Aid:
+def aid_of(aid: ViewingAid) -> Aid:
+    """The optical aid of a request in SI."""
     return Aid(aid.objective_mm * 1e-3, aid.magnification, aid.transmittance)
 
 

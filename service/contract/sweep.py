@@ -14,12 +14,13 @@ from service.assess.classification import classify
 from service.assess.criteria import EXPOSURE, RULES
 from service.assess.evaluate import Evaluation, TargetResult, evaluate, optical_density
 from service.assess.lines import PULSE
-from service.contract.answer import cautions, rule_set
+from service.contract.answer import aid_of, cautions, rule_set
 from service.contract.classification import schemes
-from service.contract.convert import lines_of
+from service.contract.convert import behind_bench, lines_of
 from service.contract.problem import FieldError, InvalidRequest, invalid_request
-from service.contract.request import EvaluationRequest, Line, Strict
+from service.contract.request import EvaluationRequest, Line
 from service.contract.result import Model, RulesInfo
+from service.contract.strict import Strict
 
 __all__ = [
     "FIELDS",
@@ -123,11 +124,17 @@ class SweepAnswer(Model):
     exposure_s: list[float] = Field(description="Exposure duration of the swept line at each value.")
     eye: SweptTarget
     skin: SweptTarget
+    eye_aided: SweptTarget | None = Field(description="The eye behind viewing.aid; null without one.")
     hazard_class: dict[str, list[str]] = Field(description="Class at each value under every scheme.")
     remarks: list[str] = Field(description="What is held while the input runs.")
     inputs: dict[str, Any] = Field(description="The request of the laser.")
     cautions: list[str]
     service_version: str
+
+    def targets(self) -> list[tuple[str, str, SweptTarget]]:
+        """Key, name and figures of every target there is."""
+        found = [("eye", "Eye", self.eye), ("skin", "Skin", self.skin)]
+        return found if self.eye_aided is None else [*found, ("eye_aided", "Aided", self.eye_aided)]
 
 
 def sweep(request: SweepRequest) -> SweepAnswer:
@@ -138,8 +145,13 @@ def sweep(request: SweepRequest) -> SweepAnswer:
     requests = _requests(laser, asked, values)
     lines, _ = lines_of(requests, rules)
     with np.errstate(over="ignore", under="ignore"):
-        evaluation = evaluate(lines, rules)
+        behind = behind_bench(requests, lines)
+        evaluation = evaluate(behind, rules)
         eye, skin = (_target(evaluation, result) for result in (evaluation.eye, evaluation.skin))
+        aided = None
+        if laser.viewing.aid is not None:
+            through = evaluate(behind, rules, aid_of(laser.viewing.aid))
+            aided = _target(through, through.eye)
         classes = {}
         for key, scheme in schemes().items():
             names = [c.name for c in scheme.scheme.classes]
@@ -159,6 +171,7 @@ def sweep(request: SweepRequest) -> SweepAnswer:
         exposure_s=evaluation.lines.exposure_s[at].tolist(),
         eye=eye,
         skin=skin,
+        eye_aided=aided,
         hazard_class=classes,
         remarks=_remarks(laser, asked),
         inputs=laser.model_dump(mode="json", exclude_none=True),
@@ -176,9 +189,7 @@ def _requests(laser: EvaluationRequest, asked: Sweep, values: list[float]) -> li
     """The laser at every value, each validated as a request of its own."""
     if asked.field == "exposure_s":
         for end in (asked.start, asked.stop):
-            _validated(
-                EvaluationRequest, {**laser.model_dump(exclude_none=True), "exposure_s": end}, asked, end
-            )
+            _check(laser, {"exposure_s": end}, asked, end)
         return [laser.model_copy(update={"exposure_s": v}) for v in values]
     if asked.line >= len(laser.lines):
         most = len(laser.lines) - 1
@@ -195,12 +206,16 @@ def _requests(laser: EvaluationRequest, asked: Sweep, values: list[float]) -> li
             "Sweep an input that the line gives, or give the line by this one.",
         )
     given = part[asked.field]
+    before, after = laser.lines[: asked.line], laser.lines[asked.line + 1 :]
     found = []
     for value in values:
         part[asked.field] = _scaled(given, value) if asked.field in PAIRS else value
-        changed = [*laser.lines]
-        changed[asked.line] = _validated(Line, line, asked, value)
-        found.append(laser.model_copy(update={"lines": changed}))
+        try:
+            changed = Line.model_validate(line)
+        except ValidationError:
+            _check(laser, {"lines": [*before, line, *after]}, asked, value)
+            raise
+        found.append(laser.model_copy(update={"lines": [*before, changed, *after]}))
     return found
 
 
@@ -210,10 +225,11 @@ def _scaled(given: Any, value: float) -> list[float]:
     return [value, value * second / first if first > 0.0 else value]
 
 
-def _validated(model: Any, data: dict[str, Any], asked: Sweep, value: float) -> Any:
-    """The data as a model; an error is told as one of the sweep's ends."""
+def _check(laser: EvaluationRequest, changes: dict[str, Any], asked: Sweep, value: float) -> None:
+    """Refuse a value that no request may hold, as one of the sweep's ends."""
+    given = {name: getattr(laser, name) for name in EvaluationRequest.model_fields}
     try:
-        return model.model_validate(data)
+        EvaluationRequest.model_validate({**given, **changes})
     except ValidationError as error:
         (first, *_) = invalid_request(error).errors
         end = "start" if value == asked.start else "stop"

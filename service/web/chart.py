@@ -4,12 +4,12 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass
-from typing import Any
+from typing import Any, NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
 
-from service.contract.along import Along, along
+from service.contract.along import TargetAlong, along
 from service.contract.evaluation import EvaluationResult
 from service.contract.request import EvaluationRequest
 from service.contract.result import TargetAnswer
@@ -32,7 +32,7 @@ LEAST_RATIO = 1e-3
 
 @dataclass(frozen=True, slots=True)
 class Row:
-    """One row of the data table; figures of eye and skin as (ratio, exposure, limit)."""
+    """One row of the data table; figures of each target as (ratio, exposure, limit)."""
 
     distance_m: float
     chosen: bool
@@ -44,8 +44,18 @@ class Chart:
     """The drawing, what it says in a sentence, and its table."""
 
     plot: Plot
+    names: list[str]
     sentences: list[str]
     rows: list[Row]
+
+
+class _Target(NamedTuple):
+    """A target as the chart knows it: its key in the answer, its class, its name."""
+
+    key: str
+    kind: str
+    name: str
+    answer: TargetAnswer
 
 
 def request_of(inputs: dict[str, Any]) -> EvaluationRequest:
@@ -53,14 +63,17 @@ def request_of(inputs: dict[str, Any]) -> EvaluationRequest:
     return EvaluationRequest.model_validate({k: v for k, v in inputs.items() if v is not None})
 
 
-def _targets(result: EvaluationResult) -> list[tuple[str, str, TargetAnswer]]:
-    return [("eye", "Eye", result.eye), ("skin", "Skin", result.skin)]
+def _targets(result: EvaluationResult) -> list[_Target]:
+    found = [_Target("eye", "eye", "Eye", result.eye), _Target("skin", "skin", "Skin", result.skin)]
+    if result.eye_aided is not None:
+        found.append(_Target("eye_aided", "aided", "Aided", result.eye_aided))
+    return found
 
 
 def _range_m(result: EvaluationResult) -> tuple[float, float]:
     """Whole decades of distance that show the zones, the hottest places and the viewing distance."""
     places = list(SHOWN_M)
-    for _, _, target in _targets(result):
+    for *_, target in _targets(result):
         near, far = target.hazard_zone_m or (0.0, 0.0)
         places += [p for p in (near, target.worst_place_m) if p > 0.0]
         places += [far * 3.0] if far else []
@@ -85,7 +98,7 @@ def _one_two_five(low: float, high: float) -> list[float]:
 def _places(result: EvaluationResult, low: float, high: float, asked: Floats) -> Floats:
     """Places of the curve: evenly spread, close together about each peak, and those to be read."""
     parts = [np.geomspace(low, high, PLACES), asked]
-    for _, _, target in _targets(result):
+    for *_, target in _targets(result):
         peak = target.worst_place_m
         near = np.geomspace(1e-4, 0.5, 12) if peak > 0.0 else np.array([])
         parts += [peak * (1.0 + near), peak * (1.0 - near), np.array([peak])]
@@ -120,31 +133,29 @@ def _sentence(name: str, target: TargetAnswer) -> str:
     return f"{name}: above the limit {start}{end}; {worst}."
 
 
-def _reading(distance_m: float, ratios: list[float]) -> str:
-    eye, skin = (shown_up(r) for r in ratios)
-    return f"{plain(distance_m)} m: eye {eye} times, skin {skin} times the limit"
+def _ratios_said(names: list[str], ratios: list[float]) -> str:
+    """'eye 3.2 times, skin 0.1 times' (the limit)."""
+    return ", ".join(f"{n.lower()} {shown_up(r)} times" for n, r in zip(names, ratios, strict=True))
 
 
 def chart_of(result: EvaluationResult) -> Chart:
     """Chart, sentences and table of one answer."""
     low, high = _range_m(result)
+    targets = _targets(result)
+    names = [t.name for t in targets]
     viewing = None if result.eye.at_distance is None else result.eye.at_distance.distance_m
-    chosen = [viewing] if viewing else []
-    read = np.unique([*_three_digits(low, high, READINGS), *chosen])
+    read = np.unique([*_three_digits(low, high, READINGS), *([viewing] if viewing else [])])
     listed = sorted({*_one_two_five(low, high), *([] if viewing is None else [viewing])})
     places = np.unique([*_places(result, low, high, read), *listed])
-    found = along(request_of(result.inputs), places)
+    by_key = along(request_of(result.inputs), places)
+    found = [by_key[t.key] for t in targets]
     shown = (places >= low) & (places <= high)
-    pairs = [(found.eye, result.eye), (found.skin, result.skin)]
     x = Axis(low, high, LEFT, RIGHT)
-    y = Axis(*_heights(np.concatenate([t.hazard_ratio[shown] for t, _ in pairs])), BOTTOM, top_of(len(pairs)))
-    sentences = [_sentence(name, target) for _, name, target in _targets(result)]
+    y = Axis(*_heights(np.concatenate([f.hazard_ratio[shown] for f in found])), BOTTOM, top_of(len(targets)))
+    sentences = [_sentence(t.name, t.answer) for t in targets]
     if viewing is not None:
-        at = [t.at_distance for _, _, t in _targets(result)]
-        words = [
-            f"{n} {shown_up(a.hazard_ratio)} times" for n, a in zip(("eye", "skin"), at, strict=True) if a
-        ]
-        sentences.append(f"At {plain(viewing)} m: {', '.join(words)} the limit.")
+        ratios = [t.answer.at_distance.hazard_ratio for t in targets if t.answer.at_distance]
+        sentences.append(f"At {plain(viewing)} m: {_ratios_said(names, ratios)} the limit.")
     plot = Plot(
         id="distance-chart",
         title="Exposure over limit against distance",
@@ -153,53 +164,46 @@ def chart_of(result: EvaluationResult) -> Chart:
         y=y,
         x_title="Distance from the exit or the last element, m",
         y_title="Exposure / limit",
-        curves=_curves(found, shown, x, y),
+        curves=_curves(targets, [(places[shown], f.hazard_ratio[shown]) for f in found], x, y),
         zones=[
-            zone(kind, name, lane, x, target.hazard_zone_m, _zone_label(target))
-            for lane, (kind, name, target) in enumerate(_targets(result))
+            zone(t.kind, t.name, lane, x, t.answer.hazard_zone_m, _zone_label(t.answer))
+            for lane, t in enumerate(targets)
         ],
         marks=[] if viewing is None else [mark(x, viewing, f"viewing {plain(viewing)} m")],
         limit=y.at(1.0),
-        readings=_readings(found, read, x, y),
+        readings=_readings(names, places, found, read, x, y),
         reader="Read the chart at a distance",
     )
-    return Chart(plot, sentences, _rows(found, listed, viewing))
+    return Chart(plot, names, sentences, _rows(places, found, listed, viewing))
 
 
-def _curves(found: Along, shown: NDArray[np.bool_], x: Axis, y: Axis) -> list[Curve]:
-    eye_above = bool(found.eye.hazard_ratio[shown][0] >= found.skin.hazard_ratio[shown][0])
+def _curves(targets: list[_Target], pairs: list[tuple[Floats, Floats]], x: Axis, y: Axis) -> list[Curve]:
+    """The curves, the eye drawn last; the higher of two has its name above, the aided one further on."""
+    first = [float(ratio[0]) for _, ratio in pairs]
+    above = [first[0] >= first[1], first[0] < first[1], True]
     return [
-        curve(
-            kind,
-            name,
-            x,
-            y,
-            list(zip(found.distance_m[shown], target.hazard_ratio[shown], strict=True)),
-            above,
-        )
-        for kind, name, target, above in (
-            ("skin", "Skin", found.skin, not eye_above),
-            ("eye", "Eye", found.eye, eye_above),
-        )
+        curve(t.kind, t.name, x, y, list(zip(*pair, strict=True)), up, 0.16 if t.kind == "aided" else 0.02)
+        for t, pair, up in reversed(list(zip(targets, pairs, above, strict=False)))
     ]
 
 
-def _readings(found: Along, read: Floats, x: Axis, y: Axis) -> list[Reading]:
+def _readings(
+    names: list[str], places: Floats, found: list[TargetAlong], read: Floats, x: Axis, y: Axis
+) -> list[Reading]:
     readings = []
-    for k in np.searchsorted(found.distance_m, read).tolist():
-        ratios = [float(t.hazard_ratio[k]) for t in (found.eye, found.skin)]
+    for k in np.searchsorted(places, read).tolist():
+        ratios = [float(f.hazard_ratio[k]) for f in found]
         heights = [y.at(r) if r >= y.low else None for r in ratios]
-        place = float(found.distance_m[k])
-        readings.append(Reading(x.at(place), _reading(place, ratios), heights))
+        words = f"{plain(float(places[k]))} m: {_ratios_said(names, ratios)} the limit"
+        readings.append(Reading(x.at(float(places[k])), words, heights))
     return readings
 
 
-def _rows(found: Along, listed: list[float], viewing: float | None) -> list[Row]:
+def _rows(places: Floats, found: list[TargetAlong], listed: list[float], viewing: float | None) -> list[Row]:
     rows = []
-    for distance, k in zip(listed, np.searchsorted(found.distance_m, listed).tolist(), strict=True):
+    for distance, k in zip(listed, np.searchsorted(places, listed).tolist(), strict=True):
         figures = [
-            (float(t.hazard_ratio[k]), float(t.exposure_j_m2[k]), float(t.limit_j_m2[k]))
-            for t in (found.eye, found.skin)
+            (float(f.hazard_ratio[k]), float(f.exposure_j_m2[k]), float(f.limit_j_m2[k])) for f in found
         ]
         rows.append(Row(distance, distance == viewing, figures))
     return rows

@@ -24,6 +24,9 @@ LABELS = {
     "divergence_mrad": "Divergence",
     "exposure_s": "Exposure duration",
 }
+#: Class of each target's curve, and how far along its name stands.
+KINDS = {"eye": "eye", "skin": "skin", "eye_aided": "aided"}
+PLACES = {"eye": 0.02, "skin": 0.02, "eye_aided": 0.16}
 #: Most readings of one chart.
 READINGS = 101
 Figures = Sequence[float | None]
@@ -46,9 +49,9 @@ def plots_of(answer: SweepAnswer, as_set: float | None) -> list[Plot]:
     ]
     plots = []
     for key, name, y_unit, column, shown, against_limit in wanted:
-        eye, skin = (_drawable(getattr(t, column)) for t in (answer.eye, answer.skin))
-        if any(v is not None for v in (*eye, *skin)):
-            plots.append(_plot(answer, as_set, key, name, y_unit, column, eye, skin, shown, against_limit))
+        drawn = [(k, n, _drawable(getattr(t, column))) for k, n, t in answer.targets()]
+        if any(v is not None for *_, figures in drawn for v in figures):
+            plots.append(_plot(answer, as_set, key, name, y_unit, column, drawn, shown, against_limit))
     return plots
 
 
@@ -64,31 +67,31 @@ def _plot(
     name: str,
     unit: str,
     column: str,
-    eye: Figures,
-    skin: Figures,
+    drawn: list[tuple[str, str, list[float | None]]],
     shown: Callable[[float], str],
     against_limit: bool,
 ) -> Plot:
     asked, values = answer.sweep, answer.values
     x = Axis(asked.start, asked.stop, LEFT, RIGHT, asked.spacing == "log")
-    found = [v for v in (*eye, *skin) if v is not None]
+    found = [v for *_, figures in drawn for v in figures if v is not None]
     low, high = decades(min(found) / 1.2, max(found) * 1.2)
     if against_limit:
         low, high = min(low, 0.1), max(high, 10.0)
     low = max(low, high * 1e-15)
     y = Axis(low, high, BOTTOM, top_of(0))
     field = f"{LABELS[asked.field]}, {unit_of(asked.field)}"
-    eye_first = _first(eye) >= _first(skin)
     y_title = f"{name}, {unit}" if unit else name
+    eye_first = _first(drawn[0][2]) >= _first(drawn[1][2])
+    above = {"eye": eye_first, "skin": not eye_first, "eye_aided": True}
     curves = [
-        curve("skin", "Skin", x, y, list(zip(values, skin, strict=True)), not eye_first),
-        curve("eye", "Eye", x, y, list(zip(values, eye, strict=True)), eye_first),
+        curve(KINDS[k], n, x, y, list(zip(values, figures, strict=True)), above[k], PLACES[k])
+        for k, n, figures in reversed(drawn)
     ]
     return Plot(
         id=f"sweep-{key}",
         title=f"{name} against {LABELS[asked.field].lower()}",
         description=f"{field}, from {plain(asked.start)} to {plain(asked.stop)}. "
-        + " ".join(_range_words(n, v, unit, shown) for n, v in (("Eye", eye), ("Skin", skin))),
+        + " ".join(_range_words(n, v, unit, shown) for _, n, v in drawn),
         x=x,
         y=y,
         x_title=field,
@@ -116,14 +119,13 @@ def _readings(
     answer: SweepAnswer, x: Axis, y: Axis, unit: str, column: str, shown: Callable[[float], str]
 ) -> list[Reading]:
     every = -(-len(answer.values) // READINGS)
-    lists: tuple[Figures, Figures] = getattr(answer.eye, column), getattr(answer.skin, column)
+    lists: list[tuple[str, Figures]] = [(n.lower(), getattr(t, column)) for _, n, t in answer.targets()]
     readings = []
     for k in range(0, len(answer.values), every):
-        pair = [figures[k] for figures in lists]
-        heights = [y.at(v) if v and v >= y.low else None for v in pair]
-        eye, skin = (_word(v, unit, shown) for v in pair)
+        heights = [y.at(v) if v and v >= y.low else None for v in (figures[k] for _, figures in lists)]
+        words = ", ".join(f"{name} {_word(figures[k], unit, shown)}" for name, figures in lists)
         at = f"{plain(answer.values[k])} {unit_of(answer.sweep.field)}"
-        readings.append(Reading(x.at(answer.values[k]), f"{at}: eye {eye}, skin {skin}", heights))
+        readings.append(Reading(x.at(answer.values[k]), f"{at}: {words}", heights))
     return readings
 
 

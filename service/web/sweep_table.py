@@ -31,9 +31,9 @@ COLUMNS = (
 
 def sweep_csv(answer: SweepAnswer) -> str:
     """Every value with every figure; distances without end as `unbounded`."""
-    targets = (("eye", answer.eye), ("skin", answer.skin))
+    targets = answer.targets()
     head = [answer.sweep.field, *(["exposure_s"] if answer.sweep.field != "exposure_s" else [])]
-    head += [f"{name}_{column}" for name, _ in targets for column in COLUMNS]
+    head += [f"{name}_{column}" for name, _, _ in targets for column in COLUMNS]
     head += [f"class_{scheme}" for scheme in answer.hazard_class]
     head += ["rules", "rules_digest", "service_version"]
 
@@ -42,7 +42,7 @@ def sweep_csv(answer: SweepAnswer) -> str:
             row: list[str | float | None] = [value]
             if answer.sweep.field != "exposure_s":
                 row.append(answer.exposure_s[k])
-            for _, target in targets:
+            for *_, target in targets:
                 row += _figures(target, k)
             row += [names[k] for names in answer.hazard_class.values()]
             yield [*row, answer.rules.id, answer.rules.digest, answer.service_version]

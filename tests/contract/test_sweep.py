@@ -20,6 +20,20 @@ TRAIN = laser(905, {"mode": "train", "average_power_w": 0.02, "pulse_s": 1e-7, "
 GIVEN = laser(1064, {"mode": "train", "energy_j": 1e-4, "pulse_s": 1e-8, "rate_hz": 1000}, rules="eu-2006-25")
 PULSE = laser(1064, {"mode": "pulse", "energy_j": 0.05, "pulse_s": 8e-9}, profile="tophat")
 OVAL = laser(638, {"mode": "cw", "power_w": 0.5}, diameter_mm=[1.0, 4.0], divergence_mrad=[12.0, 3.0])
+FIBRE = {
+    "lines": [
+        {
+            "wavelength_nm": 808,
+            "emission": {"mode": "cw", "power_w": 1.0},
+            "beam": {"profile": "fibre_multimode", "numerical_aperture": 0.22, "core_diameter_um": 105},
+        }
+    ]
+}
+AIDED = {
+    **laser(1064, {"mode": "cw", "power_w": 2.0}),
+    "bench": [{"element": "lens", "focal_mm": 200}],
+    "viewing": {"aid": {"objective_mm": 50, "magnification": 7}, "visibility_km": 5.0},
+}
 TWO = {"lines": [GOOD["lines"][0], TRAIN["lines"][0]], "rules": "ansi-z136-1-2014"}
 CASES: dict[str, tuple[dict[str, Any], dict[str, Any]]] = {
     "wavelength": (GOOD, {"field": "wavelength_nm", "start": 180.0, "stop": 1e6}),
@@ -33,6 +47,8 @@ CASES: dict[str, tuple[dict[str, Any], dict[str, Any]]] = {
     "diameter": (OVAL, {"field": "diameter_mm", "start": 0.1, "stop": 100.0}),
     "divergence": (OVAL, {"field": "divergence_mrad", "start": 0.0, "stop": 50.0, "spacing": "linear"}),
     "exposure": (TWO, {"field": "exposure_s", "start": 1e-6, "stop": 3e4}),
+    "through binoculars, behind a lens": (AIDED, {"field": "power_w", "start": 1e-4, "stop": 10.0}),
+    "wavelength in haze": (AIDED, {"field": "wavelength_nm", "start": 300.0, "stop": 5000.0}),
     "second of two lines": (TWO, {"field": "rate_hz", "line": 1, "start": 1.0, "stop": 1e6}),
 }
 
@@ -62,7 +78,9 @@ def test_sweep_equals_single_answers(body: dict[str, Any], asked: dict[str, Any]
     assert len(found.values) == 23
     for k, value in enumerate(found.values):
         one = answer(single(body, asked, value))
-        for many, target in ((found.eye, one.eye), (found.skin, one.skin)):
+        assert (found.eye_aided is None) == (one.eye_aided is None)
+        for key, _, many in found.targets():
+            target = getattr(one, key)
             criterion = target.criteria[target.governing]
             zone = target.hazard_zone_m
             assert many.hazard_ratio[k] == pytest.approx(target.hazard_ratio, rel=1e-12)
@@ -129,6 +147,7 @@ def test_values_rise_from_end_to_end(start: float, more: float, points: int, spa
         (GOOD, {"field": "wavelength_nm", "start": 1.0, "stop": 500.0}, "sweep.start"),
         (GOOD, {"field": "wavelength_nm", "start": 400.0, "stop": 2e6}, "sweep.stop"),
         (GOOD, {"field": "exposure_s", "start": 1.0, "stop": 1e6}, "sweep.stop"),
+        (FIBRE, {"field": "divergence_mrad", "start": 1.0, "stop": 2.0}, "sweep.field"),
         (GOOD, {"field": "divergence_mrad", "start": 1e-9, "stop": 1.0}, "sweep.start"),
     ],
 )

@@ -16,7 +16,9 @@ from markupsafe import Markup
 
 from service.contract.along import along
 from service.contract.answer import answer
+from service.contract.evaluation import EvaluationResult
 from service.contract.request import EvaluationRequest
+from service.contract.result import TargetAnswer
 from service.web.axes import Axis, decades, number_runs
 from service.web.chart import Chart, chart_of
 from service.web.runs import Run, runs
@@ -37,12 +39,26 @@ LASERS: dict[str, dict[str, Any]] = {
     "no spread": laser(532, {"mode": "cw", "power_w": 0.1}, divergence_mrad=0),
     "faint": laser(532, {"mode": "cw", "power_w": 1e-11}),
     "strong, seen at the exit": laser(1064, {"mode": "cw", "power_w": 9e4}, viewing={"distance_m": 0.0}),
+    "through binoculars, behind a lens": {
+        **laser(1064, {"mode": "cw", "power_w": 2.0}),
+        "bench": [{"element": "lens", "focal_mm": 200}],
+        "viewing": {"aid": {"objective_mm": 50, "magnification": 7}, "distance_m": 3.0, "visibility_km": 5.0},
+    },
     "two lines": {"lines": [GOOD["lines"][0], laser(1064, {"mode": "cw", "power_w": 3.0})["lines"][0]]},
 }
 
 
 def drawn(body: dict[str, Any]) -> Chart:
     return chart_of(answer(EvaluationRequest.model_validate(body)))
+
+
+def at_place(body: dict[str, Any], distance_m: float) -> EvaluationRequest:
+    viewing = {**body.get("viewing", {}), "distance_m": distance_m}
+    return EvaluationRequest.model_validate({**body, "viewing": viewing})
+
+
+def targets_of(result: EvaluationResult) -> list[TargetAnswer]:
+    return [t for t in (result.eye, result.skin, result.eye_aided) if t is not None]
 
 
 def svg_of(chart: Chart) -> ET.Element:
@@ -60,9 +76,9 @@ def test_ratio_along_the_beam_is_the_closed_form() -> None:
     area = math.pi / 4 * 7e-3**2
     expected = 0.1 * (1 - np.exp(-2 * (7e-3 / d) ** 2)) / area / (18 * 0.25**0.75 / 0.25)
     found = along(EvaluationRequest.model_validate(GOOD), z)
-    assert found.eye.hazard_ratio == pytest.approx(expected, rel=1e-9)
-    assert found.eye.limit_j_m2 == pytest.approx(np.full(6, 18 * 0.25**0.75), rel=1e-12)
-    assert found.eye.exposure_j_m2 == pytest.approx(expected * 18 * 0.25**0.75, rel=1e-9)
+    assert found["eye"].hazard_ratio == pytest.approx(expected, rel=1e-9)
+    assert found["eye"].limit_j_m2 == pytest.approx(np.full(6, 18 * 0.25**0.75), rel=1e-12)
+    assert found["eye"].exposure_j_m2 == pytest.approx(expected * 18 * 0.25**0.75, rel=1e-9)
 
 
 @pytest.mark.parametrize("body", LASERS.values(), ids=LASERS.keys())
@@ -70,9 +86,9 @@ def test_along_the_beam_equals_the_answer_at_each_distance(body: dict[str, Any])
     places = [0.0, 0.3, 2.0, 5.0, 40.0]
     found = along(EvaluationRequest.model_validate(body), np.array(places))
     for k, place in enumerate(places):
-        single = answer(EvaluationRequest.model_validate({**body, "viewing": {"distance_m": place}}))
-        for target, there in ((found.eye, single.eye.at_distance), (found.skin, single.skin.at_distance)):
-            assert there is not None
+        single = answer(at_place(body, place))
+        for name, target in found.items():
+            there = getattr(single, name).at_distance
             assert target.hazard_ratio[k] == pytest.approx(there.hazard_ratio, rel=1e-12)
 
 
@@ -95,7 +111,7 @@ def test_drawing_is_well_formed_named_and_has_no_inline_style(body: dict[str, An
 def test_marks_stand_where_the_answer_says(body: dict[str, Any]) -> None:
     result = answer(EvaluationRequest.model_validate(body))
     plot = chart_of(result).plot
-    for lane, target in zip(plot.zones, (result.eye, result.skin), strict=True):
+    for lane, target in zip(plot.zones, targets_of(result), strict=True):
         assert lane.drawn == (target.hazard_zone_m is not None)
         if target.hazard_zone_m is None:
             continue
@@ -130,17 +146,15 @@ def test_read_out_is_not_on_the_unsafe_side(body: dict[str, Any]) -> None:
     assert len(rows) > 40
     assert [r[0] for r in rows] == sorted(r[0] for r in rows)
     for _, text, heights in rows[:: len(rows) // 5]:
-        match = re.fullmatch(r"(\S+) m: eye (.+) times, skin (.+) times the limit", text)
+        match = re.fullmatch(r"(\S+) m: (.+) the limit", text)
         assert match, text
-        at = {"distance_m": float(match[1])}
-        single = answer(EvaluationRequest.model_validate({**body, "viewing": at}))
-        for shown, there in zip(
-            match.groups()[1:], (single.eye.at_distance, single.skin.at_distance), strict=True
-        ):
-            assert there is not None
-            assert (
-                there.hazard_ratio * (1 - 1e-12) <= float(shown_value(shown)) <= there.hazard_ratio * 1.0101
-            )
+        shown = [re.fullmatch(r"(?:eye|skin|aided) (.+) times", part) for part in match[2].split(", ")]
+        single = targets_of(answer(at_place(body, float(match[1]))))
+        for part, target in zip(shown, single, strict=True):
+            assert part is not None
+            assert target.at_distance is not None
+            ratio = target.at_distance.hazard_ratio
+            assert ratio * (1 - 1e-12) <= float(shown_value(part[1])) <= ratio * 1.0101
         assert all(h is None or plot.y.end - 1 <= h <= plot.y.start + 1 for h in heights)
 
 
