@@ -15,7 +15,7 @@ from service.contract.problem import NotFound, Problem
 from service.files import DATA
 from service.rules.eyewear import eyewear_tables
 from service.settings import Settings
-from service.web import api, health, pages, rules_pages, static, sweep
+from service.web import api, health, pages, report, rules_pages, static, sweep
 from service.web.headers import Envelope
 from service.web.openapi import describe
 from service.web.problems import PlainProblem, problem_response
@@ -40,6 +40,7 @@ def create_app(settings: Settings | None = None) -> FastAPI:
         api.router,
         health.router,
         pages.router,
+        report.router,
         rules_pages.router,
         static.router,
         sweep.router,

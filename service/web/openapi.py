@@ -10,6 +10,7 @@ from pydantic import BaseModel
 from pydantic.json_schema import models_json_schema
 
 from service.contract.problem import ProblemDocument
+from service.contract.report import ReportRequest
 from service.contract.request import EvaluationRequest
 from service.contract.sweep import SweepRequest
 
@@ -19,6 +20,7 @@ TEMPLATE = "#/components/schemas/{model}"
 BODIES = ("/api/v1/evaluate", "/api/v1/compare")
 #: Bodies that hold an evaluation request beside fields of their own, each with what those may be.
 ENCLOSING: dict[str, tuple[type[BaseModel], dict[str, Any]]] = {
+    "/api/v1/report": (ReportRequest, {"paper": "a4", "date": "2026-12-01", "place": "Laboratory 2"}),
     "/api/v1/sweep": (
         SweepRequest,
         {"sweep": {"field": "power_w", "start": 1e-4, "stop": 10.0, "points": 101, "spacing": "log"}},

@@ -19,6 +19,7 @@ from service.web import csv_text
 from service.web.body import read_data
 from service.web.form import BadAddress, Form
 from service.web.given import setup_given
+from service.web.laser import request_of
 from service.web.sweep_chart import LABELS, plots_of, unit_of
 from service.web.sweep_form import choices, filled, query_of, split, sweep_of, value_as_set
 from service.web.sweep_table import class_steps, listed, sweep_csv
@@ -76,7 +77,7 @@ def _render(
     answer: SweepAnswer | None = None,
     errors: list[FieldError] | None = None,
 ) -> Response:
-    laser = form.request()
+    laser = request_of(form)
     base = form.query()
     asked = None if answer is None else answer.sweep
     return page(
@@ -113,7 +114,7 @@ async def sweep_page(request: Request) -> Response:
         return page(request, "sweep_start.html", cautions=cautions(), result=None)
     form, own = _read(request)
     try:
-        laser = form.request()
+        laser = request_of(form)
     except InvalidRequest:
         return RedirectResponse(f"/evaluate?{form.query()}", 303)
     texts = filled(own, laser)
@@ -133,7 +134,7 @@ async def sweep_table(request: Request) -> Response:
     """The same sweep as a table."""
     form, own = _read(request)
     try:
-        laser = form.request()
+        laser = request_of(form)
     except InvalidRequest:
         return RedirectResponse(f"/evaluate?{form.query()}", 303)
     asked = SweepRequest(evaluation=laser, sweep=sweep_of(filled(own, laser)))
