@@ -5,6 +5,7 @@ from __future__ import annotations
 import json
 import re
 from collections.abc import Callable
+from dataclasses import replace
 from datetime import UTC, date, datetime
 from typing import Annotated, Any
 from urllib.parse import parse_qsl, quote
@@ -24,9 +25,10 @@ from service.web.chart import chart_of
 from service.web.form import BadAddress, Form
 from service.web.given import setup_given
 from service.web.laser import request_of
-from service.web.report_answer import answer_blocks, setup_blocks
+from service.web.report_answer import answer_blocks, setup_blocks, verdict_blocks
 from service.web.report_blocks import Block, printable
 from service.web.report_working import working_blocks
+from service.web.runs import spoken
 from service.web.templates import environment
 from service.web.typeset import MEDIA, pdf
 from service.web.understood import understood
@@ -55,6 +57,13 @@ def _first_sentence(text: str) -> str:
     return text.partition(". ")[0].removesuffix(".") + "."
 
 
+def _body(inputs: dict[str, Any]) -> str:
+    """The request as JSON, one field a line."""
+    fields = {name: value for name, value in inputs.items() if value is not None}
+    rows = [f"{json.dumps(n)}: {json.dumps(v, ensure_ascii=False)}" for n, v in fields.items()]
+    return "{\n" + ",\n".join(rows) + "\n}"
+
+
 def report_data(request: ReportRequest, day: date, given: Parts | None = None) -> dict[str, Any]:
     """Everything the template needs, as JSON. Raises InvalidRequest.
 
@@ -66,27 +75,30 @@ def report_data(request: ReportRequest, day: date, given: Parts | None = None) -
     """
     result = answer(request.evaluation)
     chart = chart_of(result)
-    svg = environment().get_template("chart.svg").render(plot=chart.plot)
+    plot = replace(chart.plot, description=spoken(chart.plot.description))
+    svg = environment().get_template("chart.svg").render(plot=plot)
     titles = {c.rules.id: c.rules.title for c in rule_sets().values()}
-    body = json.dumps({k: v for k, v in result.inputs.items() if v is not None}, indent=1, ensure_ascii=False)
-    first: list[Block] = answer_blocks(result, chart, svg)
     setup = setup_blocks(understood(result.inputs, titles), "Inputs as understood")
     if given:
         setup = [*setup_blocks(given, "The setup as given"), *setup]
-    second = working_blocks(result, printable(body))
+    first: list[Block] = [
+        *verdict_blocks(result, chart),
+        *setup,
+        *answer_blocks(result, replace(chart, plot=plot), svg),
+    ]
     label = request.evaluation.label or "Laser, not named"
     facts = [("Place", request.place), ("Asked by", request.asked_by), ("Rule set", result.rules.title)]
     facts += [("Date", day.isoformat()), ("Made by", f"Blinkline {__version__}")]
-    data = {
+    data: dict[str, Any] = {
         "paper": request.paper,
         "title": printable(label),
         "facts": [[name, printable(value)] for name, value in facts if value],
         "cautions": [_first_sentence(text) for text in result.cautions],
         "digest": result.provenance.request_digest,
-        "parts": [first, [*setup, {"kind": "signature"}], [*second]],
+        "parts": [[*first, {"kind": "signature"}], working_blocks(result, printable(_body(result.inputs)))],
     }
     if CODE_POINTS.search(json.dumps([data["title"], data["facts"], setup], ensure_ascii=False)):
-        first.insert(0, {"kind": "paragraph", "text": [[CODE_POINTS_NOTE, ""]], "small": False})
+        data["parts"][0].insert(0, {"kind": "paragraph", "text": [[CODE_POINTS_NOTE, ""]], "small": False})
     return data
 
 
@@ -115,7 +127,7 @@ async def read_report(request: Request) -> ReportRequest:
     responses={200: {"content": {"application/pdf": {}}, "description": "The report (PDF/UA-1)"}},
 )
 async def post_report(body: Annotated[ReportRequest, Depends(read_report)]) -> Response:
-    """Inputs, results, chart, working and sources as tagged PDF; the same bytes for the same request and day."""
+    """Inputs, results, chart, working, sources as tagged PDF; the same bytes for the same request and day."""
     day = _today() if body.date is None else day_of(body.date)
     return await _file(body.evaluation.label, lambda: report_pdf(body, day))
 

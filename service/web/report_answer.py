@@ -21,7 +21,7 @@ from service.web.report_blocks import (
     verdict,
 )
 
-__all__ = ["answer_blocks", "named_targets", "setup_blocks"]
+__all__ = ["answer_blocks", "named_targets", "setup_blocks", "verdict_blocks"]
 
 ORDERS = {
     "engineering": "Engineering first",
@@ -37,8 +37,8 @@ def named_targets(result: EvaluationResult) -> list[tuple[str, TargetAnswer]]:
     return found if result.eye_aided is None else [*found, ("Eye with optical aid", result.eye_aided)]
 
 
-def answer_blocks(result: EvaluationResult, chart: Chart, svg: str) -> list[Block]:
-    """Verdicts, cautions, notices, figures, class, eyewear, chart, measures."""
+def verdict_blocks(result: EvaluationResult, chart: Chart) -> list[Block]:
+    """What counts, in sentences, and the cautions."""
     blocks = [heading("Result")]
     for (name, target), sentence in zip(named_targets(result), chart.sentences, strict=False):
         state = "unsafe" if target.hazard_zone_m else "within"
@@ -46,9 +46,12 @@ def answer_blocks(result: EvaluationResult, chart: Chart, svg: str) -> list[Bloc
     for n in result.notices:
         if n.code == "skin-longer-exposure":
             blocks.append(verdict("Skin, longer", n.text, "open"))
-    blocks.append({"kind": "cautions", "items": [printable(text) for text in result.cautions]})
-    blocks += _durations(result)
-    blocks += [heading("Key figures"), _figures(result)]
+    return [*blocks, {"kind": "cautions", "items": [printable(text) for text in result.cautions]}]
+
+
+def answer_blocks(result: EvaluationResult, chart: Chart, svg: str) -> list[Block]:
+    """Durations, figures, notices, class, eyewear, chart, measures."""
+    blocks = [*_durations(result), heading("Key figures"), _figures(result)]
     if result.notices:
         blocks += [
             heading("Please check"),
@@ -134,7 +137,7 @@ def _classes(result: EvaluationResult) -> list[Block]:
         [
             f"Class {c.hazard_class}",
             f"{c.title} ({c.standing})",
-            f"{c.reason}. {'; '.join(level.margin for level in c.levels)}.",
+            f"{c.reason[:1].upper()}{c.reason[1:]}. {'; '.join(level.margin for level in c.levels)}.",
         ]
         for c in result.classification
     ]

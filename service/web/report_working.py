@@ -115,7 +115,7 @@ def _steps(steps: Sequence[WorkingStep], lines: int) -> Block:
             ]
         )
     return table(
-        ["Step", "For", "Symbol", "Expression", "Value", "Source"], rows, [0.45, 0.8, 0.8, 3.0, 1.2, 1.9]
+        ["Step", "For", "Symbol", "Expression", "Value", "Source"], rows, [0.4, 0.65, 0.8, 2.7, 1.15, 2.5]
     )
 
 

@@ -8,7 +8,7 @@ from typing import NamedTuple
 
 from markupsafe import Markup
 
-__all__ = ["Run", "runs"]
+__all__ = ["Run", "runs", "spoken"]
 
 RAISED = re.compile(r"([⁻⁰¹²³⁴⁵⁶⁷⁸⁹]+)")
 DIGITS = str.maketrans("⁻⁰¹²³⁴⁵⁶⁷⁸⁹", "−0123456789")
@@ -62,3 +62,8 @@ def runs(text: str) -> list[Run]:
     reader.feed(str(text))
     reader.close()
     return reader.found
+
+
+def spoken(text: str) -> str:
+    """A text for readers without sight of raised digits: 2 × 10^−5."""
+    return "".join(f"^{run.text}" if run.place == "sup" else run.text for run in runs(text))

@@ -21,7 +21,7 @@ from service.contract.request import EvaluationRequest
 from service.contract.result import TargetAnswer
 from service.web.axes import Axis, decades, number_runs
 from service.web.chart import Chart, chart_of
-from service.web.runs import Run, runs
+from service.web.runs import Run, runs, spoken
 from service.web.templates import environment
 from tests.web.client import GOOD, Client, changed, laser
 from tests.web.markup import shown_value
@@ -219,6 +219,7 @@ def test_runs_of_a_text() -> None:
         Run("-0.5", "sup"),
     ]
     assert "".join(run.text for run in runs(Markup("a &lt; b"))) == "a < b"
+    assert spoken("at most 2 × 10⁻⁵ times, 3 m²") == "at most 2 × 10^−5 times, 3 m²"
     assert runs("<sup>5</sup>") == [Run("<sup>5</sup>", "")]
 
 
