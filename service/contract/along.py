@@ -7,9 +7,9 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from service.assess.evaluate import Evaluation, TargetResult, evaluate
-from service.assess.viewing import ratios_at, sums_of_lines
-from service.contract.answer import aid_of, rule_set
+from service.assess.evaluate import Evaluation
+from service.assess.viewing import over_distances
+from service.contract.answer import aid_of, evaluated, rule_set
 from service.contract.convert import behind_bench, lines_of
 from service.contract.request import EvaluationRequest
 
@@ -39,16 +39,16 @@ def along(request: EvaluationRequest, distance_m: Floats) -> dict[str, TargetAlo
     rules = rule_set(request.rules)
     with np.errstate(over="ignore", under="ignore"):
         lines = behind_bench([request], lines_of([request], rules)[0])
-        plain = evaluate(lines, rules)
-        found = {name: _target(plain, plain.target(name), distance_m) for name in ("eye", "skin")}
+        plain = evaluated(request, lines, rules)
+        found = {name: _target(plain, name, distance_m) for name in ("eye", "skin")}
         if request.viewing.aid is not None:
-            aided = evaluate(lines, rules, aid_of(request.viewing.aid))
-            found["eye_aided"] = _target(aided, aided.eye, distance_m)
+            aided = evaluated(request, lines, rules, aid_of(request.viewing.aid))
+            found["eye_aided"] = _target(aided, "eye", distance_m)
     return found
 
 
-def _target(evaluation: Evaluation, result: TargetResult, distance_m: Floats) -> TargetAlong:
-    places = np.broadcast_to(distance_m[:, None], (len(distance_m), evaluation.lines.count))
-    each = ratios_at(evaluation, result, places)
-    limit = result.criteria.limit_j_m2[each.argmax(axis=1)]
-    return TargetAlong(sums_of_lines(evaluation, result, each), limit, each.max(axis=1) * limit)
+def _target(evaluation: Evaluation, target: str, distance_m: Floats) -> TargetAlong:
+    limits, each, worst = over_distances(evaluation, target, distance_m)
+    first = each.argmax(axis=1)[:, None]
+    limit = np.take_along_axis(limits, first, axis=1)[:, 0]
+    return TargetAlong(worst, limit, each.max(axis=1) * limit)

@@ -10,17 +10,20 @@ from numpy.typing import NDArray
 from pydantic import Field, ValidationError, model_validator
 
 from service import __version__
+from service.assess.aid import Aid
 from service.assess.classification import classify
 from service.assess.criteria import EXPOSURE, RULES
 from service.assess.evaluate import Evaluation, TargetResult, evaluate, optical_density
-from service.assess.lines import PULSE
-from service.contract.answer import aid_of, cautions, rule_set
+from service.assess.lines import PULSE, Lines
+from service.contract.answer import aid_of, cautions, evaluated, rule_set
+from service.contract.bench import setup_of
 from service.contract.classification import schemes
 from service.contract.convert import behind_bench, lines_of
 from service.contract.problem import FieldError, InvalidRequest, invalid_request
 from service.contract.request import EvaluationRequest, Line
 from service.contract.result import Model, RulesInfo
 from service.contract.strict import Strict
+from service.rules.compiled import CompiledRules
 
 __all__ = [
     "FIELDS",
@@ -36,6 +39,8 @@ __all__ = [
 Floats = NDArray[np.float64]
 
 MAX_POINTS = 5000
+#: Most values where each must be solved by itself.
+MAX_MOVING = 301
 SweepField = Literal[
     "wavelength_nm",
     "power_w",
@@ -141,17 +146,25 @@ def sweep(request: SweepRequest) -> SweepAnswer:
     """Evaluate one laser at every value of an input. Raises InvalidRequest where a value cannot be used."""
     asked, laser = request.sweep, request.evaluation
     rules = rule_set(laser.rules)
+    if asked.points > MAX_MOVING and setup_of(laser.bench, lines_of([laser], rules)[0]) is not None:
+        raise _refuse(
+            "sweep.points",
+            asked.points,
+            f"2 to {MAX_MOVING} where the limits change with the distance (diffuser, scanner)",
+            "too many values for this bench",
+            "Ask for fewer values, or in several sweeps.",
+        )
     values = asked.values()
     requests = _requests(laser, asked, values)
     lines, _ = lines_of(requests, rules)
     with np.errstate(over="ignore", under="ignore"):
         behind = behind_bench(requests, lines)
-        evaluation = evaluate(behind, rules)
-        eye, skin = (_target(evaluation, result) for result in (evaluation.eye, evaluation.skin))
+        batches = _evaluations(requests, behind, rules, None)
+        eye, skin = (_joined([_target(e, e.target(name)) for e in batches]) for name in ("eye", "skin"))
         aided = None
         if laser.viewing.aid is not None:
-            through = evaluate(behind, rules, aid_of(laser.viewing.aid))
-            aided = _target(through, through.eye)
+            through = _evaluations(requests, behind, rules, aid_of(laser.viewing.aid))
+            aided = _joined([_target(e, e.eye) for e in through])
         classes = {}
         for key, scheme in schemes().items():
             names = [c.name for c in scheme.scheme.classes]
@@ -168,7 +181,7 @@ def sweep(request: SweepRequest) -> SweepAnswer:
         ),
         sweep=asked,
         values=values,
-        exposure_s=evaluation.lines.exposure_s[at].tolist(),
+        exposure_s=lines.exposure_s[at].tolist(),
         eye=eye,
         skin=skin,
         eye_aided=aided,
@@ -178,6 +191,21 @@ def sweep(request: SweepRequest) -> SweepAnswer:
         cautions=cautions(),
         service_version=__version__,
     )
+
+
+def _evaluations(
+    requests: list[EvaluationRequest], lines: Lines, rules: CompiledRules, aid: Aid | None
+) -> list[Evaluation]:
+    """One evaluation of all requests; one of each where limits change over distance (spots, scans)."""
+    if setup_of(requests[0].bench, lines) is None:
+        return [evaluate(lines, rules, aid)]
+    return [evaluated(r, behind_bench([r], lines_of([r], rules)[0]), rules, aid) for r in requests]
+
+
+def _joined(parts: list[SweptTarget]) -> SweptTarget:
+    """The figures of several batches, one after the other."""
+    names = SweptTarget.model_fields
+    return SweptTarget(**{n: [value for part in parts for value in getattr(part, n)] for n in names})
 
 
 def _refuse(field: str, value: Any, allowed: str, message: str, remedy: str) -> InvalidRequest:

@@ -20,6 +20,7 @@ TRAIN = laser(905, {"mode": "train", "average_power_w": 0.02, "pulse_s": 1e-7, "
 GIVEN = laser(1064, {"mode": "train", "energy_j": 1e-4, "pulse_s": 1e-8, "rate_hz": 1000}, rules="eu-2006-25")
 PULSE = laser(1064, {"mode": "pulse", "energy_j": 0.05, "pulse_s": 8e-9}, profile="tophat")
 OVAL = laser(638, {"mode": "cw", "power_w": 0.5}, diameter_mm=[1.0, 4.0], divergence_mrad=[12.0, 3.0])
+SPOT = {**laser(532, {"mode": "cw", "power_w": 2.0}), "bench": [{"element": "diffuser", "reflectance": 0.8}]}
 FIBRE = {
     "lines": [
         {
@@ -47,8 +48,12 @@ CASES: dict[str, tuple[dict[str, Any], dict[str, Any]]] = {
     "diameter": (OVAL, {"field": "diameter_mm", "start": 0.1, "stop": 100.0}),
     "divergence": (OVAL, {"field": "divergence_mrad", "start": 0.0, "stop": 50.0, "spacing": "linear"}),
     "exposure": (TWO, {"field": "exposure_s", "start": 1e-6, "stop": 3e4}),
-    "through binoculars, behind a lens": (AIDED, {"field": "power_w", "start": 1e-4, "stop": 10.0}),
-    "wavelength in haze": (AIDED, {"field": "wavelength_nm", "start": 300.0, "stop": 5000.0}),
+    "through binoculars, behind a lens": (
+        AIDED,
+        {"field": "power_w", "start": 1e-4, "stop": 10.0, "points": 5},
+    ),
+    "lit spot": (SPOT, {"field": "power_w", "start": 0.1, "stop": 1000.0, "points": 5}),
+    "wavelength in haze": (AIDED, {"field": "wavelength_nm", "start": 300.0, "stop": 5000.0, "points": 5}),
     "second of two lines": (TWO, {"field": "rate_hz", "line": 1, "start": 1.0, "stop": 1e6}),
 }
 
@@ -75,7 +80,7 @@ def single(body: dict[str, Any], asked: dict[str, Any], value: float) -> Evaluat
 @pytest.mark.parametrize(("body", "asked"), CASES.values(), ids=CASES.keys())
 def test_sweep_equals_single_answers(body: dict[str, Any], asked: dict[str, Any]) -> None:
     found = swept(body, {"points": 23, **asked})
-    assert len(found.values) == 23
+    assert len(found.values) == asked.get("points", 23)
     for k, value in enumerate(found.values):
         one = answer(single(body, asked, value))
         assert (found.eye_aided is None) == (one.eye_aided is None)
@@ -147,6 +152,7 @@ def test_values_rise_from_end_to_end(start: float, more: float, points: int, spa
         (GOOD, {"field": "wavelength_nm", "start": 1.0, "stop": 500.0}, "sweep.start"),
         (GOOD, {"field": "wavelength_nm", "start": 400.0, "stop": 2e6}, "sweep.stop"),
         (GOOD, {"field": "exposure_s", "start": 1.0, "stop": 1e6}, "sweep.stop"),
+        (SPOT, {"field": "power_w", "start": 1.0, "stop": 2.0, "points": 302}, "sweep.points"),
         (FIBRE, {"field": "divergence_mrad", "start": 1.0, "stop": 2.0}, "sweep.field"),
         (GOOD, {"field": "divergence_mrad", "start": 1e-9, "stop": 1.0}, "sweep.start"),
     ],
