@@ -156,6 +156,9 @@ def chart_of(result: EvaluationResult) -> Chart:
     if viewing is not None:
         ratios = [t.answer.at_distance.hazard_ratio for t in targets if t.answer.at_distance]
         sentences.append(f"At {plain(viewing)} m: {_ratios_said(names, ratios)} the limit.")
+    if result.scan is not None:
+        stopped = _sentence("Eye when the sweep stops", result.scan.failure_eye)
+        sentences.append(f"All of this holds while the beam sweeps. {stopped}")
     plot = Plot(
         id="distance-chart",
         title="Exposure over limit against distance",

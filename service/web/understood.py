@@ -48,6 +48,7 @@ WORDS = {
         "fibre_multimode": "end of a multimode fibre",
     },
 }
+SUPERSCRIPT = str.maketrans("-0123456789", "⁻⁰¹²³⁴⁵⁶⁷⁸⁹")
 SHOWN_UNITS = {"um": "µm", "degrees": "°"}
 
 
@@ -109,9 +110,18 @@ def _name(name: str) -> str:
     return words[:1].upper() + words[1:]
 
 
+def _number(value: float) -> str:
+    """A number exactly, as people read it: 0.1, 532, 8 × 10⁻⁹."""
+    mantissa, _, exponent = plain(value).partition("e")
+    if not exponent:
+        return mantissa
+    power = f"10{str(int(exponent)).translate(SUPERSCRIPT)}"
+    return power if mantissa == "1" else f"{mantissa} × {power}"
+
+
 def _value(name: str, value: Any) -> str:
     if isinstance(value, list):
-        return f"{' × '.join(plain(v) for v in value)} {_unit(name)}".rstrip()
+        return f"{' × '.join(map(_number, value))} {_unit(name)}".rstrip()
     if isinstance(value, bool) or not isinstance(value, int | float):
         return WORDS.get(name, {}).get(str(value), str(value))
-    return f"{plain(value)} {_unit(name)}".rstrip()
+    return f"{_number(value)} {_unit(name)}".rstrip()

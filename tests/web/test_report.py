@@ -19,7 +19,7 @@ from service.web.report import report_data, report_pdf
 from service.web.report_blocks import printable
 from service.web.understood import understood
 from tests.web.client import EVALUATE, GOOD, JSON, Client, changed, laser, strict_json
-from tests.web.markup import one_unit
+from tests.web.markup import one_unit, shown_value
 from tests.web.pages import CW, HTML, address
 from tests.web.shape import assert_problem
 
@@ -43,6 +43,14 @@ CASES = {
     "continuous": GOOD,
     "train at a distance": laser(905, TRAIN, viewing={"distance_m": 2.0}, rules="eu-2006-25"),
     "everything": FULL,
+    "lit spot": {
+        **laser(532, {"mode": "cw", "power_w": 20.0}),
+        "bench": [{"element": "diffuser", "reflectance": 0.8}],
+    },
+    "sweeping beam": {
+        **laser(532, {"mode": "cw", "power_w": 0.1}),
+        "bench": [{"element": "scanner", "angle_deg": 20, "sweeps_hz": 50}],
+    },
     "two lines": {"lines": [GOOD["lines"][0], laser(905, TRAIN)["lines"][0]], "rules": "ansi-z136-1-2014"},
     "no spread": changed("lines.0.beam.divergence_mrad", 0),
     "faint": changed("lines.0.emission.power_w", 1e-11),
@@ -92,6 +100,7 @@ def cells(data: dict[str, Any]) -> list[str]:
     return found
 
 
+NUMBER = re.compile(r"(?<![\d.])\d+(?:\.\d+)?(?: × 10[⁻⁰¹²³⁴⁵⁶⁷⁸⁹]+)?")
 FIGURE = re.compile(r"(?<![\w.])(\d+(?:\.\d+)?)(?: × 10\^(−?\d+))?(?![\w.]*\d)")
 
 
@@ -134,6 +143,11 @@ def test_every_figure_of_the_answer_is_in_the_report(client: Client, case: str) 
         if there is not None:
             assert_shown(texts, there["hazard_ratio"], True, "ratio at the distance")
             assert_shown(texts, there["optical_density"], True, "density at the distance")
+    if found["diffuse"] is not None:
+        assert_shown(texts, found["diffuse"]["day_hazard_ratio"], True, "a day at the spot")
+    if found["scan"] is not None:
+        for name in ("hazard_distance_m", "hazard_ratio", "optical_density"):
+            assert_shown(texts, found["scan"]["failure_eye"][name], True, f"stopped {name}")
     for line in found["protection"]["lines"]:
         assert_shown(texts, line["worst_place"]["optical_density"], True, "density")
         assert_shown(texts, line["worst_place"]["transmittance"], False, "transmittance")
@@ -323,8 +337,9 @@ def test_every_input_is_understood_in_words(client: Client) -> None:
                 leaves.append(value)
 
         walk(inputs)
+        shown = re.sub(r"(?<!× )\b10(?=[⁻⁰¹²³⁴⁵⁶⁷⁸⁹])", "1 × 10", shown)
         for value in leaves:
-            assert f"{value:g}" in shown or repr(value).removesuffix(".0") in shown, value
+            assert any(shown_value(f) == Decimal(repr(value)) for f in re.findall(NUMBER, shown)), value
 
 
 def test_description_names_the_body(client: Client) -> None:
