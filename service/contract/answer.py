@@ -18,6 +18,7 @@ from service.assess.scales import spot_area_m2
 from service.assess.steps import Step
 from service.assess.viewing import over_distances
 from service.assess.working import working
+from service.contract.airspace import airspace_of
 from service.contract.bench import bench_steps, setup_of
 from service.contract.classification import hazard_classes
 from service.contract.convert import behind_bench, lines_of
@@ -160,6 +161,7 @@ def _result(
         eye_aided=None if aided is None else _target(request, aided, "eye"),
         diffuse=diffuse_answer(evaluation, rules),
         scan=_scan(request, evaluation),
+        airspace=airspace_of(standing) if request.viewing.outdoors else None,
         over_distance=over_distance_of(request, evaluation),
         working=[step_model(s) for s in [*steps, *working(evaluation, 0, first)]],
         classification=classes,

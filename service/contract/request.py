@@ -149,6 +149,9 @@ class Viewing(Strict):
         description="Visibility; without it the air is clear (stricter).",
     )
     aid: Aid | None = Field(None, description="Binoculars, a telescope or a loupe between beam and eye.")
+    outdoors: bool | None = Field(
+        None, description="Ask how far the beam disturbs pilots (visual interference with aircraft)."
+    )
     over_distance: OverDistance | None = Field(None, description="Ask for exposure and ratio over distance.")
 
 
