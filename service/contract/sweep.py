@@ -278,7 +278,7 @@ def _remarks(laser: EvaluationRequest, asked: Sweep) -> list[str]:
     if asked.field == "wavelength_nm" and laser.exposure_s is None:
         remarks.append("Each wavelength takes its own conventional exposure duration; a step in it shows.")
     if laser.bench and laser.bench[-1].element == "scanner":
-        remarks.append("The figures hold while the beam sweeps; the evaluation tells what holds when it stops.")
+        remarks.append("The figures hold while the beam sweeps; an evaluation tells of one that stops.")
     if len(laser.lines) > 1 and asked.field != "exposure_s":
         remarks.append(f"Line {asked.line + 1} runs; the other lines stay and add as in an evaluation.")
     return remarks

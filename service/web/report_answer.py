@@ -8,6 +8,7 @@ from service.contract.result import TargetAnswer
 from service.web import present
 from service.web.chart import Chart
 from service.web.numbers import plain
+from service.web.report_besides import besides_blocks
 from service.web.report_blocks import (
     Block,
     bullets,
@@ -16,6 +17,7 @@ from service.web.report_blocks import (
     pairs,
     paragraph,
     printable,
+    reached,
     table,
     up,
     verdict,
@@ -51,7 +53,7 @@ def verdict_blocks(result: EvaluationResult, chart: Chart) -> list[Block]:
 
 def answer_blocks(result: EvaluationResult, chart: Chart, svg: str) -> list[Block]:
     """Durations, figures, notices, class, eyewear, chart, measures."""
-    blocks = [*_durations(result), heading("Key figures"), _figures(result), *_moving(result)]
+    blocks = [*_durations(result), heading("Key figures"), _figures(result), *besides_blocks(result)]
     if result.notices:
         blocks += [
             heading("Please check"),
@@ -85,46 +87,10 @@ def _durations(result: EvaluationResult) -> list[Block]:
     ]
 
 
-def _moving(result: EvaluationResult) -> list[Block]:
-    """What a lit spot and a sweeping beam are besides."""
-    blocks: list[Block] = []
-    if result.diffuse is not None:
-        found = result.diffuse
-        rows = [
-            [
-                str(s.line + 1),
-                f"{down(s.spot_mm[0])} × {down(s.spot_mm[1])} mm",
-                down(s.subtense_mrad, "mrad"),
-            ]
-            for s in found.lines
-        ]
-        day = "may" if found.safe_all_day else "must not"
-        far = found.day_hazard_distance_m
-        reach = "at every distance" if far is None else f"out to {up(far, 'm')}" if far else "nowhere"
-        blocks += [
-            heading("The lit spot", 2),
-            table(["Line", "Width of the spot", "Subtense at the worst place"], rows, [0.5, 1.5, 1.5]),
-            paragraph(
-                f"One {day} look at the spot all day ({plain(found.day_s)} s): at most "
-                f"{up(found.day_hazard_ratio)} times the limit, above it {reach}. Looked at from "
-                f"{plain(found.nearest_m)} m on, {plain(round(found.viewing_deg, 6))}° from the normal."
-            ),
-        ]
-    if result.scan is not None:
-        stopped = [result.scan.failure_eye, result.scan.failure_skin]
-        rows = [
-            ["Hazard distance", *(_distance(t) for t in stopped)],
-            ["Exposure / limit at the worst place", *(up(t.hazard_ratio) for t in stopped)],
-            ["Optical density needed", *(up(t.optical_density) for t in stopped)],
-        ]
-        blocks += [heading("When the sweep stops", 2), table(["", "Eye", "Skin"], rows, [1.3, 1.0, 1.0])]
-    return blocks
-
-
 def _figures(result: EvaluationResult) -> Block:
     targets = [t for _, t in named_targets(result)]
     rows = [
-        ["Hazard distance", *(_distance(t) for t in targets)],
+        ["Hazard distance", *(reached(t.hazard_distance_m) for t in targets)],
         ["Hazard zone", *(_zone(t) for t in targets)],
         [
             "Exposure / limit at the worst place",
@@ -144,12 +110,6 @@ def _figures(result: EvaluationResult) -> Block:
         )
         rows.append([f"{at}: optical density needed", *(up(a.optical_density) for a in there)])
     return table(["", *(n for n, _ in named_targets(result))], rows, [1.3, *(1.0 for _ in targets)])
-
-
-def _distance(target: TargetAnswer) -> str:
-    if target.hazard_distance_m is None:
-        return "unbounded"
-    return up(target.hazard_distance_m, "m") if target.hazard_distance_m else "none"
 
 
 def _zone(target: TargetAnswer) -> str:

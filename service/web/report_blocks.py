@@ -20,6 +20,7 @@ __all__ = [
     "pairs",
     "paragraph",
     "printable",
+    "reached",
     "table",
     "up",
     "verdict",
@@ -52,6 +53,13 @@ def up(value: float, unit: str = "", digits: int = 3) -> str:
 def down(value: float, unit: str = "", digits: int = 3) -> str:
     """A figure rounded down, with its unit."""
     return f"{shown_down(value, digits)} {unit}".rstrip()
+
+
+def reached(distance_m: float | None) -> str:
+    """A hazard distance: none, unbounded, or rounded up."""
+    if distance_m is None:
+        return "unbounded"
+    return up(distance_m, "m") if distance_m else "none"
 
 
 def heading(text: str, level: int = 1) -> Block:

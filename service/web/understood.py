@@ -122,6 +122,8 @@ def _number(value: float) -> str:
 def _value(name: str, value: Any) -> str:
     if isinstance(value, list):
         return f"{' × '.join(map(_number, value))} {_unit(name)}".rstrip()
-    if isinstance(value, bool) or not isinstance(value, int | float):
+    if isinstance(value, bool):
+        return "yes" if value else "no"
+    if not isinstance(value, int | float):
         return WORDS.get(name, {}).get(str(value), str(value))
     return f"{_number(value)} {_unit(name)}".rstrip()

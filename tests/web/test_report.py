@@ -47,6 +47,7 @@ CASES = {
         **laser(532, {"mode": "cw", "power_w": 20.0}),
         "bench": [{"element": "diffuser", "reflectance": 0.8}],
     },
+    "outdoors": {**GOOD, "viewing": {"outdoors": True}},
     "sweeping beam": {
         **laser(532, {"mode": "cw", "power_w": 0.1}),
         "bench": [{"element": "scanner", "angle_deg": 20, "sweeps_hz": 50}],
@@ -145,6 +146,9 @@ def test_every_figure_of_the_answer_is_in_the_report(client: Client, case: str) 
             assert_shown(texts, there["optical_density"], True, "density at the distance")
     if found["diffuse"] is not None:
         assert_shown(texts, found["diffuse"]["day_hazard_ratio"], True, "a day at the spot")
+    for zone in found["airspace"]["zones"] if found["airspace"] else []:
+        assert_shown(texts, zone["distance_m"], True, zone["name"])
+        assert_shown(texts, zone["level_w_m2"], False, zone["name"])
     if found["scan"] is not None:
         for name in ("hazard_distance_m", "hazard_ratio", "optical_density"):
             assert_shown(texts, found["scan"]["failure_eye"][name], True, f"stopped {name}")
