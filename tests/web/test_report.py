@@ -233,6 +233,19 @@ def test_text_of_users_stays_text() -> None:
     assert "root:" not in whole
 
 
+def test_long_words_and_many_parts_stay_on_the_paper() -> None:
+    pair = {"name": "M" * 200, "ranges": [{"from_nm": 300, "to_nm": 1100, "optical_density": 6}]}
+    window = {"name": "Q" * 200, "distance_m": 1.0, "optical_density": 4.0}
+    body = {**GOOD, "label": "W" * 200, "eyewear": [pair] * 3, "windows": [window] * 3}
+    document = report_pdf(request_for(body, place="P" * 200, asked_by="b" * 200), day_of(DAY))
+    with pdfplumber.open(io.BytesIO(document)) as opened:
+        margin = 18 / 25.4 * 72
+        for page in opened.pages[:4]:
+            assert max(c["x1"] for c in page.chars) <= page.width - margin + 0.5
+    whole = flat("".join(pages(document, 4))).replace("\u200b", "")
+    assert all(whole.count(letter * 100) >= 1 for letter in "WPb")
+
+
 @pytest.mark.parametrize(
     ("text", "shown"),
     [
