@@ -1,8 +1,9 @@
-"""Sweeps: the answer as a function of one input, from one call over arrays."""
+"""Sweeps: the answer as a function of one input, from one pass over arrays (large ones in a few)."""
 
 from __future__ import annotations
 
 import math
+from dataclasses import dataclass
 from typing import Any, Literal
 
 import numpy as np
@@ -10,11 +11,10 @@ from numpy.typing import NDArray
 from pydantic import Field, ValidationError, model_validator
 
 from service import __version__
-from service.assess.aid import Aid
 from service.assess.classification import classify
 from service.assess.criteria import EXPOSURE, RULES
-from service.assess.evaluate import Evaluation, TargetResult, evaluate, optical_density
-from service.assess.lines import PULSE, Lines
+from service.assess.evaluate import Evaluation, TargetResult, optical_density
+from service.assess.lines import PULSE
 from service.contract.answer import aid_of, cautions, evaluated, rule_set
 from service.contract.bench import setup_of
 from service.contract.classification import schemes
@@ -41,6 +41,8 @@ Floats = NDArray[np.float64]
 MAX_POINTS = 5000
 #: Most values where each must be solved by itself.
 MAX_MOVING = 301
+#: Lines that one pass over arrays takes, which bounds the memory it needs.
+LINES_AT_ONCE = 8192
 SweepField = Literal[
     "wavelength_nm",
     "power_w",
@@ -146,7 +148,8 @@ def sweep(request: SweepRequest) -> SweepAnswer:
     """Evaluate one laser at every value of an input. Raises InvalidRequest where a value cannot be used."""
     asked, laser = request.sweep, request.evaluation
     rules = rule_set(laser.rules)
-    if asked.points > MAX_MOVING and setup_of(laser.bench, lines_of([laser], rules)[0]) is not None:
+    moving = setup_of(laser.bench, lines_of([laser], rules)[0]) is not None
+    if asked.points > MAX_MOVING and moving:
         raise _refuse(
             "sweep.points",
             asked.points,
@@ -156,21 +159,10 @@ def sweep(request: SweepRequest) -> SweepAnswer:
         )
     values = asked.values()
     requests = _requests(laser, asked, values)
-    lines, _ = lines_of(requests, rules)
+    size = 1 if moving else max(1, LINES_AT_ONCE // len(laser.lines))
     with np.errstate(over="ignore", under="ignore"):
-        behind = behind_bench(requests, lines)
-        batches = _evaluations(requests, behind, rules, None)
-        eye, skin = (_joined([_target(e, e.target(name)) for e in batches]) for name in ("eye", "skin"))
-        aided = None
-        if laser.viewing.aid is not None:
-            through = _evaluations(requests, behind, rules, aid_of(laser.viewing.aid))
-            aided = _joined([_target(e, e.eye) for e in through])
-        classes = {}
-        for key, scheme in schemes().items():
-            names = [c.name for c in scheme.scheme.classes]
-            classes[key] = [names[k] for k in classify(lines, scheme).number.tolist()]
+        parts = [_part(requests[k : k + size], rules, asked) for k in range(0, len(requests), size)]
     published = rules.rules
-    at = np.arange(len(values)) * len(laser.lines) + (0 if asked.field == "exposure_s" else asked.line)
     return SweepAnswer(
         rules=RulesInfo(
             id=published.id,
@@ -181,11 +173,11 @@ def sweep(request: SweepRequest) -> SweepAnswer:
         ),
         sweep=asked,
         values=values,
-        exposure_s=lines.exposure_s[at].tolist(),
-        eye=eye,
-        skin=skin,
-        eye_aided=aided,
-        hazard_class=classes,
+        exposure_s=[seconds for part in parts for seconds in part.exposure_s],
+        eye=_joined([part.targets["eye"] for part in parts]),
+        skin=_joined([part.targets["skin"] for part in parts]),
+        eye_aided=_joined([part.targets["eye_aided"] for part in parts]) if laser.viewing.aid else None,
+        hazard_class={key: [n for part in parts for n in part.classes[key]] for key in schemes()},
         remarks=_remarks(laser, asked),
         inputs=laser.model_dump(mode="json", exclude_none=True),
         cautions=cautions(),
@@ -193,13 +185,30 @@ def sweep(request: SweepRequest) -> SweepAnswer:
     )
 
 
-def _evaluations(
-    requests: list[EvaluationRequest], lines: Lines, rules: CompiledRules, aid: Aid | None
-) -> list[Evaluation]:
-    """One evaluation of all requests; one of each where limits change over distance (spots, scans)."""
-    if setup_of(requests[0].bench, lines) is None:
-        return [evaluate(lines, rules, aid)]
-    return [evaluated(r, behind_bench([r], lines_of([r], rules)[0]), rules, aid) for r in requests]
+@dataclass(frozen=True, slots=True)
+class _Part:
+    """The figures of some of the values: durations of the swept line, targets and classes by their keys."""
+
+    exposure_s: list[float]
+    targets: dict[str, SweptTarget]
+    classes: dict[str, list[str]]
+
+
+def _part(requests: list[EvaluationRequest], rules: CompiledRules, asked: Sweep) -> _Part:
+    """One evaluation of requests that differ in one value; of one request where its limits move."""
+    lines, _ = lines_of(requests, rules)
+    behind, first = behind_bench(requests, lines), requests[0]
+    plain = evaluated(first, behind, rules)
+    targets = {name: _target(plain, plain.target(name)) for name in ("eye", "skin")}
+    if first.viewing.aid is not None:
+        aided = evaluated(first, behind, rules, aid_of(first.viewing.aid))
+        targets["eye_aided"] = _target(aided, aided.eye)
+    classes = {}
+    for key, scheme in schemes().items():
+        names = [c.name for c in scheme.scheme.classes]
+        classes[key] = [names[k] for k in classify(lines, scheme).number.tolist()]
+    line = 0 if asked.field == "exposure_s" else asked.line
+    return _Part(lines.exposure_s[line :: len(first.lines)].tolist(), targets, classes)
 
 
 def _joined(parts: list[SweptTarget]) -> SweptTarget:

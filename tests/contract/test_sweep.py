@@ -109,6 +109,13 @@ def test_sweep_equals_single_answers(body: dict[str, Any], asked: dict[str, Any]
     assert found.cautions == one.cautions
 
 
+def test_passes_of_any_size_give_the_same(monkeypatch: pytest.MonkeyPatch) -> None:
+    asked = {"field": "rate_hz", "line": 1, "start": 1.0, "stop": 1e6, "points": 40}
+    whole = swept(TWO, asked)
+    monkeypatch.setattr("service.contract.sweep.LINES_AT_ONCE", 14)
+    assert swept(TWO, asked) == whole
+
+
 def test_limit_over_wavelength_is_the_printed_one() -> None:
     """0.25 s, 400 to 700 nm: 18 t^0.75 J/m2; above 700 nm times C_A = 10^(0.002 (w - 700)) (ICNIRP 2013,
     from memory), both for the eye as exposure over T."""
