@@ -18,7 +18,7 @@ from service.rules.eyewear import eyewear_tables
 from service.rules.materials import materials
 from service.settings import Settings
 from service.sign.tables import sign_tables
-from service.web import api, bulk, health, metrics, pages, rules_pages, sign, static
+from service.web import api, bulk, health, metrics, pages, report, rules_pages, sign, static, sweep
 from service.web.headers import Envelope
 from service.web.openapi import describe
 from service.web.problems import PlainProblem, problem_response
@@ -48,9 +48,11 @@ def create_app(settings: Settings | None = None) -> FastAPI:
         health.router,
         metrics.router,
         pages.router,
+        report.router,
         rules_pages.router,
         sign.router,
         static.router,
+        sweep.router,
     ):
         app.include_router(router)
     describe(app)

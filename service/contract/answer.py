@@ -54,7 +54,16 @@ from service.rules.compiled import CompiledRules, compiled_rules
 from service.rules.eyewear import eyewear_tables
 from service.rules.tables import read_toml
 
-__all__ = ["answer", "cautions", "compare", "evaluate_batch", "rule_set", "rule_sets"]
+__all__ = [
+    "aid_of",
+    "answer",
+    "cautions",
+    "compare",
+    "evaluate_batch",
+    "evaluated",
+    "rule_set",
+    "rule_sets",
+]
 
 
 def rule_sets() -> dict[str, CompiledRules]:
@@ -102,9 +111,9 @@ def answer(request: EvaluationRequest) -> EvaluationResult:
     lines, duration_rows = lines_of([request], rules)
     with np.errstate(over="ignore", under="ignore"):
         behind = behind_bench([request], lines)
-        evaluation = _evaluate(request, behind, rules)
+        evaluation = evaluated(request, behind, rules)
         aid = request.viewing.aid
-        aided = None if aid is None else _evaluate(request, behind, rules, _aid(aid))
+        aided = None if aid is None else evaluated(request, behind, rules, aid_of(aid))
         return _result(request, lines, evaluation, aided, duration_rows.tolist())
 
 
@@ -114,7 +123,7 @@ def compare(request: EvaluationRequest) -> Comparison:
     return Comparison(results=[answer(request.model_copy(update={"rules": key})) for key in rule_sets()])
 
 
-def _evaluate(
+def evaluated(
     request: EvaluationRequest, lines: Lines, rules: CompiledRules, aid: Aid | None = None
 ) -> Evaluation:
     """One laser's lines behind its bench, with the limits as they change over distance where they do."""
@@ -134,7 +143,8 @@ def _scan(request: EvaluationRequest, evaluation: Evaluation) -> ScanAnswer | No
     )
 
 
-def _aid(aid: ViewingAid) -> Aid:
+def aid_of(aid: ViewingAid) -> Aid:
+    """The optical aid of a request in SI."""
     return Aid(aid.objective_mm * 1e-3, aid.magnification, aid.transmittance)
 
 

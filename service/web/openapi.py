@@ -12,7 +12,9 @@ from pydantic.json_schema import models_json_schema
 from service.bulk.records import DETAILS
 from service.bulk.summary import Closing, ProblemRecord, Summary
 from service.contract.problem import ProblemDocument
+from service.contract.report import ReportRequest
 from service.contract.request import EvaluationRequest
+from service.contract.sweep import SweepRequest
 from service.sign.request import SignRequest
 from service.web.bulk import NDJSON
 
@@ -25,6 +27,14 @@ BODIES: dict[str, type[BaseModel]] = {
     "/api/v1/evaluate": EvaluationRequest,
     "/api/v1/compare": EvaluationRequest,
     "/api/v1/sign": SignRequest,
+}
+#: Bodies that hold an evaluation request beside fields of their own, each with what those may be.
+ENCLOSING: dict[str, tuple[type[BaseModel], dict[str, Any]]] = {
+    "/api/v1/report": (ReportRequest, {"paper": "a4", "date": "2026-12-01", "place": "Laboratory 2"}),
+    "/api/v1/sweep": (
+        SweepRequest,
+        {"sweep": {"field": "power_w", "start": 1e-4, "stop": 10.0, "points": 101, "spacing": "log"}},
+    ),
 }
 #: What stands on the lines of a bulk answer: with detail=full, whole results with an index.
 RECORDS: tuple[type[BaseModel], ...] = (Summary, ProblemRecord, Closing)
@@ -121,9 +131,13 @@ def describe(app: FastAPI) -> None:
         if app.openapi_schema:
             return app.openapi_schema
         document = get_openapi(title=app.title, version=app.version, routes=app.routes)
-        sent = [(model, "serialization") for model in (ProblemDocument, *RECORDS)]
+        answered: list[type[BaseModel]] = [ProblemDocument, *RECORDS]
         _, definitions = models_json_schema(
-            [*((m, "validation") for m in dict.fromkeys(BODIES.values())), *sent],  # type: ignore[list-item]
+            [
+                *((m, "validation") for m in dict.fromkeys(BODIES.values())),
+                *((model, "validation") for model, _ in ENCLOSING.values()),
+                *((model, "serialization") for model in answered),
+            ],
             ref_template=TEMPLATE,
         )
         document.setdefault("components", {}).setdefault("schemas", {}).update(definitions["$defs"])
@@ -136,7 +150,8 @@ def describe(app: FastAPI) -> None:
         for path, operations in document["paths"].items():
             for operation in operations.values():
                 operation["responses"].pop("422", None)
-                statuses = ("400", "413", "415", "422") if path in BODIES else ("404",) if "{" in path else ()
+                bodied = path in BODIES or path in ENCLOSING
+                statuses = ("400", "413", "415", "422") if bodied else ("404",) if "{" in path else ()
                 for status in statuses:
                     operation["responses"][status] = problem
                 if path in BODIES:
@@ -145,6 +160,14 @@ def describe(app: FastAPI) -> None:
                     operation["requestBody"] = {
                         "required": True,
                         "content": {"application/json": {"schema": schema, "examples": examples}},
+                    }
+                if path in ENCLOSING:
+                    model, own = ENCLOSING[path]
+                    example = {"evaluation": EXAMPLES["continuous"]["value"], **own}
+                    schema = {"$ref": TEMPLATE.format(model=model.__name__)}
+                    operation["requestBody"] = {
+                        "required": True,
+                        "content": {"application/json": {"schema": schema, "example": example}},
                     }
         _describe_bulk(document["paths"][BULK]["post"], problem)
         app.openapi_schema = document

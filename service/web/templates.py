@@ -12,6 +12,7 @@ from starlette.responses import HTMLResponse
 from service import __version__
 from service.files import TEMPLATES
 from service.web import formula, numbers, present
+from service.web.chart import chart_of
 from service.web.static import static_address
 
 __all__ = ["environment", "page"]
@@ -35,7 +36,7 @@ def environment() -> Environment:
         ten=formula.power_of_ten,
         up=numbers.shown_up,
     )
-    env.globals.update(static=static_address, version=__version__, present=present)
+    env.globals.update(chart_of=chart_of, static=static_address, version=__version__, present=present)
     return env
 
 
