@@ -16,19 +16,23 @@ __all__ = [
     "KNOWN",
     "RULE_NAMES",
     "band",
+    "class_sentence",
     "documents",
     "duration",
     "exactly",
+    "eyewear_sentence",
     "factor_band",
     "factor_text",
     "governing",
     "governing_sum",
     "headline",
     "limit_text",
+    "reason",
     "repetition_text",
     "rows_of",
     "scale",
     "scale_limit_text",
+    "sources",
     "targets_of",
     "working_value",
 ]
@@ -41,6 +45,11 @@ RULE_NAMES = {
 }
 QUANTITY_UNITS = {"H": "J/m²", "E": "W/m²", "Q": "J", "P": "W"}
 KNOWN = {"read": "read", "memory": "from memory", "computed": "computed", "entered": "entered"}
+LOOKING = {
+    "eye": "Looking into the beam",
+    "skin": "The beam on bare skin",
+    "aided": "Looking into the beam through the optics entered",
+}
 TIMES = ((1.0, "s", 1.0), (1e-3, "ms", 1e3), (1e-6, "µs", 1e6), (1e-9, "ns", 1e9), (1e-12, "ps", 1e12))
 
 
@@ -90,14 +99,17 @@ def governing_sum(target: TargetAnswer) -> SumOfLines | None:
     return largest if largest and len(largest.lines) > 1 and largest.hazard_ratio >= own else None
 
 
-def headline(name: str, target: TargetAnswer, result: EvaluationResult) -> str:
-    """One sentence for the eye or the skin."""
+def headline(name: str, target: TargetAnswer, result: EvaluationResult, words: str) -> str:
+    """One sentence for the eye, the skin or the eye behind optics; `words` name the duration."""
     exposures = {d.exposure_s for d in result.durations}
-    pulsed = governing(target).rule in ("single", "train")
-    time = f" for {duration(exposures.pop())}" if len(exposures) == 1 and not pulsed else ""
-    if pulsed:
-        time = " for a pulse" if governing(target).rule == "single" else " for the pulse train"
-    looking = "Looking into the beam" if name == "eye" else "The beam on bare skin"
+    rule = governing(target).rule
+    seconds = duration(exposures.pop()) if len(exposures) == 1 else ""
+    time = f" for {words}, {seconds}" if seconds and words else f" for {seconds}" if seconds else ""
+    if rule == "single":
+        time = " for a pulse"
+    elif rule == "train":
+        time = f" for the pulse train{f' within {seconds}' if seconds else ''}"
+    looking = LOOKING[name]
     if target.hazard_zone_m is None:
         return f"{looking} exceeds no limit at any distance{time}."
     near, far = target.hazard_zone_m
@@ -106,6 +118,65 @@ def headline(name: str, target: TargetAnswer, result: EvaluationResult) -> str:
     if near > 0.0:
         return f"{looking} is unsafe between {shown_down(near)} m and {shown_up(far)} m{time}."
     return f"{looking} is unsafe out to {shown_up(far)} m{time}."
+
+
+def class_sentence(result: EvaluationResult) -> str:
+    """The class under every scheme in one sentence."""
+    return "; ".join(f"Class {c.hazard_class} after {c.title}" for c in result.classification) + "."
+
+
+def eyewear_sentence(result: EvaluationResult) -> str:
+    """What eyewear needs in one sentence, and whether something at hand will do."""
+    needs = []
+    for line in result.protection.lines:
+        place = line.worst_place
+        if place.optical_density > 0.0:
+            needs.append(f"optical density {shown_up(place.optical_density)} at {line.wavelength_nm:g} nm")
+    needed = (
+        f"Where the beam is worst it needs {' and '.join(needs)}." if needs else "No line needs a filter."
+    )
+    pairs = result.protection.eyewear
+    if not pairs:
+        return needed
+    enough = [p.name for p in sorted(pairs, key=lambda p: p.rank) if p.sufficient]
+    at_hand = f"Sufficient at hand: {', '.join(enough)}." if enough else "No pair at hand will do."
+    return f"{needed} {at_hand}"
+
+
+def reason(target: TargetAnswer, result: EvaluationResult) -> str:
+    """Why the distance is what it is: the criterion that governs, its limit, its aperture and the lead."""
+    c, added = governing(target), governing_sum(target)
+    line = f" of line {c.line + 1}" if len(result.durations) > 1 else ""
+    text = (
+        f"{RULE_NAMES[c.rule].capitalize()}{line} governs ({c.tissue}, {c.effect}): "
+        f"{shown_up(c.hazard_ratio)} times the limit of {shown_down(c.limit_j_m2)} J/m² at "
+        f"{duration(c.duration_s)}, averaged over {shown_down(c.aperture_mm)} mm"
+    )
+    if added:
+        numbers = " + ".join(str(n + 1) for n in added.lines)
+        reached = shown_up(added.hazard_ratio)
+        return f"Lines {numbers} added reach {reached} times the limit. Largest share: {text}."
+    others = [o.hazard_ratio for k, o in enumerate(target.criteria) if k != target.governing]
+    if others and max(others) > 0.0 and c.hazard_ratio > 0.0:
+        return f"{text}; the next criterion reaches {shown_up(max(others))} times its limit."
+    return f"{text}."
+
+
+def sources(result: EvaluationResult) -> list[tuple[str, list[str]]]:
+    """Every document and place that an answer names, and how its values are known."""
+    steps = [*result.working]
+    for scheme in result.classification:
+        steps += scheme.working
+    for line in result.protection.lines:
+        steps += line.worst_place.working
+    named = [(c.source, c.known) for t in (result.eye, result.skin) for c in t.criteria]
+    named += [(d.source, d.known) for d in result.durations]
+    named += [(s.source, s.known) for s in steps]
+    found: dict[str, dict[str, None]] = {}
+    for source, known in named:
+        if source:
+            found.setdefault(source, {})[known] = None
+    return [(text, [k for k in KNOWN if k in known]) for text, known in sorted(found.items())]
 
 
 def limit_text(row: LimitRow) -> str:
