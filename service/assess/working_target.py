@@ -216,7 +216,7 @@ def _distance(
         yield Step("z_near", text, near, "m", target=target)
     text = "largest distance at which a limit is exceeded, solved by bracketing"
     if x == y and result.sums is None and not beams.tophat[line]:
-        d0, phi, z0 = (float(a[line]) for a in (beams.diameter_x_m, beams.divergence_x_rad, beams.waist_m))
+        d0, phi, z0 = (float(a[line]) for a in beams.axes()[0])
         whole = number(float(result.criteria.strength[reaching]))
         aperture = number(float(result.criteria.aperture_m[reaching]) * 1e3)
         text += (

@@ -9,20 +9,24 @@ from typing import Any, cast
 import numpy as np
 
 from service import __version__
+from service.assess.aid import Aid
 from service.assess.criteria import AVERAGE, EXPOSURE, RULES, TRAIN_RULE
 from service.assess.evaluate import Evaluation, TargetResult, evaluate, optical_density
-from service.assess.lines import PULSE
+from service.assess.lines import PULSE, Lines
 from service.assess.scales import spot_area_m2
 from service.assess.steps import Step
 from service.assess.viewing import ratios_at, sum_of_lines
 from service.assess.working import working
+from service.contract.bench import bench_steps
 from service.contract.classification import hazard_classes
-from service.contract.convert import lines_of
+from service.contract.convert import behind_bench, lines_of
 from service.contract.evaluation import Comparison, EvaluationResult
 from service.contract.measures import measures_for
 from service.contract.notices import notices_of
+from service.contract.over_distance import over_distance_of
 from service.contract.problem import FieldError, InvalidRequest
 from service.contract.protection import protection_of
+from service.contract.request import Aid as ViewingAid
 from service.contract.request import EvaluationRequest
 from service.contract.result import (
     AtDistance,
@@ -77,8 +81,10 @@ def answer(request: EvaluationRequest) -> EvaluationResult:
     rules = rule_set(request.rules)
     lines, duration_rows = lines_of([request], rules)
     with np.errstate(over="ignore", under="ignore"):
-        evaluation = evaluate(lines, rules)
-        return _result(request, evaluation, duration_rows.tolist())
+        behind = behind_bench([request], lines)
+        evaluation = evaluate(behind, rules)
+        aided = None if request.viewing.aid is None else evaluate(behind, rules, _aid(request.viewing.aid))
+        return _result(request, lines, evaluation, aided, duration_rows.tolist())
 
 
 def compare(request: EvaluationRequest) -> Comparison:
@@ -87,7 +93,17 @@ def compare(request: EvaluationRequest) -> Comparison:
     return Comparison(results=[answer(request.model_copy(update={"rules": key})) for key in rule_sets()])
 
 
-def _result(request: EvaluationRequest, evaluation: Evaluation, duration_rows: list[int]) -> EvaluationResult:
+def _aid(aid: ViewingAid) -> Aid:
+    return Aid(aid.objective_mm * 1e-3, aid.magnification, aid.transmittance)
+
+
+def _result(
+    request: EvaluationRequest,
+    lines: Lines,
+    evaluation: Evaluation,
+    aided: Evaluation | None,
+    duration_rows: list[int],
+) -> EvaluationResult:
     published = evaluation.rules.rules
     exposure = evaluation.lines.exposure_s
     durations = [_duration(evaluation, k, row) for k, row in enumerate(duration_rows)]
@@ -96,7 +112,8 @@ def _result(request: EvaluationRequest, evaluation: Evaluation, duration_rows: l
     inputs.setdefault("exposure_s", None)
     canonical = json.dumps(inputs, sort_keys=True, separators=(",", ":"), allow_nan=False)
     first = [Step("T", d.basis, d.exposure_s, "s", d.source, d.known, d.line) for d in durations]
-    classes = hazard_classes(evaluation.lines)
+    classes = hazard_classes(lines)
+    steps = bench_steps(request.bench, lines.beams, lines.wavelength_nm)
     return EvaluationResult(
         rules=RulesInfo(
             id=published.id,
@@ -109,7 +126,9 @@ def _result(request: EvaluationRequest, evaluation: Evaluation, duration_rows: l
         skin=_target(request, evaluation, evaluation.skin),
         inputs=inputs,
         durations=durations,
-        working=[step_model(s) for s in working(evaluation, 0, first)],
+        eye_aided=None if aided is None else _target(request, aided, aided.eye),
+        over_distance=over_distance_of(request, evaluation),
+        working=[step_model(s) for s in [*steps, *working(evaluation, 0, first)]],
         classification=classes,
         protection=protection_of(request, evaluation),
         measures=measures_for(
@@ -181,6 +200,7 @@ def _target(request: EvaluationRequest, evaluation: Evaluation, result: TargetRe
                 hazard_distance_m=_finite(sums.far_m[n]),
             )
             for n, members in enumerate(sums.members)
+            if len({int(result.criteria.line[k]) for k in members}) > 1
         ],
         at_distance=_at_distance(request, evaluation, result),
     )

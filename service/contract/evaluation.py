@@ -8,6 +8,7 @@ from pydantic import Field
 
 from service.contract.classification import HazardClass
 from service.contract.measures import Measures
+from service.contract.over_distance import OverDistanceAnswer
 from service.contract.protection import Protection
 from service.contract.result import (
     Duration,
@@ -28,6 +29,8 @@ class EvaluationResult(Model):
     rules: RulesInfo
     eye: TargetAnswer
     skin: TargetAnswer
+    eye_aided: TargetAnswer | None = Field(description="The eye behind viewing.aid; null without one.")
+    over_distance: OverDistanceAnswer | None
     inputs: dict[str, Any] = Field(description="The request with every default filled in.")
     durations: list[Duration]
     working: list[WorkingStep]

@@ -19,7 +19,7 @@ from service.assess.protection import (
 from service.assess.scales import SLACK
 from service.assess.screens import screen_load
 from service.assess.steps import number_up
-from service.assess.viewing import ratios_at, sum_of_lines
+from service.assess.viewing import ratios_at, ratios_from, sum_of_lines
 from service.assess.working_protection import protection_steps
 from service.contract.request import EvaluationRequest, Eyewear, Window
 from service.contract.result import Known, Model, WorkingStep, step_model
@@ -177,7 +177,7 @@ def protection_of(request: EvaluationRequest, evaluation: Evaluation) -> Protect
     """Needs of every line, verdict on every pair and window of one laser."""
     tables = eyewear_tables(DATA)
     narrowest = evaluation.lines.beams.narrowest_m()
-    ratio = ratios_at(evaluation, evaluation.eye, narrowest)
+    ratio = ratios_from(evaluation, evaluation.eye, evaluation.lines.beams.nearest_m)
     worst = line_needs(evaluation, ratio, narrowest, tables, onward=True)
     there: list[LineNeed] | None = None
     ratio_there = ratio
@@ -313,9 +313,9 @@ def _pair_check(
 
 def _window(window: Window, evaluation: Evaluation, tables: EyewearTables) -> WindowCheck:
     """A window: density from the rule set's limits, strength from the scale of screens."""
-    places = np.maximum(window.distance_m, evaluation.lines.beams.narrowest_m())
+    places = np.maximum(window.distance_m, evaluation.lines.beams.nearest_m)
     targets = (evaluation.eye, evaluation.skin)
-    ratio = max(sum_of_lines(evaluation, t, ratios_at(evaluation, t, places)) for t in targets)
+    ratio = max(sum_of_lines(evaluation, t, ratios_from(evaluation, t, places)) for t in targets)
     load = screen_load(evaluation.lines, window.distance_m, tables)
     remaining = None if window.optical_density is None else ratio * 10.0**-window.optical_density
     use = tables.use
