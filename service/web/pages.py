@@ -16,6 +16,7 @@ from service.contract.answer import answer, cautions, rule_sets
 from service.contract.evaluation import EvaluationResult
 from service.contract.problem import FieldError, InvalidRequest, NotFound
 from service.files import DATA
+from service.rules.materials import materials
 from service.rules.tables import read_toml
 from service.web.asked import MISSING, field_of, request_of, third
 from service.web.fields import ADDRESS_VERSION, ELEMENTS, FIELDS, PARTS, label_of
@@ -71,7 +72,7 @@ def _fixed() -> dict[str, Any]:
         "families": FAMILIES,
         "parts": PARTS,
         "elements": ELEMENTS,
-        "materials": [],
+        "materials": [(name, name) for name in materials(DATA)],
         "rule_choices": [(r.id, f"{r.title} ({r.standing})") for r in sets],
         "looks": looks(),
         "cautions": cautions(),

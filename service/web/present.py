@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import fields
+from typing import Any
 
 from service.assess.steps import limit_expression
 from service.contract.evaluation import EvaluationResult
@@ -10,7 +11,9 @@ from service.contract.result import Criterion, SumOfLines, TargetAnswer, Working
 from service.rules.eyewear import ScaleRow
 from service.rules.limit_set import LimitSet
 from service.rules.tables import FactorRow, LimitRow, RepetitionRow, Row
-from service.web.numbers import plain, shown_down, shown_up
+from service.web.fields import ELEMENTS, FIELDS
+from service.web.numbers import plain, shown_down, shown_up, typeset
+from service.web.units import base_unit
 
 __all__ = [
     "KNOWN",
@@ -19,6 +22,7 @@ __all__ = [
     "class_sentence",
     "documents",
     "duration",
+    "element",
     "exactly",
     "eyewear_sentence",
     "factor_band",
@@ -34,6 +38,7 @@ __all__ = [
     "scale_limit_text",
     "sources",
     "targets_of",
+    "viewing",
     "working_value",
 ]
 
@@ -162,6 +167,38 @@ def reason(target: TargetAnswer, result: EvaluationResult) -> str:
     return f"{text}."
 
 
+def element(entry: dict[str, Any]) -> str:
+    """An element of the bench as it was understood, in words: Lens, focal length 50 mm."""
+    name, fields_ = ELEMENTS[entry["element"]]
+    words = [name]
+    for field in fields_:
+        value = entry.get(field.removeprefix("bench_"))
+        spec = FIELDS[field]
+        if value is None:
+            continue
+        shown = dict(spec.choices).get(str(value), str(value))
+        if spec.number:
+            shown = (
+                f"{typeset(value)} {base_unit(spec.family).shown if spec.family != 'share' else ''}".rstrip()
+            )
+        words.append(f"{spec.label.removeprefix('or ').lower()} {shown}")
+    return ", ".join(words)
+
+
+def viewing(entry: dict[str, Any]) -> str:
+    """Who looks through what, in words; blank for the naked eye in clear air."""
+    aid, haze = entry.get("aid"), entry.get("visibility_km")
+    words = []
+    if aid:
+        words.append(
+            f"Looked at through optics of magnification {plain(aid['magnification'])}, objective "
+            f"{plain(aid['objective_mm'])} mm, transmittance {plain(aid['transmittance'])}."
+        )
+    if haze is not None:
+        words.append(f"Visibility {plain(haze)} km.")
+    return " ".join(words)
+
+
 def sources(result: EvaluationResult) -> list[tuple[str, list[str]]]:
     """Every document and place that an answer names, and how its values are known."""
     steps = [*result.working]
@@ -169,7 +206,9 @@ def sources(result: EvaluationResult) -> list[tuple[str, list[str]]]:
         steps += scheme.working
     for line in result.protection.lines:
         steps += line.worst_place.working
-    named = [(c.source, c.known) for t in (result.eye, result.skin) for c in t.criteria]
+    named = [
+        (c.source, c.known) for t in (result.eye, result.skin, result.eye_aided) if t for c in t.criteria
+    ]
     named += [(d.source, d.known) for d in result.durations]
     named += [(s.source, s.known) for s in steps]
     found: dict[str, dict[str, None]] = {}

@@ -33,6 +33,7 @@ def environment() -> Environment:
         formula=formula.formula,
         plain=numbers.plain,
         ten=formula.power_of_ten,
+        typeset=numbers.typeset,
         up=numbers.shown_up,
     )
     env.globals.update(static=static_address, version=__version__, present=present)
