@@ -182,10 +182,7 @@ class _Reader:
         if not kind:
             self.refuse(field_name("bench_kind", k), "an element", MISSING, "Choose what the light meets.")
             return {"element": "space", "length_m": 0.0}
-        words, names = ELEMENTS[kind]
-        kinds = {"this": names, "others": PARTS["elements"].fields[1:]}
-        self.only(k, kinds, "this", words.lower())
-        element = {"element": kind, **self.leaves(names, "bench_", k)}
+        element = {"element": kind, **self.leaves(ELEMENTS[kind][1], "bench_", k)}
         return element | ({"surfaces": int(element["surfaces"])} if "surfaces" in element else {})
 
     def pair(self, k: int) -> dict[str, Any]:
@@ -235,7 +232,7 @@ def field_of(path: str, form: Form) -> str:
         return field_name(PAIR_NAMES.get(leaf, "pair_ranges"), number) if number else "protection"
     if parts[0] == "windows" and number:
         return field_name(WINDOW_NAMES.get(leaf, "window_distance_m"), number)
-    return parts[-1]
+    return "look" if path == "exposure_s" and form.look() != OTHER else parts[-1]
 
 
 def _as_form_error(error: FieldError, form: Form) -> FieldError:

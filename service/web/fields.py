@@ -54,7 +54,7 @@ class Part(NamedTuple):
 FIELDS: dict[str, Field] = {
     "label": Field("Name of this laser", "Your own words, up to 200 characters."),
     "place": Field("Where it stands", "Room and bench."),
-    "asked_by": Field("Who asks", "Stands on the printed sheet and in the address, nowhere else."),
+    "asked_by": Field("Who asks", "Stands on the printed sheet."),
     "rules": Field("Judged by"),
     "look": Field("How long"),
     "exposure_s": Field("Exposure duration", "One exposure, or all of a day together.", "time"),

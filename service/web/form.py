@@ -11,10 +11,10 @@ import re
 from collections.abc import Sequence
 from contextlib import suppress
 from dataclasses import dataclass, field
-from urllib.parse import quote, urlencode
+from urllib.parse import parse_qsl, quote, urlencode
 
 from service.contract.problem import FieldError, Problem
-from service.web.fields import ADDRESS_VERSION, FIELDS, KINDS, PARTS, TOP, field_name, split_name
+from service.web.fields import ADDRESS_VERSION, ELEMENTS, FIELDS, KINDS, PARTS, TOP, field_name, split_name
 from service.web.looks import OTHER, USUAL, looks
 from service.web.numbers import NotANumber, parse_number, plain
 from service.web.shelf import shelf
@@ -127,8 +127,24 @@ class Form:
                     name, value, ", ".join(choices), "unknown choice", "Choose one of those listed."
                 )
         form = cls({k: v for k, v in given.items() if v}, counts, bool(edit))
+        form._refuse_strangers()
         form._settle_look()
         return form._changed(change) if change else form
+
+    def _refuse_strangers(self) -> None:
+        """An element has the fields of its kind. Raises BadAddress."""
+        for k in range(1, self.counts["elements"] + 1):
+            kind = self.get(field_name("bench_kind", k))
+            own = ("bench_kind", *(ELEMENTS[kind][1] if kind else ()))
+            for full in (field_name(n, k) for n in PARTS["elements"].fields if n not in own):
+                if full in self.values:
+                    allowed = f"a field of {ELEMENTS[kind][0].lower() if kind else 'no element yet'}"
+                    raise _refuse(full, self.values[full], allowed, "this element has no such field")
+
+    def canonical(self) -> Form:
+        """The same form with every number as its address gives it."""
+        texts = dict(parse_qsl(self.query()))
+        return Form({k: texts[k] for k in self.values if k in texts}, self.counts, self.edit)
 
     def _settle_look(self) -> None:
         """A duration chosen in words becomes its number; a choice that disagrees with a number stays."""

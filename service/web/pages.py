@@ -10,7 +10,7 @@ from urllib.parse import parse_qsl
 
 from fastapi import APIRouter
 from starlette.requests import Request
-from starlette.responses import JSONResponse, RedirectResponse, Response
+from starlette.responses import RedirectResponse, Response
 
 from service.contract.answer import answer, cautions, rule_sets
 from service.contract.evaluation import EvaluationResult
@@ -18,11 +18,13 @@ from service.contract.problem import FieldError, InvalidRequest, NotFound
 from service.files import DATA
 from service.rules.materials import materials
 from service.rules.tables import read_toml
+from service.web import present
 from service.web.asked import MISSING, field_of, request_of, third
 from service.web.fields import ADDRESS_VERSION, ELEMENTS, FIELDS, PARTS, label_of
 from service.web.form import BadAddress, Form
 from service.web.given import setup_given
 from service.web.looks import looks, words_for
+from service.web.packed import packed
 from service.web.shelf import shelf
 from service.web.sidebyside import side_by_side
 from service.web.templates import environment, page
@@ -34,6 +36,8 @@ router = APIRouter(include_in_schema=False)
 
 #: More than a form with every line, element, pair and window can send.
 MAX_PARAMETERS = 2000
+#: Heading of the page before there is an answer.
+TITLE = "Evaluate a laser before it is switched on"
 PROBLEMS = {
     "invalid-request": "A field is missing, unknown or outside its range. The errors name each field, "
     "the value received, what is allowed and what to do.",
@@ -74,6 +78,7 @@ def _fixed() -> dict[str, Any]:
         "elements": ELEMENTS,
         "materials": [(name, name) for name in materials(DATA)],
         "rule_choices": [(r.id, f"{r.title} ({r.standing})") for r in sets],
+        "blank_title": TITLE,
         "looks": looks(),
         "cautions": cautions(),
         "examples": _examples(),
@@ -126,7 +131,7 @@ async def blank(request: Request) -> Response:
     """The blank form."""
     if request.url.query:
         raise NotFound("the first page takes no parameters; evaluations live under /evaluate")
-    return page(request, "evaluate.html", form=Form(), **_fixed(), **_with_errors([]))
+    return page(request, "evaluate.html", form=Form(), live=False, **_fixed(), **_with_errors([]))
 
 
 @router.get("/evaluate")
@@ -145,43 +150,49 @@ async def evaluate_page(request: Request) -> Response:
             values |= _answered(form)
         except InvalidRequest as problem:
             status, values = 422, _with_errors(problem.errors)
-    return page(request, "evaluate.html", status=status, form=form, **_fixed(), **values)
+    return page(request, "evaluate.html", status=status, form=form, live=False, **_fixed(), **values)
 
 
 @router.get("/live")
-async def live(request: Request) -> JSONResponse:
+async def live(request: Request) -> Response:
     """The answer alone, for a page that refreshes while somebody types.
 
-    JSON with the one `address` of the form, the `title`, the `answer` as markup, whether it is one, what
-    was understood of each field (`echo`) and what is wrong with it (`error`).
+    JSON with the one `address` of the form, the `title` of the page and its heading (`named`), the
+    `answer` as markup, the same in a sentence (`said`), what was understood of each field (`echo`) and what
+    is wrong with it (`error`).
     """
-    form = _read(request)
-    errors: list[FieldError] = []
-    values = _with_errors(errors)
+    typed = _read(request)
+    form = typed.canonical()
     try:
-        values |= _answered(form)
+        values = _with_errors([]) | _answered(form)
     except InvalidRequest as problem:
-        errors = problem.errors
-        values = _with_errors(errors)
+        values = _with_errors(problem.errors)
         # A form that is only not yet filled is no mistake: its address shows it for editing.
-        form.edit = all(e.message == MISSING for e in errors)
+        form.edit = all(e.message == MISSING for e in problem.errors)
+    result, errors = values["result"], values["errors"]
     template = environment().get_template("live.html")
-    html = template.render(form=form, incomplete=form.edit, path="/evaluate", **_fixed(), **values)
-    echoes = {name: form.echo(name) for name in form.numbers()}
-    thirds = {f"third-{k}": third(form, k) for k in range(1, form.lines + 1)}
-    wrong = {} if form.edit else {e.field: f"{e.message}. {e.remedy}" for e in errors}
-    named = form.get("label") or "Evaluation"
-    return JSONResponse(
-        {
-            "address": f"/evaluate?{form.query()}",
-            "title": f"{named if values['result'] else 'Evaluate a laser'} · Blinkline",
-            "answered": values["result"] is not None,
-            "answer": html,
-            "echo": {f"{name}-echo": text for name, text in echoes.items()} | thirds,
-            "error": wrong,
-        },
-        headers={"cache-control": "no-store"},
-    )
+    html = template.render(form=form, path="/evaluate", live=True, **_fixed(), **values)
+    named = (form.get("label") or "Evaluation") if result else TITLE
+    if result:
+        said = present.spoken(result, values["words"])
+    elif form.edit:
+        said = f"Not yet complete: {len(errors)} still needed."
+    else:
+        said = f"Nothing was computed: {len(errors)} to check."
+    echoes = {f"{name}-echo": typed.echo(name) for name in form.numbers()}
+    document = {
+        "address": f"/evaluate?{form.query()}",
+        "title": f"{named} · Blinkline",
+        "named": named,
+        "answered": result is not None,
+        "answer": html,
+        "said": said,
+        "echo": echoes | {f"third-{k}": third(form, k) for k in range(1, form.lines + 1)},
+        "error": {e.field: f"{e.message}. {e.remedy}" for e in errors if e.message != MISSING},
+    }
+    content, how = packed(request, json.dumps(document).encode())
+    headers = {"cache-control": "no-store", **how}
+    return Response(content, media_type="application/json", headers=headers)
 
 
 @router.get("/problems/{slug}")

@@ -37,6 +37,7 @@ __all__ = [
     "scale",
     "scale_limit_text",
     "sources",
+    "spoken",
     "targets_of",
     "viewing",
     "working_value",
@@ -108,8 +109,11 @@ def headline(name: str, target: TargetAnswer, result: EvaluationResult, words: s
     """One sentence for the eye, the skin or the eye behind optics; `words` name the duration."""
     exposures = {d.exposure_s for d in result.durations}
     rule = governing(target).rule
-    seconds = duration(exposures.pop()) if len(exposures) == 1 else ""
+    one = exposures.pop() if len(exposures) == 1 else None
+    seconds = "" if one is None else f"{plain(one)} s" if one >= 0.1 else duration(one)
     time = f" for {words}, {seconds}" if seconds and words else f" for {seconds}" if seconds else ""
+    if not seconds:
+        time = " for the usual exposure of each line"
     if rule == "single":
         time = " for a pulse"
     elif rule == "train":
@@ -123,6 +127,12 @@ def headline(name: str, target: TargetAnswer, result: EvaluationResult, words: s
     if near > 0.0:
         return f"{looking} is unsafe between {shown_down(near)} m and {shown_up(far)} m{time}."
     return f"{looking} is unsafe out to {shown_up(far)} m{time}."
+
+
+def spoken(result: EvaluationResult, words: str) -> str:
+    """The answer in a few words, for a line that is read out while somebody types."""
+    eye, skin = (headline(name, t, result, words) for name, t in (("eye", result.eye), ("skin", result.skin)))
+    return f"{eye} {skin} {class_sentence(result)}"
 
 
 def class_sentence(result: EvaluationResult) -> str:
@@ -152,18 +162,26 @@ def reason(target: TargetAnswer, result: EvaluationResult) -> str:
     """Why the distance is what it is: the criterion that governs, its limit, its aperture and the lead."""
     c, added = governing(target), governing_sum(target)
     line = f" of line {c.line + 1}" if len(result.durations) > 1 else ""
+    counted = {
+        "exposure": f"over {duration(c.duration_s)}",
+        "single": f"for a pulse of {duration(c.duration_s)}",
+        "average": f"for each pulse within {duration(c.duration_s)}",
+        "train": f"for each pulse, C_P = {shown_down(c.pulse_factor or 1.0)}",
+    }
     text = (
         f"{RULE_NAMES[c.rule].capitalize()}{line} governs ({c.tissue}, {c.effect}): "
-        f"{shown_up(c.hazard_ratio)} times the limit of {shown_down(c.limit_j_m2)} J/m² at "
-        f"{duration(c.duration_s)}, averaged over {shown_down(c.aperture_mm)} mm"
+        f"{shown_up(c.hazard_ratio)} times the limit of {shown_down(c.limit_j_m2)} J/m² "
+        f"{counted[c.rule]}, averaged over {shown_down(c.aperture_mm)} mm"
     )
     if added:
         numbers = " + ".join(str(n + 1) for n in added.lines)
         reached = shown_up(added.hazard_ratio)
         return f"Lines {numbers} added reach {reached} times the limit. Largest share: {text}."
     others = [o.hazard_ratio for k, o in enumerate(target.criteria) if k != target.governing]
-    if others and max(others) > 0.0 and c.hazard_ratio > 0.0:
-        return f"{text}; the next criterion reaches {shown_up(max(others))} times its limit."
+    if others and max(others) > 0.0:
+        alike = max(others) >= c.hazard_ratio * (1.0 - 1e-9)
+        reached = "as much" if alike else f"{shown_up(max(others))} times its limit"
+        return f"{text}; the next criterion reaches {reached}."
     return f"{text}."
 
 

@@ -12,6 +12,7 @@ from starlette.responses import HTMLResponse
 from service import __version__
 from service.files import TEMPLATES
 from service.web import formula, numbers, present
+from service.web.packed import packed
 from service.web.static import static_address
 
 __all__ = ["environment", "page"]
@@ -45,4 +46,5 @@ def page(
 ) -> HTMLResponse:
     """A page from a template."""
     text = environment().get_template(name).render(path=request.url.path, **values)
-    return HTMLResponse(text, status, headers={"cache-control": "no-store", **(headers or {})})
+    content, how = packed(request, text.encode())
+    return HTMLResponse(content, status, headers={"cache-control": "no-store", **how, **(headers or {})})

@@ -81,7 +81,7 @@ def echo(value: float, typed: str, family: str, key: str) -> str:
         for u in FAMILIES[family]
         if u.key not in ("deg", "pc", "ft") and 1 <= Decimal(repr(value)) / u.factor < 1000
     ]
-    if value and not 0.1 <= value < 1000 and fitting and base not in fitting:
+    if value and not 0.1 <= value < 10000 and fitting and base not in fitting:
         other = max(fitting, key=lambda u: u.factor)
         return f"= {typeset(float(Decimal(repr(value)) / other.factor))} {other.shown}"
     return "" if typed == plain(value) else f"= {typeset(value)} {base.shown}".rstrip()
