@@ -15,7 +15,7 @@ from service.contract.problem import NotFound, Problem
 from service.files import DATA
 from service.rules.eyewear import eyewear_tables
 from service.settings import Settings
-from service.web import api, health, pages, rules_pages, static
+from service.web import api, exports, health, pages, rules_pages, static
 from service.web.headers import Envelope
 from service.web.openapi import describe
 from service.web.problems import PlainProblem, problem_response
@@ -36,7 +36,14 @@ def create_app(settings: Settings | None = None) -> FastAPI:
         redoc_url=None,
     )
     app.state.settings = settings or Settings()
-    for router in (api.router, health.router, pages.router, rules_pages.router, static.router):
+    for router in (
+        api.router,
+        exports.router,
+        health.router,
+        pages.router,
+        rules_pages.router,
+        static.router,
+    ):
         app.include_router(router)
     describe(app)
 

@@ -37,7 +37,7 @@ def request_of(form: Form) -> EvaluationRequest:
                 unread.add(found.field)
                 errors.append(found)
     if errors or request is None:
-        raise InvalidRequest("Some values cannot be used; nothing was computed.", errors)
+        raise InvalidRequest(f"{errors[0].field}: {errors[0].message}; nothing was computed", errors)
     return request
 
 
@@ -216,7 +216,9 @@ def field_of(path: str, form: Form) -> str:
     more = len(parts) > 1
     number = int(parts[1]) + 1 if more and parts[1].isdigit() else 0
     leaf = next((p for p in reversed(parts) if not p.isdigit()), "")
-    if parts[0] == "lines" and len(parts) > 2:
+    if parts[0] == "lines" and number and len(parts) == 2:
+        return field_name("line", number)
+    if parts[0] == "lines" and number:
         if parts[-1] == "1" and leaf in ("diameter_mm", "divergence_mrad"):
             leaf = leaf.replace("_m", "_y_m")
         profile = form.get(field_name("profile", number), "gaussian")

@@ -232,6 +232,8 @@ def split_name(name: str) -> tuple[str, int]:
 def label_of(name: str, lines: int) -> str:
     """What the page calls a field, with the number of its part where there are several."""
     base, number = split_name(name)
+    if name.startswith("line-"):
+        return f"Emission line {name.removeprefix('line-')}" if lines > 1 else "What it emits"
     if base not in FIELDS:
         return name
     label = FIELDS[base].label

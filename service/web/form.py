@@ -20,7 +20,10 @@ from service.web.numbers import NotANumber, parse_number, plain
 from service.web.shelf import shelf
 from service.web.units import FAMILIES, base_unit, convert, echo
 
-__all__ = ["BadAddress", "Form", "unit_name"]
+__all__ = ["BadAddress", "Form", "read_address", "unit_name"]
+
+#: More than a form with every line, element, pair and window can send.
+MAX_PARAMETERS = 2000
 
 #: What the buttons of the form ask for: add-line, add-element-lens, copy-line-2, remove-pair-1, up-element-3.
 CHANGE = re.compile(r"(add|copy|remove|up|down)-([a-z]+)(?:-([1-9][0-9]?|[a-z]+))?")
@@ -43,6 +46,15 @@ def _refuse(
 ) -> BadAddress:
     error = FieldError(field=name[:100], value=value[:100], allowed=allowed, message=message, remedy=remedy)
     return BadAddress(f"{name[:100]}: {message}", [error])
+
+
+def read_address(query: str) -> Form:
+    """The form of the query of an address. Raises BadAddress."""
+    try:
+        items = parse_qsl(query, keep_blank_values=True, max_num_fields=MAX_PARAMETERS)
+    except ValueError:
+        raise BadAddress(f"the address has more than {MAX_PARAMETERS} parameters") from None
+    return Form.read(items)
 
 
 def unit_name(name: str) -> str:

@@ -57,7 +57,9 @@ def setup_given(form: Form, titles: dict[str, str]) -> list[tuple[str, Rows]]:
 def _filled(form: Form, names: tuple[str, ...], k: int) -> Rows:
     """Label and value of the fields of part k that are not blank."""
     full = [field_name(n, k) for n in names]
-    return [(FIELDS[split_name(n)[0]].label, _value(form, n)) for n in full if form.get(n)]
+    return [
+        (FIELDS[split_name(n)[0]].label.removeprefix("or "), _value(form, n)) for n in full if form.get(n)
+    ]
 
 
 def _value(form: Form, name: str) -> str:

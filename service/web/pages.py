@@ -6,7 +6,6 @@ import json
 from datetime import UTC, datetime
 from functools import cache
 from typing import Any
-from urllib.parse import parse_qsl
 
 from fastapi import APIRouter
 from starlette.requests import Request
@@ -21,7 +20,7 @@ from service.rules.tables import read_toml
 from service.web import present
 from service.web.asked import MISSING, field_of, request_of, third
 from service.web.fields import ADDRESS_VERSION, ELEMENTS, FIELDS, PARTS, label_of
-from service.web.form import BadAddress, Form
+from service.web.form import Form, read_address
 from service.web.given import setup_given
 from service.web.looks import looks, words_for
 from service.web.packed import packed
@@ -34,8 +33,6 @@ __all__ = ["router"]
 
 router = APIRouter(include_in_schema=False)
 
-#: More than a form with every line, element, pair and window can send.
-MAX_PARAMETERS = 2000
 #: Heading of the page before there is an answer.
 TITLE = "Evaluate a laser before it is switched on"
 PROBLEMS = {
@@ -117,15 +114,6 @@ def _with_errors(errors: list[FieldError]) -> dict[str, Any]:
     return {"result": None, "errors": errors, "error_of": {e.field: e for e in reversed(errors)}}
 
 
-def _read(request: Request) -> Form:
-    """The form of an address. Raises BadAddress."""
-    try:
-        items = parse_qsl(request.url.query, keep_blank_values=True, max_num_fields=MAX_PARAMETERS)
-    except ValueError:
-        raise BadAddress(f"the address has more than {MAX_PARAMETERS} parameters") from None
-    return Form.read(items)
-
-
 @router.get("/")
 async def blank(request: Request) -> Response:
     """The blank form."""
@@ -139,7 +127,7 @@ async def evaluate_page(request: Request) -> Response:
     """The form with its answer. A form not in canonical order redirects to its one address."""
     if not request.url.query:
         return RedirectResponse("/", 303)
-    form = _read(request)
+    form = read_address(request.url.query)
     canonical = form.query()
     if canonical != request.url.query:
         place = f"#{form.anchor}" if form.anchor else ""
@@ -161,7 +149,7 @@ async def live(request: Request) -> Response:
     `answer` as markup, the same in a sentence (`said`), what was understood of each field (`echo`) and what
     is wrong with it (`error`).
     """
-    typed = _read(request)
+    typed = read_address(request.url.query)
     form = typed.canonical()
     try:
         values = _with_errors([]) | _answered(form)

@@ -1,0 +1,71 @@
+"""An evaluation to take along: the answer as JSON or CSV, from the address of the page."""
+
+from __future__ import annotations
+
+import csv
+import io
+from collections.abc import Iterator
+from typing import Any
+
+from fastapi import APIRouter
+from starlette.requests import Request
+from starlette.responses import Response
+
+from service.contract.answer import answer
+from service.contract.evaluation import EvaluationResult
+from service.contract.problem import UNITS
+from service.web.asked import request_of
+from service.web.form import read_address
+
+__all__ = ["csv_text", "router"]
+
+router = APIRouter(include_in_schema=False)
+
+#: A text that starts like this would be run as a formula by a spreadsheet.
+RUN = ("=", "+", "-", "@", "\t", "\r")
+
+
+def _leaves(value: Any, path: str) -> Iterator[tuple[str, Any]]:
+    """Every value of a document with its path, in order."""
+    if isinstance(value, dict):
+        for name, inner in value.items():
+            yield from _leaves(inner, f"{path}.{name}" if path else name)
+    elif isinstance(value, list):
+        for number, inner in enumerate(value):
+            yield from _leaves(inner, f"{path}.{number}")
+    else:
+        yield path, value
+
+
+def csv_text(result: EvaluationResult) -> str:
+    """The whole answer as CSV: field, value, unit. Numbers as JSON gives them; blank = not applicable."""
+    out = io.StringIO()
+    rows = csv.writer(out, lineterminator="\r\n")
+    rows.writerow(("field", "value", "unit"))
+    for path, value in _leaves(result.model_dump(mode="json"), ""):
+        name = next((p for p in reversed(path.split(".")) if not p.isdecimal()), "")
+        number = isinstance(value, int | float) and not isinstance(value, bool)
+        unit = UNITS.get(name.rpartition("_")[2], "") if number else ""
+        if isinstance(value, str) and value.startswith(RUN):
+            value = f"'{value}"
+        rows.writerow((path, "" if value is None else repr(value) if number else str(value), unit))
+    return out.getvalue()
+
+
+def _download(name: str) -> dict[str, str]:
+    return {"content-disposition": f'attachment; filename="{name}"', "cache-control": "no-store"}
+
+
+@router.get("/evaluate.json")
+async def as_json(request: Request) -> Response:
+    """The JSON answer to the form of an address."""
+    result = answer(request_of(read_address(request.url.query)))
+    text = result.model_dump_json(indent=2)
+    return Response(text, media_type="application/json", headers=_download("evaluation.json"))
+
+
+@router.get("/evaluate.csv")
+async def as_csv(request: Request) -> Response:
+    """Inputs and results of the form of an address as CSV."""
+    text = csv_text(answer(request_of(read_address(request.url.query))))
+    return Response(text, media_type="text/csv; charset=utf-8", headers=_download("evaluation.csv"))
