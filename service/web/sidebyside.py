@@ -32,12 +32,13 @@ class Side:
 def side_by_side(results: list[EvaluationResult]) -> list[Side]:
     """Every rule set beside the first, which is the chosen one."""
     base = results[0]
-    worst = max(r.eye.hazard_ratio for r in results)
+    ratios = [r.eye.hazard_ratio for r in results]
+    worst, alike = max(ratios), _close(min(ratios), max(ratios))
     return [
         Side(
             result=r,
             chosen=r is base,
-            strictest=r.eye.hazard_ratio >= worst * (1.0 - SAME),
+            strictest=not alike and r.eye.hazard_ratio >= worst * (1.0 - SAME),
             durations=list(dict.fromkeys(present.duration(d.exposure_s) for d in r.durations)),
             differences=[] if r is base else _differences(base, r),
         )
