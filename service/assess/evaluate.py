@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from typing import TYPE_CHECKING
 
 import numpy as np
 from numpy.typing import NDArray
@@ -16,6 +17,9 @@ from service.optics.encircled import encircled_fraction
 from service.rules.compiled import CompiledRules
 from service.rules.limits import Conditions
 from service.rules.ruleset import TARGETS
+
+if TYPE_CHECKING:
+    from service.assess.look import Moving
 
 __all__ = ["Evaluation", "Sums", "TargetResult", "evaluate", "optical_density"]
 
@@ -62,7 +66,11 @@ class TargetResult:
 
 @dataclass(slots=True)
 class Evaluation:
-    """The result of one batch under one rule set."""
+    """The result of one batch under one rule set.
+
+    `moving`: the setup of one laser whose limits change with the distance; the lines and limits here are
+    then those of its most hazardous place.
+    """
 
     rules: CompiledRules
     lines: Lines
@@ -70,6 +78,7 @@ class Evaluation:
     exposures: Exposures
     eye: TargetResult
     skin: TargetResult
+    moving: Moving | None = None
 
     def target(self, name: str) -> TargetResult:
         """The result for `eye` or `skin`."""
@@ -99,8 +108,8 @@ def evaluate(lines: Lines, rules: CompiledRules, aid: Aid | None = None) -> Eval
     at = rules.conditions(lines.wavelength_nm, lines.subtense_mrad)
     found = exposures(lines, at, rules)
     cell = rules.cells(at, found.line, found.time_s)
-    results = [_target(target, lines, found, cell, at, rules, aid) for target in TARGETS]
-    return Evaluation(rules, lines, at, found, *results)
+    eye, skin = (_target(target, lines, found, cell, at, rules, aid) for target in TARGETS)
+    return Evaluation(rules, lines, at, found, eye, skin)
 
 
 def _target(

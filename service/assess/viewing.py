@@ -7,7 +7,7 @@ from numpy.typing import NDArray
 
 from service.assess.evaluate import Evaluation, TargetResult
 
-__all__ = ["ratios_at", "ratios_from", "sum_of_lines", "sums_of_lines"]
+__all__ = ["over_distances", "ratios_at", "ratios_from", "seen_from", "sum_of_lines", "sums_of_lines"]
 
 Floats = NDArray[np.float64]
 
@@ -67,6 +67,32 @@ def sums_of_lines(evaluation: Evaluation, result: TargetResult, ratios: Floats) 
             total += ratios[:, own].max(axis=1)
         worst = np.maximum(worst, total)
     return worst
+
+
+def over_distances(evaluation: Evaluation, target: str, distance_m: Floats) -> tuple[Floats, Floats, Floats]:
+    """Limits and ratios of one laser over distances, with the limits that hold there.
+
+    Parameters
+    ----------
+    distance_m : (places,) distances from the last element [m]
+
+    Returns
+    -------
+    limit of each criterion per pulse or over the whole exposure [J/m2] and its ratio, both
+    (places, criteria); the worst ratio with lines added, (places,)
+    """
+    if evaluation.moving is not None:
+        return evaluation.moving.over(evaluation, target, distance_m)
+    result = evaluation.target(target)
+    places = np.broadcast_to(distance_m[:, None], (len(distance_m), evaluation.lines.count))
+    ratios = ratios_at(evaluation, result, places)
+    limits = np.broadcast_to(result.criteria.limit_j_m2, ratios.shape)
+    return limits, ratios, sums_of_lines(evaluation, result, ratios)
+
+
+def seen_from(evaluation: Evaluation, distance_m: float) -> Evaluation:
+    """The evaluation of one laser with the limits that hold at a distance [m]."""
+    return evaluation if evaluation.moving is None else evaluation.moving.at(distance_m)
 
 
 def sum_of_lines(evaluation: Evaluation, result: TargetResult, ratio: Floats) -> float:

@@ -3,22 +3,39 @@
 from __future__ import annotations
 
 import math
+from dataclasses import replace
 from typing import Annotated, Literal
 
 import numpy as np
 from numpy.typing import NDArray
 from pydantic import Field, model_validator
 
+from service.assess.lines import Lines
+from service.assess.moving import Setup, Spots, lambertian
 from service.assess.steps import Step, number
 from service.contract.strict import Strict
 from service.files import DATA
 from service.optics.beams import Beams
 from service.optics.elements import expander, fresnel, lens, mirror, plate, space, through
+from service.optics.sweep import Scan
 from service.rules.materials import material_row, materials
 
-__all__ = ["ELEMENTS", "BenchElement", "Element", "apply", "bench_steps"]
+__all__ = [
+    "ELEMENTS",
+    "LEAST",
+    "BenchElement",
+    "Diffuser",
+    "Element",
+    "Scanner",
+    "apply",
+    "bench_steps",
+    "last_is_last",
+    "setup_of",
+]
 
 Floats = NDArray[np.float64]
+#: What is left behind a bench is never quite nothing [W or J].
+LEAST = 1e-100
 Share = Annotated[float, Field(ge=1e-20, le=1)]
 
 
@@ -108,9 +125,79 @@ class Reflector(Strict):
         return max(plate(one) if self.surfaces == 2 else one, 1e-20)
 
 
-ELEMENTS = ("space", "lens", "mirror", "expander", "window", "reflector")
-BenchElement = Space | Lens | Mirror | Expander | WindowElement | Reflector
+class Diffuser(Strict):
+    """A matt surface on which the beam ends; it scatters evenly by Lambert's law. The last element.
+
+    The lit spot is the source. A ground glass that scatters forwards counts the same with what it passes.
+    """
+
+    element: Literal["diffuser"]
+    reflectance: Share = Field(1.0, description="Share of the power that is scattered.")
+    viewing_deg: float = Field(0.0, ge=0, le=85, description="Angle from the normal of the surface.")
+
+
+class Scanner(Strict):
+    """A mirror that sweeps the beam to and fro along the x axis. The last element."""
+
+    element: Literal["scanner"]
+    angle_deg: float = Field(ge=1e-3, le=170, description="Full angle of the sweep.")
+    sweeps_hz: float = Field(
+        ge=1e-3, le=1e7, description="Sweeps over the whole angle each second, to and fro counted apart."
+    )
+    motion: Literal["even", "sinusoidal"] = Field(
+        "even", description="Speed along the sweep: even, or that of a mirror swinging like a pendulum."
+    )
+    rows: int = Field(1, ge=1, le=100000, description="1: a line; more: sweeps above each other, a raster.")
+    height_deg: float | None = Field(None, ge=1e-3, le=170, description="Height of the raster.")
+
+    @model_validator(mode="after")
+    def _raster_has_a_height(self) -> Scanner:
+        if (self.rows > 1) != (self.height_deg is not None):
+            raise ValueError("give rows above 1 and height_deg for a raster, neither for a line")
+        return self
+
+    def scan(self) -> Scan:
+        """The sweep in radians."""
+        return Scan(
+            angle_rad=math.radians(self.angle_deg),
+            sweeps_hz=self.sweeps_hz,
+            sinusoidal=self.motion == "sinusoidal",
+            rows=self.rows,
+            height_rad=math.radians(self.height_deg or 0.0),
+        )
+
+
+ELEMENTS = ("space", "lens", "mirror", "expander", "window", "reflector", "diffuser", "scanner")
+BenchElement = Space | Lens | Mirror | Expander | WindowElement | Reflector | Diffuser | Scanner
 Element = Annotated[BenchElement, Field(discriminator="element")]
+
+
+def last_is_last(bench: list[BenchElement]) -> list[BenchElement]:
+    """The bench, if nothing stands behind a diffuser or scanner. Raises ValueError."""
+    for element in bench[:-1]:
+        if isinstance(element, Diffuser | Scanner):
+            raise ValueError(
+                f"a {element.element} must be the last element; put windows and filters before it"
+            )
+    return bench
+
+
+def setup_of(bench: list[BenchElement], lines: Lines) -> Setup | None:
+    """What a bench whose last element is a diffuser or scanner makes of one laser's lines in front of it."""
+    last = bench[-1] if bench else None
+    if isinstance(last, Scanner):
+        return Setup(lines, scan=last.scan())
+    if not isinstance(last, Diffuser):
+        return None
+    viewing = math.radians(last.viewing_deg)
+    x, y = lines.beams.diameters_m(np.zeros(lines.count))
+    scattered = replace(
+        lines,
+        emitted=np.maximum(lines.emitted * last.reflectance, LEAST),
+        subtense_mrad=np.zeros(lines.count),
+        beams=lambertian(lines, viewing),
+    )
+    return Setup(scattered, spots=Spots(x, y, viewing))
 
 
 def _one(element: BenchElement, beams: Beams, wavelength_nm: Floats) -> tuple[Beams, Floats]:
@@ -127,7 +214,9 @@ def _one(element: BenchElement, beams: Beams, wavelength_nm: Floats) -> tuple[Be
         return through(beams, expander(element.magnification)), whole * element.transmittance
     if isinstance(element, WindowElement):
         return beams, whole * element.transmittance
-    return beams, np.array([element.share(w) for w in wavelength_nm.tolist()])
+    if isinstance(element, Reflector):
+        return beams, np.array([element.share(w) for w in wavelength_nm.tolist()])
+    return beams, whole
 
 
 def apply(bench: list[BenchElement], beams: Beams, wavelength_nm: Floats) -> tuple[Beams, Floats]:
@@ -156,6 +245,11 @@ def bench_steps(bench: list[BenchElement], beams: Beams, wavelength_nm: Floats) 
             spread = axes[0] if axes[0] == axes[1] else " and ".join(axes)
             width = number(x) if x == y else f"{number(x)} x {number(y)}"
             text = f"{element.element} ({given}): beam of {width} mm there, {spread}; "
-            text += f"share of power {number(float(share[line]))}"
+            if isinstance(element, Diffuser):
+                text += "that is the lit spot; E = reflectance x P x cos(theta) / (pi r^2) at r from it"
+            elif isinstance(element, Scanner):
+                text += "swept from here on"
+            else:
+                text += f"share of power {number(float(share[line]))}"
             steps.append(Step(f"bench {k + 1}", text, x, "mm", line=line))
     return steps

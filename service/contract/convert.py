@@ -9,16 +9,13 @@ import numpy as np
 from numpy.typing import NDArray
 
 from service.assess.lines import MODES, Lines
-from service.contract.bench import apply
+from service.contract.bench import LEAST, apply
 from service.contract.request import Cw, EvaluationRequest, Train
 from service.optics.air import extinction_per_m
 from service.optics.beams import Beams
 from service.rules.compiled import CompiledRules
 
 __all__ = ["behind_bench", "lines_of"]
-
-#: What is left behind a bench is never quite nothing [W or J].
-LEAST = 1e-100
 
 
 def lines_of(requests: Sequence[EvaluationRequest], rules: CompiledRules) -> tuple[Lines, NDArray[np.intp]]:

@@ -5,18 +5,16 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import NDArray
 
-from service.assess.evaluate import Evaluation, TargetResult
-from service.assess.viewing import ratios_at, sums_of_lines
+from service.assess.evaluate import Evaluation
+from service.assess.viewing import over_distances
 from service.contract.request import EvaluationRequest
 from service.contract.result import Model
 
 __all__ = ["CriterionOverDistance", "OverDistanceAnswer", "over_distance_of"]
 
-Floats = NDArray[np.float64]
-
 
 class CriterionOverDistance(Model):
-    """One criterion, by its number in the answer's list."""
+    """One criterion, by its number in the answer's list. The limits are those that hold at the places."""
 
     criterion: int
     limit_j_m2: list[float]
@@ -48,24 +46,22 @@ def over_distance_of(request: EvaluationRequest, evaluation: Evaluation) -> Over
     places[0], places[-1] = asked.from_m, asked.to_m
     return OverDistanceAnswer(
         distance_m=places.tolist(),
-        eye=_target(evaluation, evaluation.eye, places),
-        skin=_target(evaluation, evaluation.skin, places),
+        eye=_target(evaluation, "eye", places),
+        skin=_target(evaluation, "skin", places),
     )
 
 
-def _target(evaluation: Evaluation, result: TargetResult, places: Floats) -> TargetOverDistance:
-    lines = np.broadcast_to(places[:, None], (len(places), evaluation.lines.count))
-    ratios = ratios_at(evaluation, result, lines)
-    limit = result.criteria.limit_j_m2
+def _target(evaluation: Evaluation, target: str, places: NDArray[np.float64]) -> TargetOverDistance:
+    limits, ratios, worst = over_distances(evaluation, target, places)
     return TargetOverDistance(
         criteria=[
             CriterionOverDistance(
                 criterion=k,
-                limit_j_m2=[float(limit[k])] * len(places),
-                exposure_j_m2=(ratios[:, k] * limit[k]).tolist(),
+                limit_j_m2=limits[:, k].tolist(),
+                exposure_j_m2=(ratios[:, k] * limits[:, k]).tolist(),
                 hazard_ratio=ratios[:, k].tolist(),
             )
-            for k in range(len(limit))
+            for k in range(limits.shape[1])
         ],
-        hazard_ratio=sums_of_lines(evaluation, result, ratios).tolist(),
+        hazard_ratio=worst.tolist(),
     )

@@ -5,6 +5,7 @@ from __future__ import annotations
 from typing import Annotated, Literal
 
 from pydantic import (
+    AfterValidator,
     ConfigDict,
     Field,
     field_validator,
@@ -13,7 +14,7 @@ from pydantic import (
 
 from service.assess.marking import parse_marking
 from service.contract.beam import AnyBeam
-from service.contract.bench import Element
+from service.contract.bench import Element, last_is_last
 from service.contract.strict import Strict
 
 __all__ = [
@@ -148,6 +149,9 @@ class Viewing(Strict):
         description="Visibility; without it the air is clear (stricter).",
     )
     aid: Aid | None = Field(None, description="Binoculars, a telescope or a loupe between beam and eye.")
+    outdoors: bool | None = Field(
+        None, description="Ask how far the beam disturbs pilots (visual interference with aircraft)."
+    )
     over_distance: OverDistance | None = Field(None, description="Ask for exposure and ratio over distance.")
 
 
@@ -238,7 +242,7 @@ class EvaluationRequest(Strict):
         "conventional duration for an unintended exposure at its wavelength.",
     )
     lines: list[Line] = Field(min_length=1, max_length=MAX_LINES, description="1 to 16 emission lines.")
-    bench: list[Element] = Field(
+    bench: Annotated[list[Element], AfterValidator(last_is_last)] = Field(
         default_factory=list,
         max_length=MAX_ELEMENTS,
         description="What the light meets, in order. Distances are measured from the last element.",
