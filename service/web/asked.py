@@ -32,8 +32,13 @@ def request_of(form: Form) -> EvaluationRequest:
     try:
         request = EvaluationRequest.model_validate(body)
     except ValidationError as error:
-        for found in (_as_form_error(e, form) for e in invalid_request(error).errors):
-            if found.field not in unread:
+        for problem in invalid_request(error).errors:
+            found = _as_form_error(problem, form)
+            # What a whole part lacks is no news where one of its fields could not be read.
+            whole = problem.field.endswith(".emission") or problem.field.count(".") == 1
+            number = found.field.rpartition("-")[2]
+            told = whole and any(name.endswith(f"-{number}") for name in unread)
+            if found.field not in unread and not told:
                 unread.add(found.field)
                 errors.append(found)
     if errors or request is None:
@@ -74,6 +79,8 @@ class _Reader:
         viewing: dict[str, Any] = {
             name: self.number(name) for name in ("distance_m", "visibility_km") if name in form.values
         }
+        if "outdoors" in form.values:
+            viewing["outdoors"] = True
         if any(name in form.values for name in AID):
             viewing["aid"] = self.leaves(AID, "aid_")
         self.look()
@@ -183,7 +190,8 @@ class _Reader:
             self.refuse(field_name("bench_kind", k), "an element", MISSING, "Choose what the light meets.")
             return {"element": "space", "length_m": 0.0}
         element = {"element": kind, **self.leaves(ELEMENTS[kind][1], "bench_", k)}
-        return element | ({"surfaces": int(element["surfaces"])} if "surfaces" in element else {})
+        whole = {n: int(float(element[n])) for n in ("surfaces", "rows") if _is_whole(element.get(n))}
+        return element | whole
 
     def pair(self, k: int) -> dict[str, Any]:
         """One typed pair of eyewear."""
@@ -203,6 +211,11 @@ class _Reader:
         if "density" in found:
             found["optical_density"] = found.pop("density")
         return {"name": self.form.get(field_name("window_name", k), f"Window {k}"), **found}
+
+
+def _is_whole(value: Any) -> bool:
+    """Whether a choice or a number can be counted with."""
+    return value is not None and float(value).is_integer()
 
 
 #: Names of the form where they are not those of the request.
@@ -228,6 +241,8 @@ def field_of(path: str, form: Form) -> str:
         kind = form.get(field_name("bench_kind", number))
         first = ELEMENTS[kind][1][0] if kind else "bench_kind"
         return field_name(first if leaf in ("bench", "element") else f"bench_{leaf}", number)
+    if parts[0] == "bench":
+        return "elements"
     if parts[0] == "viewing":
         return f"aid_{leaf}" if "aid" in parts and leaf != "aid" else leaf
     if parts[0] == "eyewear":

@@ -64,6 +64,7 @@ FIELDS: dict[str, Field] = {
         "distance",
     ),
     "visibility_km": Field("Visibility", "Outdoors, in haze. Blank: clear air, the stricter.", "visibility"),
+    "outdoors": Field("Airspace", choices=(("1", "outdoors: tell how far it disturbs pilots"),)),
     "aid_objective_mm": Field(
         "Diameter of the objective", "The second figure on binoculars: 7 × 50 has 50 mm.", "width"
     ),
@@ -136,6 +137,13 @@ FIELDS: dict[str, Field] = {
         "Polarisation", choices=(("unpolarised", "unpolarised or unknown"), ("s", "s"), ("p", "p"))
     ),
     "bench_surfaces": Field("Reflecting surfaces", choices=(("1", "one"), ("2", "both sides of a plate"))),
+    "bench_viewing_deg": Field("Angle of view", "From the normal of the surface; blank: 0.", "turn"),
+    "bench_angle_deg": Field("Full angle of the sweep", "", "turn"),
+    "bench_sweeps_hz": Field("Sweeps a second", "To and fro counted apart.", "rate"),
+    "bench_motion": Field("Motion", choices=(("even", "even"), ("sinusoidal", "swinging, slow at the ends"))),
+    "bench_rows": Field("Rows", "A raster only; blank: a line.", "bare"),
+    "bench_height_deg": Field("Height of the raster", "A raster only.", "turn"),
+    "elements": Field("What the light meets"),
     "protection": Field("Protection at hand"),
     "pair_name": Field("Name of the pair"),
     "pair_ranges": Field("Ranges", "As marked: 780-1100: OD 7 | D LB6 + IR LB7; 532: OD 5", limit=2000),
@@ -148,7 +156,8 @@ FIELDS: dict[str, Field] = {
 }
 
 AID = ("aid_objective_mm", "aid_magnification", "aid_transmittance")
-TOP = ("label", "place", "asked_by", "rules", "look", "exposure_s", "distance_m", "visibility_km", *AID)
+LOOK = ("look", "exposure_s", "distance_m", "visibility_km", "outdoors")
+TOP = ("label", "place", "asked_by", "rules", *LOOK, *AID)
 #: Fields that belong to a kind of emission, of beam, of element; others of the same sort must be blank.
 EMISSION = {
     "cw": ("power_w",),
@@ -187,6 +196,11 @@ ELEMENTS: dict[str, tuple[str, tuple[str, ...]]] = {
         ),
     ),
     "window": ("Window or filter", ("bench_transmittance",)),
+    "diffuser": ("Diffuser", ("bench_reflectance", "bench_viewing_deg")),
+    "scanner": (
+        "Scanner",
+        ("bench_angle_deg", "bench_sweeps_hz", "bench_motion", "bench_rows", "bench_height_deg"),
+    ),
 }
 LINE_FIELDS = (
     "wavelength_nm",

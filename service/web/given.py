@@ -41,7 +41,7 @@ def setup_given(form: Form, titles: dict[str, str]) -> list[tuple[str, Rows]]:
     exposure = [(FIELDS["exposure_s"].label, duration)]
     exposure += [
         (FIELDS[n].label, _value(form, n) or BLANK[n])
-        for n in ("distance_m", "visibility_km", *AID)
+        for n in ("distance_m", "visibility_km", "outdoors", *AID)
         if n in BLANK or form.get(n)
     ]
     parts.append(("Exposure", exposure))

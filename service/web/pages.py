@@ -101,11 +101,16 @@ def _of_result(form: Form, sides: list[EvaluationResult], result: EvaluationResu
     }
 
 
-def _answered(form: Form) -> dict[str, Any]:
-    """Values for a page with an answer. Raises InvalidRequest."""
+def _answered(form: Form, *, quick: bool = False) -> dict[str, Any]:
+    """Values for a page with an answer. Raises InvalidRequest.
+
+    A lit spot or a sweep takes many evaluations; `quick` then leaves the other rule sets out.
+    """
     request = request_of(form)
     result = answer(request)
     others = [k for k in rule_sets() if k != request.rules]
+    if quick and (result.diffuse or result.scan):
+        others = []
     sides = [result, *(answer(request.model_copy(update={"rules": key})) for key in others)]
     return _of_result(form, sides, result)
 
@@ -152,7 +157,7 @@ async def live(request: Request) -> Response:
     typed = read_address(request.url.query)
     form = typed.canonical()
     try:
-        values = _with_errors([]) | _answered(form)
+        values = _with_errors([]) | _answered(form, quick=True)
     except InvalidRequest as problem:
         values = _with_errors(problem.errors)
         # A form that is only not yet filled is no mistake: its address shows it for editing.

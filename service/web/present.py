@@ -7,6 +7,7 @@ from typing import Any
 
 from service.assess.steps import limit_expression
 from service.contract.evaluation import EvaluationResult
+from service.contract.moving import DiffuseAnswer
 from service.contract.result import Criterion, SumOfLines, TargetAnswer, WorkingStep
 from service.rules.eyewear import ScaleRow
 from service.rules.limit_set import LimitSet
@@ -18,6 +19,7 @@ from service.web.units import base_unit
 __all__ = [
     "KNOWN",
     "RULE_NAMES",
+    "all_day",
     "band",
     "class_sentence",
     "documents",
@@ -51,10 +53,12 @@ RULE_NAMES = {
 }
 QUANTITY_UNITS = {"H": "J/m²", "E": "W/m²", "Q": "J", "P": "W"}
 KNOWN = {"read": "read", "memory": "from memory", "computed": "computed", "entered": "entered"}
+#: What is looked at, and what meets bare skin: a beam, a lit spot, a sweep, a sweep that has stopped.
 LOOKING = {
-    "eye": "Looking into the beam",
-    "skin": "The beam on bare skin",
-    "aided": "Looking into the beam through the optics entered",
+    "beam": ("Looking into the beam", "The beam on bare skin"),
+    "spot": ("Looking at the lit spot", "The scattered light on bare skin"),
+    "sweep": ("Looking into the sweeping beam", "The sweeping beam on bare skin"),
+    "stopped": ("Looking into the beam when the sweep stops", "The beam on bare skin when the sweep stops"),
 }
 TIMES = ((1.0, "s", 1.0), (1e-3, "ms", 1e3), (1e-6, "µs", 1e6), (1e-9, "ns", 1e9), (1e-12, "ps", 1e12))
 
@@ -105,8 +109,10 @@ def governing_sum(target: TargetAnswer) -> SumOfLines | None:
     return largest if largest and len(largest.lines) > 1 and largest.hazard_ratio >= own else None
 
 
-def headline(name: str, target: TargetAnswer, result: EvaluationResult, words: str) -> str:
-    """One sentence for the eye, the skin or the eye behind optics; `words` name the duration."""
+def headline(
+    name: str, target: TargetAnswer, result: EvaluationResult, words: str, *, stopped: bool = False
+) -> str:
+    """One sentence for the eye, the skin or the eye behind optics (aided); `words` name the duration."""
     exposures = {d.exposure_s for d in result.durations}
     rule = governing(target).rule
     one = exposures.pop() if len(exposures) == 1 else None
@@ -118,15 +124,29 @@ def headline(name: str, target: TargetAnswer, result: EvaluationResult, words: s
         time = " for a pulse"
     elif rule == "train":
         time = f" for the pulse train{f' within {seconds}' if seconds else ''}"
-    looking = LOOKING[name]
+    kind = "stopped" if stopped else "spot" if result.diffuse else "sweep" if result.scan else "beam"
+    looking = LOOKING[kind][name == "skin"]
+    if name == "aided":
+        looking += " through the optics entered"
     if target.hazard_zone_m is None:
         return f"{looking} exceeds no limit at any distance{time}."
     near, far = target.hazard_zone_m
     if far is None:
-        return f"{looking} is unsafe at every distance{time}: the beam does not spread."
+        why = ": the beam does not spread" if kind in ("beam", "stopped") else ""
+        return f"{looking} is unsafe at every distance{time}{why}."
     if near > 0.0:
         return f"{looking} is unsafe between {shown_down(near)} m and {shown_up(far)} m{time}."
     return f"{looking} is unsafe out to {shown_up(far)} m{time}."
+
+
+def all_day(spot: DiffuseAnswer) -> str:
+    """Whether one may look at a lit spot for a working day."""
+    day = f"a working day, {plain(spot.day_s)} s"
+    if spot.safe_all_day:
+        return f"The lit spot may be looked at for {day}, from {plain(spot.nearest_m)} m on."
+    if spot.day_hazard_distance_m is None:
+        return f"Looking at the lit spot for {day}, is unsafe at every distance."
+    return f"Looking at the lit spot for {day}, is unsafe out to {shown_up(spot.day_hazard_distance_m)} m."
 
 
 def spoken(result: EvaluationResult, words: str) -> str:
@@ -206,7 +226,7 @@ def element(entry: dict[str, Any]) -> str:
 def viewing(entry: dict[str, Any]) -> str:
     """Who looks through what, in words; blank for the naked eye in clear air."""
     aid, haze = entry.get("aid"), entry.get("visibility_km")
-    words = []
+    words = ["The beam goes outdoors."] if entry.get("outdoors") else []
     if aid:
         words.append(
             f"Looked at through optics of magnification {plain(aid['magnification'])}, objective "

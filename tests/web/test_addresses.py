@@ -11,7 +11,7 @@ from tests.web.pages import CW, HTML, address, as_request, page
 from tests.web.shape import assert_problem
 
 #: Elements of the bench that can be added, in the order of the buttons.
-ELEMENTS = ("space", "lens", "mirror", "expander", "reflector", "window")
+ELEMENTS = ("space", "lens", "mirror", "expander", "reflector", "window", "diffuser", "scanner")
 ONE = (
     "/evaluate?v=1&label=Bench%204%20alignment%20beam&exposure_s=0.25&lines=1&wavelength_nm-1=532&mode-1=cw"
     "&power_w-1=0.1&diameter_mm-1=2&divergence_mrad-1=1"

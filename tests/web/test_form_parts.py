@@ -229,3 +229,63 @@ def test_who_asks_and_where_stand_on_the_sheet_and_change_no_figure(client: Clie
     assert "Where it stands: Room 12" in given
     assert "Who asks: A. Nobody" in given
     assert json.loads(root.one("pre").text) == body(client, CW)
+
+
+SCANNER = {
+    "elements": "1", "bench_kind-1": "scanner", "bench_angle_deg-1": "30", "bench_sweeps_hz-1": "100",
+    "outdoors": "1",
+}  # fmt: skip
+
+
+def test_a_sweep_outdoors(client: Client) -> None:
+    """The sweep, the beam standing still and the zones of the airspace, as the JSON answer has them."""
+    shown = body(client, {**CW, **SCANNER})
+    assert shown["viewing"] == {"outdoors": True}
+    answer = client.evaluate(shown)
+    root = page(client, address({**CW, **SCANNER}))
+    values = [
+        d.attributes["value"] for d in root.one("section", aria_labelledby="airspace-title").all("data")
+    ]
+    for zone in answer["airspace"]["zones"]:
+        assert repr(zone["level_w_m2"]) in values
+    sweep = root.one("section", aria_labelledby="sweep-title").text
+    assert "stopped" in sweep
+    stopped = answer["scan"]["failure_eye"]["hazard_distance_m"]
+    assert repr(stopped) in [d.attributes["value"] for d in root.all("data")]
+    assert "Looking into the beam when the sweep stops is unsafe out to" in root.text
+
+
+def test_a_raster_has_whole_rows(client: Client) -> None:
+    raster = {**SCANNER, "bench_rows-1": "20", "bench_height_deg-1": "5"}
+    assert body(client, {**CW, **raster})["bench"][0]["rows"] == 20
+    for wrong in ("2.5", "0", "1,000"):
+        root = page(client, address({**CW, **raster, "bench_rows-1": wrong}), 422)
+        links = [a.attributes["href"] for a in root.one("section", role="alert").all("a")]
+        assert links == ["#bench_rows-1"]
+
+
+def test_a_lit_spot_is_looked_at(client: Client) -> None:
+    spot = {
+        "elements": "1",
+        "bench_kind-1": "diffuser",
+        "bench_reflectance-1": "80",
+        "bench_reflectance-1.in": "pc",
+    }
+    root = page(client, address({**CW, **spot}))
+    assert "Looking at the lit spot" in root.text
+    answer = client.evaluate(json.loads(root.one("pre").text))
+    assert answer["inputs"]["bench"][0]["reflectance"] == 0.8
+    ratio = repr(answer["diffuse"]["day_hazard_ratio"])
+    assert ratio in [
+        d.attributes["value"] for d in root.one("section", aria_labelledby="spot-title").all("data")
+    ]
+
+
+def test_nothing_stands_behind_a_diffuser(client: Client) -> None:
+    behind = {
+        "elements": "2", "bench_kind-1": "diffuser", "bench_kind-2": "window", "bench_transmittance-2": "0.5",
+    }  # fmt: skip
+    root = page(client, address({**CW, **behind}), 422)
+    alert = root.one("section", role="alert")
+    assert [a.attributes["href"] for a in alert.all("a")] == ["#elements"]
+    assert "last element" in alert.text

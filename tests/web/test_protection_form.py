@@ -93,7 +93,8 @@ def test_the_blank_form_offers_the_shelf_and_buttons(client: Client) -> None:
         (label,) = (e for e in root.all("label") if pair["name"] in e.text)
         assert "invented" in label.text
         assert label.all("input") == [box]
-    assert len(root.all("input", type="checkbox")) == len(SHELF)
+    boxes = [b.attributes["name"] for b in root.all("input", type="checkbox")]
+    assert boxes == ["outdoors", *(f"shelf-{key}" for key in SHELF)]
     assert [b.attributes["value"] for b in root.all("button", name="change")] == [
         "copy-line-1", "add-line", *(f"add-element-{e}" for e in ELEMENTS), "add-pair", "add-window",
     ]  # fmt: skip
