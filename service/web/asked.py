@@ -2,17 +2,19 @@
 
 from __future__ import annotations
 
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 from pydantic import ValidationError
 
 from service.contract.problem import FieldError, InvalidRequest, invalid_request
 from service.contract.request import EvaluationRequest
 from service.web.fields import AID, BEAM, ELEMENTS, EMISSION, FIELDS, PARTS, field_name
-from service.web.form import Form
 from service.web.looks import OTHER, looks
 from service.web.numbers import NotANumber, shown_up
 from service.web.shelf import BadRanges, parse_ranges, shelf
+
+if TYPE_CHECKING:
+    from service.web.form import Form
 
 __all__ = ["MISSING", "field_of", "request_of", "third"]
 

@@ -14,7 +14,6 @@ from starlette.responses import Response
 from service.contract.answer import answer
 from service.contract.evaluation import EvaluationResult
 from service.contract.problem import UNITS
-from service.web.asked import request_of
 from service.web.form import read_address
 
 __all__ = ["csv_text", "router"]
@@ -59,7 +58,7 @@ def _download(name: str) -> dict[str, str]:
 @router.get("/evaluate.json")
 async def as_json(request: Request) -> Response:
     """The JSON answer to the form of an address."""
-    result = answer(request_of(read_address(request.url.query)))
+    result = answer(read_address(request.url.query).request())
     text = result.model_dump_json(indent=2)
     return Response(text, media_type="application/json", headers=_download("evaluation.json"))
 
@@ -67,5 +66,5 @@ async def as_json(request: Request) -> Response:
 @router.get("/evaluate.csv")
 async def as_csv(request: Request) -> Response:
     """Inputs and results of the form of an address as CSV."""
-    text = csv_text(answer(request_of(read_address(request.url.query))))
+    text = csv_text(answer(read_address(request.url.query).request()))
     return Response(text, media_type="text/csv; charset=utf-8", headers=_download("evaluation.csv"))

@@ -14,6 +14,8 @@ from dataclasses import dataclass, field
 from urllib.parse import parse_qsl, quote, urlencode
 
 from service.contract.problem import FieldError, Problem
+from service.contract.request import EvaluationRequest
+from service.web.asked import request_of
 from service.web.fields import ADDRESS_VERSION, ELEMENTS, FIELDS, KINDS, PARTS, TOP, field_name, split_name
 from service.web.looks import OTHER, USUAL, looks
 from service.web.numbers import NotANumber, parse_number, plain
@@ -255,6 +257,10 @@ class Form:
         if unit and base.number and unit != base_unit(base.family).key:
             found.append((unit_name(name), unit))
         return found
+
+    def request(self) -> EvaluationRequest:
+        """The request that the form stands for. Raises InvalidRequest with the names of the form's fields."""
+        return request_of(self)
 
     def number(self, name: str) -> float | None:
         """A typed number in the unit of the field's name; None where blank. Raises NotANumber."""

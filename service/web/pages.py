@@ -18,7 +18,7 @@ from service.files import DATA
 from service.rules.materials import materials
 from service.rules.tables import read_toml
 from service.web import present
-from service.web.asked import MISSING, field_of, request_of, third
+from service.web.asked import MISSING, field_of, third
 from service.web.fields import ADDRESS_VERSION, ELEMENTS, FIELDS, PARTS, label_of
 from service.web.form import Form, read_address
 from service.web.given import setup_given
@@ -106,7 +106,7 @@ def _answered(form: Form, *, quick: bool = False) -> dict[str, Any]:
 
     A lit spot or a sweep takes many evaluations; `quick` then leaves the other rule sets out.
     """
-    request = request_of(form)
+    request = form.request()
     result = answer(request)
     others = [k for k in rule_sets() if k != request.rules]
     if quick and (result.diffuse or result.scan):
