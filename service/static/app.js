@@ -98,6 +98,7 @@
 
   if (form && answer) {
     settle();
+    document.querySelector(".side > .summary")?.focus();
     form.addEventListener("input", changed);
     form.addEventListener("submit", () => { clearTimeout(timer); running?.abort(); });
     addEventListener("popstate", () => { if (location.pathname + location.search !== here) location.reload(); });
