@@ -128,7 +128,7 @@ async def blank(request: Request) -> Response:
 
 
 @router.get("/evaluate")
-async def evaluate_page(request: Request) -> Response:
+def evaluate_page(request: Request) -> Response:
     """The form with its answer. A form not in canonical order redirects to its one address."""
     if not request.url.query:
         return RedirectResponse("/", 303)
@@ -147,7 +147,7 @@ async def evaluate_page(request: Request) -> Response:
 
 
 @router.get("/live")
-async def live(request: Request) -> Response:
+def live(request: Request) -> Response:
     """The answer alone, for a page that refreshes while somebody types.
 
     JSON with the one `address` of the form, the `title` of the page and its heading (`named`), the

@@ -14,7 +14,7 @@ from tests.web.markup import parse
 from tests.web.pages import CW, HTML
 
 EXAMPLES = settings(
-    max_examples=150,
+    max_examples=80,
     deadline=None,
     derandomize=True,
     suppress_health_check=[HealthCheck.function_scoped_fixture],
@@ -96,7 +96,7 @@ def good_forms(draw: st.DrawFn) -> dict[str, str]:
     return fields
 
 
-@settings(EXAMPLES, max_examples=15)
+@settings(EXAMPLES, max_examples=8)
 @given(good_forms())
 def test_every_good_form_is_answered(client: Client, fields: dict[str, str]) -> None:
     url = f"/evaluate?{urlencode({'v': '1', **fields})}"
