@@ -8,7 +8,7 @@ from pydantic import ValidationError
 
 from service.contract.problem import FieldError, InvalidRequest, invalid_request
 from service.contract.request import EvaluationRequest
-from service.web.fields import AID, BEAM, ELEMENTS, EMISSION, FIELDS, PARTS, field_name
+from service.web.fields import AID, BEAM, ELEMENTS, EMISSION, FIELDS, PARTS, TEXT, field_name
 from service.web.looks import OTHER, looks
 from service.web.numbers import NotANumber, shown_up
 from service.web.shelf import BadRanges, parse_ranges, shelf
@@ -87,8 +87,7 @@ class _Reader:
             viewing["aid"] = self.leaves(AID, "aid_")
         self.look()
         parts = {
-            "label": form.get("label"),
-            "rules": form.get("rules"),
+            **{name: form.get(name) for name in TEXT},
             "exposure_s": self.number("exposure_s"),
             "viewing": {n: v for n, v in viewing.items() if v is not None},
             "bench": [self.element(k + 1) for k in range(form.counts["elements"])],

@@ -14,7 +14,9 @@ __all__ = [
     "EMISSION",
     "FIELDS",
     "KINDS",
+    "LINE_FIELDS",
     "PARTS",
+    "TEXT",
     "TOP",
     "Field",
     "Part",
@@ -156,8 +158,10 @@ FIELDS: dict[str, Field] = {
 }
 
 AID = ("aid_objective_mm", "aid_magnification", "aid_transmittance")
+#: Fields that the request takes as they stand.
+TEXT = ("label", "rules")
 LOOK = ("look", "exposure_s", "distance_m", "visibility_km", "outdoors")
-TOP = ("label", "place", "asked_by", "rules", *LOOK, *AID)
+TOP = ("label", "place", "asked_by", *TEXT[1:], *LOOK, *AID)
 #: Fields that belong to a kind of emission, of beam, of element; others of the same sort must be blank.
 EMISSION = {
     "cw": ("power_w",),

@@ -6,7 +6,7 @@ from typing import Any
 
 from service.contract.problem import Problem
 from service.contract.request import EvaluationRequest
-from service.web.fields import AID, BEAM, ELEMENTS, EMISSION, FIELDS, PARTS, field_name
+from service.web.fields import AID, BEAM, ELEMENTS, EMISSION, FIELDS, PARTS, TEXT, field_name
 from service.web.form import Form, read_address
 from service.web.numbers import plain
 
@@ -20,7 +20,7 @@ def form_of(request: EvaluationRequest) -> Form | None:
     """The form that stands for just this request; None where the form cannot hold all of it."""
     body = request.model_dump(mode="json", exclude_none=True)
     viewing = body["viewing"]
-    values = _text({n: body.get(n) for n in ("label", "rules", "exposure_s")})
+    values = _text({n: body.get(n) for n in (*TEXT, "exposure_s")})
     values |= _text({n: viewing.get(n) for n in ("distance_m", "visibility_km")})
     values |= _text({n: viewing.get("aid", {}).get(n.removeprefix("aid_")) for n in AID})
     if viewing.get("outdoors"):
