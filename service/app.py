@@ -18,7 +18,7 @@ from service.rules.eyewear import eyewear_tables
 from service.rules.materials import materials
 from service.settings import Settings
 from service.sign.tables import sign_tables
-from service.web import api, bulk, health, metrics, pages, report, rules_pages, sign, static, sweep
+from service.web import api, bulk, exports, health, metrics, pages, report, rules_pages, sign, static, sweep
 from service.web.headers import Envelope
 from service.web.openapi import describe
 from service.web.problems import PlainProblem, problem_response
@@ -45,6 +45,7 @@ def create_app(settings: Settings | None = None) -> FastAPI:
     for router in (
         api.router,
         bulk.router,
+        exports.router,
         health.router,
         metrics.router,
         pages.router,

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from typing import Any, TypeVar
+from typing import TypeVar
 
 from pydantic import BaseModel
 from starlette.requests import Request
@@ -11,7 +11,7 @@ from service.contract.problem import BodyTooLarge, UnsupportedMedia
 from service.contract.reading import model_of, read_json
 from service.contract.request import EvaluationRequest
 
-__all__ = ["read_data", "read_model", "read_request"]
+__all__ = ["read_model", "read_request"]
 
 Read = TypeVar("Read", bound=BaseModel)
 
@@ -31,11 +31,6 @@ async def _read_body(request: Request) -> bytes:
     return b"".join(parts)
 
 
-async def read_data(request: Request) -> Any:
-    """The JSON in the body. Raises a Problem where there is none."""
-    return read_json(await _read_body(request))
-
-
 async def read_request(request: Request) -> EvaluationRequest:
     """The evaluation request in the body. Raises a Problem that names what is wrong."""
     return await read_model(request, EvaluationRequest)
@@ -43,4 +38,4 @@ async def read_request(request: Request) -> EvaluationRequest:
 
 async def read_model(request: Request, model: type[Read]) -> Read:
     """The request of some kind in the body. Raises a Problem that names what is wrong."""
-    return model_of(model, await read_data(request))
+    return model_of(model, read_json(await _read_body(request)))

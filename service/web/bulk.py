@@ -13,7 +13,8 @@ from starlette.responses import StreamingResponse
 from service.bulk.records import DETAILS, Detail, Records, body_lines
 from service.contract.problem import FieldError, InvalidRequest, UnsupportedMedia
 from service.contract.reading import array_items
-from service.web.encoding import gzipped, read_large_body, takes_gzip
+from service.web.encoding import gzipped, read_large_body
+from service.web.packed import takes_gzip
 
 __all__ = ["LINES", "NDJSON", "router"]
 

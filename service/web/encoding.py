@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import re
 import zlib
 from collections.abc import Iterator
 
@@ -10,12 +9,11 @@ from starlette.requests import Request
 
 from service.contract.problem import BodyTooLarge, MalformedBody, UnsupportedMedia
 
-__all__ = ["gzipped", "read_large_body", "takes_gzip"]
+__all__ = ["gzipped", "read_large_body"]
 
 GZIP = 16 + zlib.MAX_WBITS
 #: Fast rather than small: the lines of an answer are much alike.
 LEVEL = 1
-NOT_WANTED = re.compile(r"q *= *0(\.0*)?")
 
 
 async def read_large_body(request: Request, limit: int) -> bytearray:
@@ -52,15 +50,6 @@ def _unpack(unpacker: zlib._Decompress, piece: bytes, body: bytearray, limit: in
     except zlib.error:
         raise MalformedBody("the body is no gzip stream") from None
     return unpacker
-
-
-def takes_gzip(request: Request) -> bool:
-    """Whether the client takes an answer in gzip."""
-    for part in request.headers.get("accept-encoding", "").split(","):
-        name, *parameters = (p.strip().lower() for p in part.split(";"))
-        if name in ("gzip", "*"):
-            return not any(NOT_WANTED.fullmatch(p) for p in parameters)
-    return False
 
 
 def gzipped(pieces: Iterator[bytes]) -> Iterator[bytes]:

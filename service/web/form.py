@@ -1,37 +1,34 @@
-"""The form: its fields, its address and its way to a request.
+"""The form: what stands in its fields, and its address.
 
 The address holds every value of the form and nothing else, in one order, without blanks. It
 carries a version; an unknown, repeated or outdated parameter is refused, never filled in.
+A value in another unit than that of the field's name has the unit beside it: ``power_w-1=5&power_w-1.in=mW``.
 """
 
 from __future__ import annotations
 
+import re
 from collections.abc import Sequence
+from contextlib import suppress
 from dataclasses import dataclass, field
-from typing import Any
-from urllib.parse import quote, urlencode
+from urllib.parse import parse_qsl, quote, urlencode
 
-from pydantic import ValidationError
-
-from service.contract.problem import FieldError, InvalidRequest, Problem, invalid_request
+from service.contract.problem import FieldError, Problem
 from service.contract.request import EvaluationRequest
-from service.web.fields import (
-    ADDRESS_VERSION,
-    BEAM_NUMBERS,
-    CHANGES,
-    CHOICES,
-    EMISSION,
-    EMISSION_NUMBERS,
-    MODE_NAMES,
-    PARTS,
-    TOP_NUMBERS,
-    TOP_TEXT,
-    field_name,
-)
+from service.web.asked import request_of
+from service.web.fields import ADDRESS_VERSION, ELEMENTS, FIELDS, KINDS, PARTS, TOP, field_name, split_name
+from service.web.looks import OTHER, USUAL, looks
 from service.web.numbers import NotANumber, parse_number, plain
-from service.web.shelf import BadRanges, parse_ranges, shelf
+from service.web.shelf import shelf
+from service.web.units import FAMILIES, base_unit, convert, echo
 
-__all__ = ["BadAddress", "Form"]
+__all__ = ["BadAddress", "Form", "read_address", "unit_name"]
+
+#: More than a form with every line, element, pair and window can send.
+MAX_PARAMETERS = 2000
+
+#: What the buttons of the form ask for: add-line, add-element-lens, copy-line-2, remove-pair-1, up-element-3.
+CHANGE = re.compile(r"(add|copy|remove|up|down)-([a-z]+)(?:-([1-9][0-9]?|[a-z]+))?")
 
 
 class BadAddress(Problem):
@@ -53,26 +50,55 @@ def _refuse(
     return BadAddress(f"{name[:100]}: {message}", [error])
 
 
+def address_items(query: str) -> list[tuple[str, str]]:
+    """Names and values of the query of an address. Raises BadAddress where there are too many."""
+    try:
+        return parse_qsl(query, keep_blank_values=True, max_num_fields=MAX_PARAMETERS)
+    except ValueError:
+        raise BadAddress(f"the address has more than {MAX_PARAMETERS} parameters") from None
+
+
+def read_address(query: str) -> Form:
+    """The form of the query of an address. Raises BadAddress."""
+    return Form.read(address_items(query))
+
+
+def unit_name(name: str) -> str:
+    """Parameter that holds the unit of a field."""
+    return f"{name}.in"
+
+
 def _known_fields(counts: dict[str, int]) -> set[str]:
-    """Every field of a form with so many lines, pairs and windows."""
+    """Every field of a form with so many lines, elements, pairs and windows."""
     repeated = {
-        field_name(n, k + 1)
-        for part, (fields, _, _, _) in PARTS.items()
-        for n in fields
-        for k in range(counts[part])
+        field_name(n, k + 1) for part, spec in PARTS.items() for n in spec.fields for k in range(counts[part])
     }
-    return {*TOP_TEXT, *TOP_NUMBERS} | {f"shelf-{key}" for key in shelf()} | repeated
+    return {*TOP} | {f"shelf-{key}" for key in shelf()} | repeated
+
+
+def _choices(name: str) -> tuple[str, ...]:
+    """Values that a parameter may have; none where anything may be typed."""
+    base, _ = split_name(name.removesuffix(".in"))
+    if name.startswith("shelf-"):
+        return ("1",)
+    if name.endswith(".in"):
+        return tuple(u.key for u in FAMILIES[FIELDS[base].family])
+    if name == "look":
+        return (USUAL, *looks(), OTHER)
+    return tuple(value for value, _ in FIELDS[base].choices)
 
 
 @dataclass(slots=True)
 class Form:
-    """What stands in the form: text by field name, how many of each part, whether only to edit."""
+    """What stands in the form: text by field name, how many of each part, whether only to edit.
+
+    `anchor` names the part that a button has just added or moved.
+    """
 
     values: dict[str, str] = field(default_factory=dict)
-    counts: dict[str, int] = field(
-        default_factory=lambda: {part: least for part, (_, _, least, _) in PARTS.items()}
-    )
+    counts: dict[str, int] = field(default_factory=lambda: {part: spec.least for part, spec in PARTS.items()})
     edit: bool = False
+    anchor: str = ""
 
     @property
     def lines(self) -> int:
@@ -97,207 +123,166 @@ class Form:
                 "Enter the values in the form anew; the meaning of a field may have changed.",
             )
         counts = {}
-        for part, (_, _, least, most) in PARTS.items():
-            text = given.pop(part, str(least))
-            if not (text.isascii() and text.isdecimal() and least <= int(text[:9]) <= most):
-                raise _refuse(part, text, f"{least} to {most}", f"not a number of {part}")
+        for part, spec in PARTS.items():
+            text = given.pop(part, str(spec.least))
+            if not (text.isascii() and text.isdecimal() and spec.least <= int(text[:9]) <= spec.most):
+                raise _refuse(part, text, f"{spec.least} to {spec.most}", f"not a number of {part}")
             counts[part] = int(text)
         edit, change = given.pop("edit", ""), given.pop("change", "")
-        if edit not in ("", "1") or change not in ("", *CHANGES):
-            raise _refuse("edit" if edit not in ("", "1") else "change", edit or change, "1", "unknown value")
+        if edit not in ("", "1"):
+            raise _refuse("edit", edit, "1", "unknown value")
         known = _known_fields(counts)
         for name, value in given.items():
-            if name not in known:
+            plain_name = name.removesuffix(".in")
+            base, _ = split_name(plain_name)
+            if plain_name not in known or (plain_name != name and base not in FIELDS):
                 raise _refuse(name, value, "a field of the form", "unknown parameter")
-            choices = ("1",) if name.startswith("shelf-") else CHOICES.get(name.rpartition("-")[0])
+            if plain_name != name and not FIELDS[base].number:
+                raise _refuse(name, value, "a field with a unit", "unknown parameter")
+            choices = _choices(name)
             if value and choices and value not in choices:
                 raise _refuse(
                     name, value, ", ".join(choices), "unknown choice", "Choose one of those listed."
                 )
         form = cls({k: v for k, v in given.items() if v}, counts, bool(edit))
-        return form._changed(*CHANGES[change]) if change else form
+        form._refuse_strangers()
+        form._settle_look()
+        return form._changed(change) if change else form
 
-    def _changed(self, part: str, by: int) -> Form:
-        """The form with one of a part more or less, to be edited."""
-        fields, _, least, most = PARTS[part]
-        count = min(max(self.counts[part] + by, least), most)
-        gone = {field_name(n, self.counts[part]) for n in fields} if count < self.counts[part] else set()
-        return Form(
-            {k: v for k, v in self.values.items() if k not in gone}, {**self.counts, part: count}, True
-        )
+    def _refuse_strangers(self) -> None:
+        """An element has the fields of its kind. Raises BadAddress."""
+        for k in range(1, self.counts["elements"] + 1):
+            kind = self.get(field_name("bench_kind", k))
+            own = ("bench_kind", *(ELEMENTS[kind][1] if kind else ()))
+            for full in (field_name(n, k) for n in PARTS["elements"].fields if n not in own):
+                if full in self.values:
+                    allowed = f"a field of {ELEMENTS[kind][0].lower() if kind else 'no element yet'}"
+                    raise _refuse(full, self.values[full], allowed, "this element has no such field")
+
+    def canonical(self) -> Form:
+        """The same form with every number as its address gives it."""
+        texts = dict(parse_qsl(self.query()))
+        return Form({k: texts[k] for k in self.values if k in texts}, self.counts, self.edit)
+
+    def _settle_look(self) -> None:
+        """A duration chosen in words becomes its number; a choice that disagrees with a number stays."""
+        look, typed = self.get("look"), self.get("exposure_s")
+        if look in (USUAL, "") or (look == OTHER and typed):
+            if look != USUAL or not typed:
+                self.values.pop("look", None)
+        elif look != OTHER and typed in ("", look) and not self.get("exposure_s.in"):
+            self.values["exposure_s"] = look
+            del self.values["look"]
+
+    def look(self) -> str:
+        """Which choice of duration is in force."""
+        typed = self.get("exposure_s")
+        if self.get("look"):
+            return self.get("look")
+        if not typed:
+            return USUAL
+        return typed if typed in looks() and "exposure_s.in" not in self.values else OTHER
+
+    def _rows(self, part: str) -> list[dict[str, str]]:
+        """Filled fields of every one of a part, by name without its number; units as well."""
+        names = [n for f in PARTS[part].fields for n in (f, unit_name(f))]
+        full = {n: (n.removesuffix(".in"), ".in" if n.endswith(".in") else "") for n in names}
+        return [
+            {n: v for n in names if (v := self.get(field_name(full[n][0], k + 1) + full[n][1]))}
+            for k in range(self.counts[part])
+        ]
+
+    def _changed(self, change: str) -> Form:
+        """The form after a button that adds, copies, removes or moves one of a part. Raises BadAddress."""
+        match = CHANGE.fullmatch(change)
+        verb, word, which = match.groups("") if match else ("", "", "")
+        part = next((p for p, s in PARTS.items() if s.word == word), "")
+        expected = verb != "add" or (which in KINDS if part == "elements" else which == "")
+        if not part or not expected or (verb != "add" and not which.isdecimal()):
+            raise _refuse("change", change, "add-line, remove-line-1, ...", "unknown change")
+        rows, spec = self._rows(part), PARTS[part]
+        at = len(rows) if verb == "add" else int(which) - 1
+        if verb != "add" and at >= len(rows):
+            raise _refuse("change", change, f"1 to {len(rows)}", f"there is no such {word}")
+        if verb in ("add", "copy") and len(rows) < spec.most:
+            at = at + 1 if verb == "copy" else at
+            rows.insert(at, dict(rows[at - 1]) if verb == "copy" else {"bench_kind": which} if which else {})
+        elif verb == "remove" and len(rows) > spec.least:
+            del rows[at]
+        elif verb in ("up", "down"):
+            to = min(max(at + (1 if verb == "down" else -1), 0), len(rows) - 1)
+            rows.insert(to, rows.pop(at))
+            at = to
+        gone = {
+            name + end for name in _known_fields(self.counts) if split_name(name)[0] in spec.fields
+            for end in ("", ".in")
+        }  # fmt: skip
+        values = {k: v for k, v in self.values.items() if k not in gone}
+        for k, row in enumerate(rows, start=1):
+            for name, value in row.items():
+                stem = name.removesuffix(".in")
+                values[field_name(stem, k) + name.removeprefix(stem)] = value
+        anchor = f"{spec.word}-{at + 1}" if at < len(rows) else spec.place
+        return Form(values, {**self.counts, part: len(rows)}, True, anchor)
 
     def get(self, name: str, default: str = "") -> str:
         """Text of a field."""
         return self.values.get(name, default)
 
+    def text(self, name: str) -> str:
+        """What the box of a field shows: a duration that was chosen in words leaves its box blank."""
+        chosen = name == "exposure_s" and "look" not in self.values and self.look() != OTHER
+        return "" if chosen else self.get(name)
+
     def query(self) -> str:
         """The canonical address: version first, one order, no blanks, numbers as short as can be."""
         items = [("v", ADDRESS_VERSION)]
-        items += [
-            (n, self._canonical(n, n in TOP_NUMBERS)) for n in (*TOP_TEXT, *TOP_NUMBERS) if n in self.values
-        ]
-        for part, (fields, numbers, least, _) in PARTS.items():
-            if part == "lines" or self.counts[part] > least:
+        for name in TOP:
+            items += self._items(name)
+        for part, spec in PARTS.items():
+            if part == "lines" or self.counts[part] > spec.least:
                 items.append((part, str(self.counts[part])))
             for k in range(self.counts[part]):
-                for name in fields:
-                    full = field_name(name, k + 1)
-                    if full in self.values:
-                        items.append((full, self._canonical(full, name in numbers)))
+                for name in spec.fields:
+                    items += self._items(field_name(name, k + 1))
         items += [(f"shelf-{key}", "1") for key in shelf() if f"shelf-{key}" in self.values]
         if self.edit:
             items.append(("edit", "1"))
         return urlencode(items, quote_via=quote)
 
-    def _canonical(self, name: str, number: bool) -> str:
-        if number:
-            try:
-                return plain(parse_number(self.values[name]))
-            except NotANumber:
-                pass
-        return self.values[name]
+    def _items(self, name: str) -> list[tuple[str, str]]:
+        """A field of the address with its unit, as far as they say something."""
+        base = FIELDS[split_name(name)[0]]
+        text, unit = self.get(name), self.get(unit_name(name))
+        found = [(name, text)] if text else []
+        if text and base.number:
+            with suppress(NotANumber):
+                found = [(name, plain(parse_number(text)))]
+        if unit and base.number and unit != base_unit(base.family).key:
+            found.append((unit_name(name), unit))
+        return found
 
     def request(self) -> EvaluationRequest:
-        """The request. Raises InvalidRequest with the names of the form's fields."""
-        errors: list[FieldError] = []
-        body: dict[str, Any] = {"lines": [self._line(k + 1, errors) for k in range(self.lines)]}
-        if "label" in self.values:
-            body["label"] = self.values["label"]
-        if "rules" in self.values:
-            body["rules"] = self.values["rules"]
-        exposure, distance = (self._number(n, errors) for n in TOP_NUMBERS)
-        if exposure is not None:
-            body["exposure_s"] = exposure
-        if distance is not None:
-            body["viewing"] = {"distance_m": distance}
-        pairs = [self._pair(k + 1, errors) for k in range(self.counts["pairs"])]
-        pairs += [pair for key, pair in shelf().items() if f"shelf-{key}" in self.values]
-        windows = [self._window(k + 1, errors) for k in range(self.counts["windows"])]
-        body |= {name: given for name, given in (("eyewear", pairs), ("windows", windows)) if given}
-        unread = {e.field for e in errors}
-        try:
-            request = EvaluationRequest.model_validate(body)
-        except ValidationError as error:
-            for found in (_as_form_error(e) for e in invalid_request(error).errors):
-                if found.field not in unread:
-                    unread.add(found.field)
-                    errors.append(found)
-        if errors:
-            raise InvalidRequest("Some values cannot be used; nothing was computed.", errors)
-        return request
+        """The request that the form stands for. Raises InvalidRequest with the names of the form's fields."""
+        return request_of(self)
 
-    def _number(self, name: str, errors: list[FieldError]) -> float | None:
-        """A typed number, None where blank; what cannot be read joins the errors."""
-        text = self.values.get(name)
-        if text is None:
+    def number(self, name: str) -> float | None:
+        """A typed number in the unit of the field's name; None where blank. Raises NotANumber."""
+        text = self.get(name)
+        if not text:
             return None
+        family = FIELDS[split_name(name)[0]].family
+        return convert(parse_number(text), family, self.get(unit_name(name)))
+
+    def echo(self, name: str) -> str:
+        """What was understood of a number, where it reads otherwise than what was typed."""
+        text, family = self.get(name), FIELDS[split_name(name)[0]].family
         try:
-            return parse_number(text)
-        except NotANumber as error:
-            errors.append(
-                FieldError(
-                    field=name, value=text[:100], allowed="a number", message=str(error), remedy=error.remedy
-                )
-            )
-            return None
+            return echo(parse_number(text), text, family, self.get(unit_name(name))) if text else ""
+        except NotANumber:
+            return ""
 
-    def _line(self, k: int, errors: list[FieldError]) -> dict[str, Any]:
-        mode = self.get(field_name("mode", k), "cw")
-        emission: dict[str, Any] = {"mode": mode}
-        for name in EMISSION_NUMBERS:
-            full = field_name(name, k)
-            if name in EMISSION[mode]:
-                emission[name] = self._number(full, errors)
-            elif full in self.values:
-                errors.append(
-                    FieldError(
-                        field=full,
-                        value=self.values[full][:100],
-                        allowed=f"blank for {MODE_NAMES[mode]}",
-                        message=f"this value does not belong to {MODE_NAMES[mode]}",
-                        remedy="Clear it, or choose the other kind of emission.",
-                    )
-                )
-        diameter, diameter_y, divergence, divergence_y, waist = (
-            self._number(field_name(n, k), errors) for n in BEAM_NUMBERS
-        )
-        beam: dict[str, Any] = {
-            "profile": self.get(field_name("profile", k), "gaussian"),
-            "level": self.get(field_name("level", k), "1/e2"),
-            "diameter_mm": diameter if diameter_y is None or diameter is None else [diameter, diameter_y],
-            "divergence_mrad": divergence
-            if divergence_y is None or divergence is None
-            else [divergence, divergence_y],
-            "waist_m": waist,
-            "diameter_at": self.get(field_name("diameter_at", k), "waist"),
-        }
-        line = {
-            "wavelength_nm": self._number(field_name("wavelength_nm", k), errors),
-            "subtense_mrad": self._number(field_name("subtense_mrad", k), errors),
-            "emission": {n: v for n, v in emission.items() if v is not None},
-            "beam": {n: v for n, v in beam.items() if v is not None},
-        }
-        return {n: v for n, v in line.items() if v is not None}
-
-    def _pair(self, k: int, errors: list[FieldError]) -> dict[str, Any]:
-        """One typed pair of eyewear."""
-        pair: dict[str, Any] = {"name": self.get(field_name("pair_name", k), f"Pair {k}")}
-        full = field_name("pair_ranges", k)
-        try:
-            pair["ranges"] = parse_ranges(self.get(full))
-        except BadRanges as error:
-            allowed = "ranges, for example 780-1100: OD 7 | D LB6 + IR LB7"
-            remedy = "Write it as the example shows."
-            errors.append(
-                FieldError(
-                    field=full, value=self.get(full)[:100], allowed=allowed, message=str(error), remedy=remedy
-                )
-            )
-        light = self._number(field_name("pair_light_percent", k), errors)
-        return pair if light is None else {**pair, "luminous_transmittance": light / 100.0}
-
-    def _window(self, k: int, errors: list[FieldError]) -> dict[str, Any]:
-        """One typed window."""
-        window: dict[str, Any] = {
-            "name": self.get(field_name("window_name", k), f"Window {k}"),
-            "distance_m": self._number(field_name("window_distance_m", k), errors),
-            "optical_density": self._number(field_name("window_density", k), errors),
-        }
-        return {n: v for n, v in window.items() if v is not None}
-
-
-PAIR_NAMES = {"name": "pair_name", "luminous_transmittance": "pair_light_percent"}
-WINDOW_NAMES = {"name": "window_name", "optical_density": "window_density"}
-
-
-def _as_form_error(error: FieldError) -> FieldError:
-    """An error of the request under the name of the form's field."""
-    parts = error.field.split(".")
-    name = error.field
-    if parts[0] == "lines" and len(parts) > 2:
-        leaf = next(p for p in reversed(parts) if not p.isdigit())
-        if parts[-1] == "1" and leaf in ("diameter_mm", "divergence_mrad"):
-            leaf = leaf.replace("_m", "_y_m")
-        if leaf == "emission":
-            leaf = "energy_j"
-        name = field_name(leaf, int(parts[1]) + 1)
-    elif parts[0] == "viewing":
-        name = parts[-1]
-    elif parts[0] == "eyewear" and len(parts) > 1:
-        leaf = {"name": "pair_name", "luminous_transmittance": "pair_light_percent"}.get(
-            parts[-1], "pair_ranges"
-        )
-        name = field_name(leaf, int(parts[1]) + 1)
-    elif parts[0] == "eyewear":
-        name = "protection"
-    elif parts[0] == "windows" and len(parts) > 1:
-        leaf = {"name": "window_name", "optical_density": "window_density"}.get(
-            parts[-1], "window_distance_m"
-        )
-        name = field_name(leaf, int(parts[1]) + 1)
-    allowed = error.allowed.removesuffix(", or a list of two")
-    if name.startswith("pair_light_percent"):
-        allowed = "a number, above 0 to 100 %"
-    message = "a value is needed here" if error.message == "this field is missing" else error.message
-    remedy = "Enter it as the data sheet gives it." if error.remedy == "Add this field." else error.remedy
-    return error.model_copy(update={"field": name, "allowed": allowed, "message": message, "remedy": remedy})
+    def numbers(self) -> list[str]:
+        """Every field of this form that holds a number."""
+        names = _known_fields(self.counts)
+        return sorted(n for n in names if (f := FIELDS.get(split_name(n)[0])) and f.number)

@@ -2,24 +2,20 @@
 
 from __future__ import annotations
 
-from service.contract.problem import UNITS
-from service.web.fields import LABELS, LINE_FIELDS, PAIR_FIELDS, TOP_NUMBERS, WINDOW_FIELDS, field_name
-from service.web.form import Form
-from service.web.numbers import NotANumber, parse_number, plain
+from service.web.asked import third
+from service.web.fields import AID, ELEMENTS, FIELDS, PARTS, field_name, split_name
+from service.web.form import Form, unit_name
+from service.web.looks import looks
 from service.web.shelf import shelf
+from service.web.units import FAMILIES
 
 __all__ = ["setup_given"]
 
-WORDS = {
-    "mode": ("Emission", {"cw": "continuous", "pulse": "single pulse", "train": "pulse train"}),
-    "profile": ("Profile", {"gaussian": "Gaussian", "tophat": "top hat"}),
-    "level": ("Diameter and divergence at", {"1/e2": "1/e² of the peak", "1/e": "1/e of the peak"}),
-    "diameter_at": ("Diameter given at", {"waist": "the waist", "exit": "the exit"}),
-}
-BLANK = {"exposure_s": "usual duration", "distance_m": "not evaluated"}
+Rows = list[tuple[str, str]]
+BLANK = {"distance_m": "not evaluated"}
 
 
-def setup_given(form: Form, titles: dict[str, str]) -> list[tuple[str, list[tuple[str, str]]]]:
+def setup_given(form: Form, titles: dict[str, str]) -> list[tuple[str, Rows]]:
     """Parts of the setup, each with the labels and values of its filled fields.
 
     Parameters
@@ -28,33 +24,53 @@ def setup_given(form: Form, titles: dict[str, str]) -> list[tuple[str, list[tupl
     titles : title of every rule set by id, the default first
     """
     rules = form.get("rules", next(iter(titles)))
-    parts = [("Laser", [("Name", form.get("label", "not named")), ("Rule set", titles.get(rules, rules))])]
+    named = [(FIELDS[n].label, form.get(n)) for n in ("place", "asked_by") if form.get(n)]
+    laser = [("Name", form.get("label", "not named")), *named, ("Rule set", titles.get(rules, rules))]
+    parts: list[tuple[str, Rows]] = [("Laser", laser)]
     for k in range(form.lines):
         name = f"Line {k + 1}" if form.lines > 1 else "Emission and beam"
-        parts.append((name, _filled(form, LINE_FIELDS, k + 1)))
-    parts.append(("Exposure", [(LABELS[n], _value(n, form.get(n)) or BLANK[n]) for n in TOP_NUMBERS]))
-    for part, name, names in (("pairs", "Pair", PAIR_FIELDS), ("windows", "Window", WINDOW_FIELDS)):
-        parts += [(f"{name} {k + 1}", _filled(form, names, k + 1)) for k in range(form.counts[part])]
+        filled = _filled(form, PARTS["lines"].fields, k + 1)
+        label, _, value = third(form, k + 1).partition(": ")
+        parts.append((name, [*filled, (label, value)] if value else filled))
+    for k in range(form.counts["elements"]):
+        kind = form.get(field_name("bench_kind", k + 1))
+        parts.append((f"Element {k + 1}", _filled(form, ("bench_kind", *ELEMENTS[kind][1]), k + 1)))
+    look = form.get("exposure_s")
+    words = f", {looks()[look]}" if form.look() in looks() else ""
+    duration = _value(form, "exposure_s") + words if look else "usual duration"
+    exposure = [(FIELDS["exposure_s"].label, duration)]
+    exposure += [
+        (FIELDS[n].label, _value(form, n) or BLANK[n])
+        for n in ("distance_m", "visibility_km", "outdoors", *AID)
+        if n in BLANK or form.get(n)
+    ]
+    parts.append(("Exposure", exposure))
+    for part, name in (("pairs", "Pair"), ("windows", "Window")):
+        for k in range(form.counts[part]):
+            parts.append((f"{name} {k + 1}", _filled(form, PARTS[part].fields, k + 1)))
     picked = [pair["name"] for key, pair in shelf().items() if form.get(f"shelf-{key}")]
     if picked:
         parts.append(("From the shelf", [("Pair (invented)", name) for name in picked]))
     return parts
 
 
-def _filled(form: Form, names: tuple[str, ...], k: int) -> list[tuple[str, str]]:
+def _filled(form: Form, names: tuple[str, ...], k: int) -> Rows:
     """Label and value of the fields of part k that are not blank."""
-    found = [(n, form.get(field_name(n, k))) for n in names]
-    return [(WORDS[n][0] if n in WORDS else LABELS[n], _value(n, text)) for n, text in found if text]
+    full = [field_name(n, k) for n in names]
+    return [
+        (FIELDS[split_name(n)[0]].label.removeprefix("or "), _value(form, n)) for n in full if form.get(n)
+    ]
 
 
-def _value(name: str, text: str) -> str:
-    """A value in words or with its unit."""
-    if name in WORDS:
-        return WORDS[name][1][text]
-    unit = "%" if name.endswith("_percent") else UNITS.get(name.rpartition("_")[2], "")
-    if not text or not unit:
+def _value(form: Form, name: str) -> str:
+    """A value in words or with its unit, and what was understood where that reads otherwise."""
+    text, spec = form.get(name), FIELDS[split_name(name)[0]]
+    if spec.choices:
+        return dict(spec.choices)[text]
+    if not text or not spec.number:
         return text
-    try:
-        return f"{plain(parse_number(text))} {unit}"
-    except NotANumber:
-        return text
+    units = FAMILIES[spec.family]
+    key = form.get(unit_name(name), units[0].key)
+    shown = next(u.shown for u in units if u.key == key)
+    understood = form.echo(name)
+    return f"{text} {shown}".rstrip() + (f" ({understood})" if understood else "")

@@ -10,7 +10,7 @@ import math
 import re
 from decimal import ROUND_CEILING, ROUND_FLOOR, Context, Decimal
 
-__all__ = ["NotANumber", "parse_number", "plain", "shown_down", "shown_up"]
+__all__ = ["NotANumber", "parse_number", "plain", "shown_down", "shown_up", "typeset"]
 
 NUMBER = re.compile(r"[+-]?(\d+[.,]?\d*|[.,]\d+)(e[+-]?\d+)?", re.IGNORECASE)
 AMBIGUOUS = re.compile(r"[+-]?[1-9]\d{0,2},\d{3}")
@@ -51,6 +51,20 @@ def parse_number(text: str) -> float:
 def plain(value: float) -> str:
     """A number exactly, as short as it can be typed: 0.1, 532, 1e-08."""
     return str(int(value)) if value == int(value) and abs(value) < 1e15 else repr(value)
+
+
+def typeset(value: float) -> str:
+    """A number exactly, as people read it: 0.1, 532, 8 × 10⁻⁹."""
+    text = plain(value)
+    if "e" not in text and 1e-4 <= abs(value) < 1e6:
+        return text
+    if value == 0.0:
+        return "0"
+    exact = Decimal(repr(value)).normalize()
+    exponent = exact.adjusted()
+    mantissa = f"{exact.scaleb(-exponent):f}"
+    power = f"10{str(exponent).translate(SUPERSCRIPT)}"
+    return power if mantissa == "1" else f"{mantissa} × {power}"
 
 
 def _shown(value: float, digits: int, rounding: str) -> str:

@@ -3,33 +3,45 @@
 from __future__ import annotations
 
 from dataclasses import fields
+from typing import Any
 
 from service.assess.steps import limit_expression
 from service.contract.evaluation import EvaluationResult
+from service.contract.moving import DiffuseAnswer
 from service.contract.result import Criterion, SumOfLines, TargetAnswer, WorkingStep
 from service.rules.eyewear import ScaleRow
 from service.rules.limit_set import LimitSet
 from service.rules.tables import FactorRow, LimitRow, RepetitionRow, Row
-from service.web.numbers import plain, shown_down, shown_up
+from service.web.fields import ELEMENTS, FIELDS
+from service.web.numbers import plain, shown_down, shown_up, typeset
+from service.web.units import base_unit
 
 __all__ = [
     "KNOWN",
     "RULE_NAMES",
+    "all_day",
     "band",
+    "class_sentence",
     "documents",
     "duration",
+    "element",
     "exactly",
+    "eyewear_sentence",
     "factor_band",
     "factor_text",
     "governing",
     "governing_sum",
     "headline",
     "limit_text",
+    "reason",
     "repetition_text",
     "rows_of",
     "scale",
     "scale_limit_text",
+    "sources",
+    "spoken",
     "targets_of",
+    "viewing",
     "working_value",
 ]
 
@@ -41,6 +53,13 @@ RULE_NAMES = {
 }
 QUANTITY_UNITS = {"H": "J/m²", "E": "W/m²", "Q": "J", "P": "W"}
 KNOWN = {"read": "read", "memory": "from memory", "computed": "computed", "entered": "entered"}
+#: What is looked at, and what meets bare skin: a beam, a lit spot, a sweep, a sweep that has stopped.
+LOOKING = {
+    "beam": ("Looking into the beam", "The beam on bare skin"),
+    "spot": ("Looking at the lit spot", "The scattered light on bare skin"),
+    "sweep": ("Looking into the sweeping beam", "The sweeping beam on bare skin"),
+    "stopped": ("Looking into the beam when the sweep stops", "The beam on bare skin when the sweep stops"),
+}
 TIMES = ((1.0, "s", 1.0), (1e-3, "ms", 1e3), (1e-6, "µs", 1e6), (1e-9, "ns", 1e9), (1e-12, "ps", 1e12))
 
 
@@ -90,22 +109,151 @@ def governing_sum(target: TargetAnswer) -> SumOfLines | None:
     return largest if largest and len(largest.lines) > 1 and largest.hazard_ratio >= own else None
 
 
-def headline(name: str, target: TargetAnswer, result: EvaluationResult) -> str:
-    """One sentence for the eye or the skin."""
+def headline(
+    name: str, target: TargetAnswer, result: EvaluationResult, words: str, *, stopped: bool = False
+) -> str:
+    """One sentence for the eye, the skin or the eye behind optics (aided); `words` name the duration."""
     exposures = {d.exposure_s for d in result.durations}
-    pulsed = governing(target).rule in ("single", "train")
-    time = f" for {duration(exposures.pop())}" if len(exposures) == 1 and not pulsed else ""
-    if pulsed:
-        time = " for a pulse" if governing(target).rule == "single" else " for the pulse train"
-    looking = "Looking into the beam" if name == "eye" else "The beam on bare skin"
+    rule = governing(target).rule
+    one = exposures.pop() if len(exposures) == 1 else None
+    seconds = "" if one is None else f"{plain(one)} s" if one >= 0.1 else duration(one)
+    time = f" for {words}, {seconds}" if seconds and words else f" for {seconds}" if seconds else ""
+    if not seconds:
+        time = " for the usual exposure of each line"
+    if rule == "single":
+        time = " for a pulse"
+    elif rule == "train":
+        time = f" for the pulse train{f' within {seconds}' if seconds else ''}"
+    kind = "stopped" if stopped else "spot" if result.diffuse else "sweep" if result.scan else "beam"
+    looking = LOOKING[kind][name == "skin"]
+    if name == "aided":
+        looking += " through the optics entered"
     if target.hazard_zone_m is None:
         return f"{looking} exceeds no limit at any distance{time}."
     near, far = target.hazard_zone_m
     if far is None:
-        return f"{looking} is unsafe at every distance{time}: the beam does not spread."
+        why = ": the beam does not spread" if kind in ("beam", "stopped") else ""
+        return f"{looking} is unsafe at every distance{time}{why}."
     if near > 0.0:
         return f"{looking} is unsafe between {shown_down(near)} m and {shown_up(far)} m{time}."
     return f"{looking} is unsafe out to {shown_up(far)} m{time}."
+
+
+def all_day(spot: DiffuseAnswer) -> str:
+    """Whether one may look at a lit spot for a working day."""
+    day = f"a working day, {plain(spot.day_s)} s"
+    if spot.safe_all_day:
+        return f"The lit spot may be looked at for {day}, from {plain(spot.nearest_m)} m on."
+    if spot.day_hazard_distance_m is None:
+        return f"Looking at the lit spot for {day}, is unsafe at every distance."
+    return f"Looking at the lit spot for {day}, is unsafe out to {shown_up(spot.day_hazard_distance_m)} m."
+
+
+def spoken(result: EvaluationResult, words: str) -> str:
+    """The answer in a few words, for a line that is read out while somebody types."""
+    eye, skin = (headline(name, t, result, words) for name, t in (("eye", result.eye), ("skin", result.skin)))
+    return f"{eye} {skin} {class_sentence(result)}"
+
+
+def class_sentence(result: EvaluationResult) -> str:
+    """The class under every scheme in one sentence."""
+    return "; ".join(f"Class {c.hazard_class} after {c.title}" for c in result.classification) + "."
+
+
+def eyewear_sentence(result: EvaluationResult) -> str:
+    """What eyewear needs in one sentence, and whether something at hand will do."""
+    needs = []
+    for line in result.protection.lines:
+        place = line.worst_place
+        if place.optical_density > 0.0:
+            needs.append(f"optical density {shown_up(place.optical_density)} at {line.wavelength_nm:g} nm")
+    needed = (
+        f"Where the beam is worst it needs {' and '.join(needs)}." if needs else "No line needs a filter."
+    )
+    pairs = result.protection.eyewear
+    if not pairs:
+        return needed
+    enough = [p.name for p in sorted(pairs, key=lambda p: p.rank) if p.sufficient]
+    at_hand = f"Sufficient at hand: {', '.join(enough)}." if enough else "No pair at hand will do."
+    return f"{needed} {at_hand}"
+
+
+def reason(target: TargetAnswer, result: EvaluationResult) -> str:
+    """Why the distance is what it is: the criterion that governs, its limit, its aperture and the lead."""
+    c, added = governing(target), governing_sum(target)
+    line = f" of line {c.line + 1}" if len(result.durations) > 1 else ""
+    counted = {
+        "exposure": f"over {duration(c.duration_s)}",
+        "single": f"for a pulse of {duration(c.duration_s)}",
+        "average": f"for each pulse within {duration(c.duration_s)}",
+        "train": f"for each pulse, C_P = {shown_down(c.pulse_factor or 1.0)}",
+    }
+    text = (
+        f"{RULE_NAMES[c.rule].capitalize()}{line} governs ({c.tissue}, {c.effect}): "
+        f"{shown_up(c.hazard_ratio)} times the limit of {shown_down(c.limit_j_m2)} J/m² "
+        f"{counted[c.rule]}, averaged over {shown_down(c.aperture_mm)} mm"
+    )
+    if added:
+        numbers = " + ".join(str(n + 1) for n in added.lines)
+        reached = shown_up(added.hazard_ratio)
+        return f"Lines {numbers} added reach {reached} times the limit. Largest share: {text}."
+    others = [o.hazard_ratio for k, o in enumerate(target.criteria) if k != target.governing]
+    if others and max(others) > 0.0:
+        alike = max(others) >= c.hazard_ratio * (1.0 - 1e-9)
+        reached = "as much" if alike else f"{shown_up(max(others))} times its limit"
+        return f"{text}; the next criterion reaches {reached}."
+    return f"{text}."
+
+
+def element(entry: dict[str, Any]) -> str:
+    """An element of the bench as it was understood, in words: Lens, focal length 50 mm."""
+    name, fields_ = ELEMENTS[entry["element"]]
+    words = [name]
+    for field in fields_:
+        value = entry.get(field.removeprefix("bench_"))
+        spec = FIELDS[field]
+        if value is None:
+            continue
+        shown = dict(spec.choices).get(str(value), str(value))
+        if spec.number:
+            shown = (
+                f"{typeset(value)} {base_unit(spec.family).shown if spec.family != 'share' else ''}".rstrip()
+            )
+        words.append(f"{spec.label.removeprefix('or ').lower()} {shown}")
+    return ", ".join(words)
+
+
+def viewing(entry: dict[str, Any]) -> str:
+    """Who looks through what, in words; blank for the naked eye in clear air."""
+    aid, haze = entry.get("aid"), entry.get("visibility_km")
+    words = ["The beam goes outdoors."] if entry.get("outdoors") else []
+    if aid:
+        words.append(
+            f"Looked at through optics of magnification {plain(aid['magnification'])}, objective "
+            f"{plain(aid['objective_mm'])} mm, transmittance {plain(aid['transmittance'])}."
+        )
+    if haze is not None:
+        words.append(f"Visibility {plain(haze)} km.")
+    return " ".join(words)
+
+
+def sources(result: EvaluationResult) -> list[tuple[str, list[str]]]:
+    """Every document and place that an answer names, and how its values are known."""
+    steps = [*result.working]
+    for scheme in result.classification:
+        steps += scheme.working
+    for line in result.protection.lines:
+        steps += line.worst_place.working
+    named = [
+        (c.source, c.known) for t in (result.eye, result.skin, result.eye_aided) if t for c in t.criteria
+    ]
+    named += [(d.source, d.known) for d in result.durations]
+    named += [(s.source, s.known) for s in steps]
+    found: dict[str, dict[str, None]] = {}
+    for source, known in named:
+        if source:
+            found.setdefault(source, {})[known] = None
+    return [(text, [k for k in KNOWN if k in known]) for text, known in sorted(found.items())]
 
 
 def limit_text(row: LimitRow) -> str:

@@ -8,7 +8,7 @@ from collections.abc import Callable
 from dataclasses import replace
 from datetime import UTC, date, datetime
 from typing import Annotated, Any
-from urllib.parse import parse_qsl, quote
+from urllib.parse import quote
 
 from fastapi import APIRouter, Depends
 from starlette.concurrency import run_in_threadpool
@@ -17,14 +17,13 @@ from starlette.responses import RedirectResponse, Response
 
 from service import __version__
 from service.contract.answer import answer, rule_sets
-from service.contract.enclosed import enclosed
 from service.contract.problem import FieldError, InvalidRequest
 from service.contract.report import PAPERS, ReportRequest, day_of
-from service.web.body import read_data
+from service.web.asked import request_of
+from service.web.body import read_model
 from service.web.chart import chart_of
-from service.web.form import BadAddress, Form
+from service.web.form import BadAddress, Form, address_items
 from service.web.given import setup_given
-from service.web.laser import request_of
 from service.web.report_answer import answer_blocks, setup_blocks, verdict_blocks
 from service.web.report_blocks import Block, printable
 from service.web.report_working import working_blocks
@@ -38,7 +37,6 @@ __all__ = ["report_data", "report_pdf", "router"]
 router = APIRouter()
 
 TEMPLATE = "report/report.typ"
-MAX_PARAMETERS = 2010
 #: Parameters of the address beside those of the evaluation, in order.
 OWN = ("paper", "date")
 SLUG = re.compile(r"[^a-z0-9]+")
@@ -116,7 +114,7 @@ async def _file(label: str, make: Callable[[], bytes]) -> Response:
 
 async def read_report(request: Request) -> ReportRequest:
     """The request in the body. Raises a Problem that names what is wrong."""
-    return enclosed(await read_data(request), ReportRequest)
+    return await read_model(request, ReportRequest)
 
 
 @router.post(
@@ -158,10 +156,7 @@ def _bad(name: str, value: str, allowed: str, message: str) -> BadAddress:
 @router.get("/report", include_in_schema=False)
 async def report_page(request: Request) -> Response:
     """The report of the evaluation at this address; one address holds the day and the paper too."""
-    try:
-        items = parse_qsl(request.url.query, keep_blank_values=True, max_num_fields=MAX_PARAMETERS)
-    except ValueError:
-        raise BadAddress(f"the address has more than {MAX_PARAMETERS} parameters") from None
+    items = address_items(request.url.query)
     rest, own = _own(items)
     if not rest:
         return RedirectResponse("/", 303)

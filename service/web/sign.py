@@ -20,7 +20,7 @@ from service.sign.content import SignContent, SiteDefaults, sign_content
 from service.sign.request import SignOptions, SignRequest
 from service.sign.tables import sign_tables
 from service.web.body import read_model
-from service.web.form import BadAddress, Form
+from service.web.form import Form, address_items
 from service.web.problems import PlainProblem
 from service.web.sign_form import LABELS, SignForm, as_form_errors, choices, split
 from service.web.sign_sheet import SetSign, sign_on_sheet
@@ -30,7 +30,6 @@ from service.web.typeset import MEDIA
 __all__ = ["SignAnswer", "make_sign", "router", "sign_answer"]
 
 router = APIRouter()
-MAX_PARAMETERS = 500
 #: Media types that a client may ask for, by what they make.
 FORMATS = {"application/json": "json", **{media: form for form, media in MEDIA.items()}}
 WILD = {"*/*": "pdf", "application/*": "pdf", "image/*": "svg"}
@@ -132,10 +131,7 @@ async def post_sign(request: Request, body: Annotated[SignRequest, Depends(read_
 
 def _forms(request: Request) -> tuple[Form, SignForm]:
     """The forms of evaluation and sign in an address. Raises BadAddress."""
-    try:
-        items = parse_qsl(request.url.query, keep_blank_values=True, max_num_fields=MAX_PARAMETERS)
-    except ValueError:
-        raise BadAddress(f"the address has more than {MAX_PARAMETERS} parameters") from None
+    items = address_items(request.url.query)
     own, sign = split(items)
     if not own:
         raise NotFound("a sign is made from an evaluation: start from its page")

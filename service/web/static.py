@@ -6,10 +6,12 @@ import hashlib
 from functools import cache
 
 from fastapi import APIRouter
+from starlette.requests import Request
 from starlette.responses import Response
 
 from service.contract.problem import NotFound
 from service.files import STATIC
+from service.web.packed import packed
 
 __all__ = ["router", "static_address"]
 
@@ -35,14 +37,15 @@ def static_address(name: str) -> str:
 
 
 @router.get("/static/{name}")
-async def static_file(name: str) -> Response:
+async def static_file(request: Request, name: str) -> Response:
     """One static file."""
     found = _files().get(name)
     if found is None:
         raise NotFound(f"there is no static file {name!r}")
     content, media, digest = found
     headers = {"cache-control": "public, max-age=31536000, immutable", "etag": f'"{digest}"'}
-    return Response(content, media_type=media, headers=headers)
+    content, how = packed(request, content)
+    return Response(content, media_type=media, headers={**headers, **how})
 
 
 @router.get("/favicon.ico")

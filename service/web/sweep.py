@@ -12,14 +12,13 @@ from starlette.responses import RedirectResponse, Response
 
 from service.contract.answer import cautions, rule_sets
 from service.contract.classification import schemes
-from service.contract.enclosed import enclosed
 from service.contract.problem import FieldError, InvalidRequest
 from service.contract.sweep import MAX_POINTS, SweepAnswer, SweepRequest, sweep
 from service.web import csv_text
-from service.web.body import read_data
-from service.web.form import BadAddress, Form
+from service.web.asked import request_of
+from service.web.body import read_model
+from service.web.form import Form, address_items
 from service.web.given import setup_given
-from service.web.laser import request_of
 from service.web.sweep_chart import LABELS, plots_of, unit_of
 from service.web.sweep_form import choices, filled, query_of, split, sweep_of, value_as_set
 from service.web.sweep_table import class_steps, listed, sweep_csv
@@ -29,12 +28,10 @@ __all__ = ["router"]
 
 router = APIRouter()
 
-MAX_PARAMETERS = 410
-
 
 async def read_sweep(request: Request) -> SweepRequest:
     """The sweep in the body. Raises a Problem that names what is wrong."""
-    return enclosed(await read_data(request), SweepRequest)
+    return await read_model(request, SweepRequest)
 
 
 def _csv(answer: SweepAnswer) -> Response:
@@ -62,10 +59,7 @@ async def post_sweep(body: Annotated[SweepRequest, Depends(read_sweep)], request
 
 def _read(request: Request) -> tuple[Form, dict[str, str]]:
     """The evaluation's form and the sweep's own fields. Raises BadAddress."""
-    try:
-        items = parse_qsl(request.url.query, keep_blank_values=True, max_num_fields=MAX_PARAMETERS)
-    except ValueError:
-        raise BadAddress(f"the address has more than {MAX_PARAMETERS} parameters") from None
+    items = address_items(request.url.query)
     rest, own = split(items)
     return Form.read(rest), own
 

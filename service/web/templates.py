@@ -13,6 +13,7 @@ from service import __version__
 from service.files import TEMPLATES
 from service.web import formula, numbers, present
 from service.web.chart import chart_of
+from service.web.packed import packed
 from service.web.static import static_address
 
 __all__ = ["environment", "page"]
@@ -34,6 +35,7 @@ def environment() -> Environment:
         formula=formula.formula,
         plain=numbers.plain,
         ten=formula.power_of_ten,
+        typeset=numbers.typeset,
         up=numbers.shown_up,
     )
     env.globals.update(chart_of=chart_of, static=static_address, version=__version__, present=present)
@@ -45,4 +47,5 @@ def page(
 ) -> HTMLResponse:
     """A page from a template."""
     text = environment().get_template(name).render(path=request.url.path, **values)
-    return HTMLResponse(text, status, headers={"cache-control": "no-store", **(headers or {})})
+    content, how = packed(request, text.encode())
+    return HTMLResponse(content, status, headers={"cache-control": "no-store", **how, **(headers or {})})

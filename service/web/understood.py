@@ -5,7 +5,7 @@ from __future__ import annotations
 from typing import Any
 
 from service.contract.problem import UNITS
-from service.web.numbers import plain
+from service.web.numbers import typeset
 
 __all__ = ["understood"]
 
@@ -110,20 +110,11 @@ def _name(name: str) -> str:
     return words[:1].upper() + words[1:]
 
 
-def _number(value: float) -> str:
-    """A number exactly, as people read it: 0.1, 532, 8 × 10⁻⁹."""
-    mantissa, _, exponent = plain(value).partition("e")
-    if not exponent:
-        return mantissa
-    power = f"10{str(int(exponent)).translate(SUPERSCRIPT)}"
-    return power if mantissa == "1" else f"{mantissa} × {power}"
-
-
 def _value(name: str, value: Any) -> str:
     if isinstance(value, list):
-        return f"{' × '.join(map(_number, value))} {_unit(name)}".rstrip()
+        return f"{' × '.join(map(typeset, value))} {_unit(name)}".rstrip()
     if isinstance(value, bool):
         return "yes" if value else "no"
     if not isinstance(value, int | float):
         return WORDS.get(name, {}).get(str(value), str(value))
-    return f"{_number(value)} {_unit(name)}".rstrip()
+    return f"{typeset(value)} {_unit(name)}".rstrip()

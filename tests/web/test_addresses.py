@@ -10,6 +10,8 @@ from tests.web.client import Client
 from tests.web.pages import CW, HTML, address, as_request, page
 from tests.web.shape import assert_problem
 
+#: Elements of the bench that can be added, in the order of the buttons.
+ELEMENTS = ("space", "lens", "mirror", "expander", "reflector", "window", "diffuser", "scanner")
 ONE = (
     "/evaluate?v=1&label=Bench%204%20alignment%20beam&exposure_s=0.25&lines=1&wavelength_nm-1=532&mode-1=cw"
     "&power_w-1=0.1&diameter_mm-1=2&divergence_mrad-1=1"
@@ -116,7 +118,7 @@ def test_bad_addresses_are_refused_by_name(client: Client, url: str, name: str) 
 
 
 def test_too_many_parameters_are_refused(client: Client) -> None:
-    response = client.get("/evaluate?v=1" + "&x=1" * 500)
+    response = client.get("/evaluate?v=1" + "&x=1" * 2500)
     assert_problem(response, 400)
 
 
@@ -200,13 +202,14 @@ def test_a_second_axis_alone_is_not_taken_for_the_first(client: Client) -> None:
 
 
 def test_lines_are_added_and_removed(client: Client) -> None:
-    added = page(client, ONE + "&change=add")
+    added = page(client, ONE + "&change=add-line")
     assert "wavelength_nm-2" in added.ids
     assert added.by_id("wavelength_nm-1").attributes["value"] == "532"
     assert "verdict-title" not in added.ids
-    two = target(client, ONE + "&change=add")
+    two, place = target(client, ONE + "&change=add-line").split("#")
+    assert place == "line-2"
     assert dict(parse_qsl(urlsplit(two).query))["lines"] == "2"
-    removed = page(client, two.replace("&edit=1", "") + "&wavelength_nm-2=1064&change=remove")
+    removed = page(client, two.replace("&edit=1", "") + "&wavelength_nm-2=1064&change=remove-line-2")
     assert "wavelength_nm-2" not in removed.ids
     assert removed.by_id("power_w-1").attributes["value"] == "0.1"
 
@@ -216,15 +219,16 @@ def test_buttons_for_lines(client: Client) -> None:
         root = page(client, f"/evaluate?v=1&lines={lines}&edit=1")
         return [b.attributes["value"] for b in root.all("button", name="change")]
 
-    protection = ["add-pair", "add-window"]
-    assert changes(1) == ["add", *protection]
-    assert changes(2) == ["add", "remove", *protection]
-    assert changes(16) == ["remove", *protection]
+    rest = [*(f"add-element-{e}" for e in ELEMENTS), "add-pair", "add-window"]
+    each = ["copy-line-1", "remove-line-1", "copy-line-2", "remove-line-2"]
+    assert changes(1) == ["copy-line-1", "add-line", *rest]
+    assert changes(2) == [*each, "add-line", *rest]
+    assert changes(16) == [*(f"remove-line-{k}" for k in range(1, 17)), *rest]
 
 
 def test_lines_stay_between_one_and_sixteen(client: Client) -> None:
-    assert "lines=1&" in target(client, ONE + "&change=remove") + "&"
-    most = target(client, "/evaluate?v=1&lines=16&change=add")
+    assert "lines=1&" in target(client, ONE + "&change=remove-line-1") + "&"
+    most = target(client, "/evaluate?v=1&lines=16&change=add-line")
     assert dict(parse_qsl(urlsplit(most).query))["lines"] == "16"
 
 

@@ -15,7 +15,7 @@ from tests.web.client import Client
 from tests.web.pages import CW, HTML, address, page
 from tests.web.protection_forms import FORMS, SHELF, Filled
 from tests.web.shape import assert_problem
-from tests.web.test_addresses import ONE, target
+from tests.web.test_addresses import ELEMENTS, ONE, target
 
 PAIR = {"pairs": "1", "pair_ranges-1": "532: OD 5"}
 WINDOW = {"windows": "1", "window_distance_m-1": "1"}
@@ -93,9 +93,10 @@ def test_the_blank_form_offers_the_shelf_and_buttons(client: Client) -> None:
         (label,) = (e for e in root.all("label") if pair["name"] in e.text)
         assert "invented" in label.text
         assert label.all("input") == [box]
-    assert len(root.all("input", type="checkbox")) == len(SHELF)
+    boxes = [b.attributes["name"] for b in root.all("input", type="checkbox")]
+    assert boxes == ["outdoors", *(f"shelf-{key}" for key in SHELF)]
     assert [b.attributes["value"] for b in root.all("button", name="change")] == [
-        "add", "add-pair", "add-window",
+        "copy-line-1", "add-line", *(f"add-element-{e}" for e in ELEMENTS), "add-pair", "add-window",
     ]  # fmt: skip
     assert not [i for i in root.ids if i.startswith(("pair_", "window_"))]
 
@@ -114,32 +115,35 @@ def test_parts_are_added_and_removed(client: Client, part: str, word: str, field
         field = added.by_id(f"{name}-1")
         assert field.attributes["value"] == ""
         assert added.all("label", for_=f"{name}-1")
-    assert f"remove-{word}" in changes(added)
+    assert f"remove-{word}-1" in changes(added)
     url = target(client, ONE + f"&change=add-{word}")
     assert values(url)[part] == "1"
-    two = target(client, url + f"&{fields[0]}-1=first&change=add-{word}")
+    two = target(client, url.partition("#")[0] + f"&{fields[0]}-1=first&change=add-{word}")
+    two = two.partition("#")[0]
     assert (values(two)[part], values(two)[f"{fields[0]}-1"]) == ("2", "first")
     filled = two + f"&{fields[0]}-2=second"
-    less = target(client, filled + f"&change=remove-{word}")
+    less = target(client, filled + f"&change=remove-{word}-2").partition("#")[0]
     assert values(less)[part] == "1"
     assert f"{fields[0]}-2" not in values(less)
     assert values(less)[f"{fields[0]}-1"] == "first"
-    none = target(client, less + f"&change=remove-{word}")
+    other = values(target(client, filled + f"&change=remove-{word}-1"))
+    assert (other[part], other[f"{fields[0]}-1"]) == ("1", "second")
+    none = target(client, less + f"&change=remove-{word}-1")
     assert part not in values(none)
     assert not [n for n in values(none) if n.startswith(f"{word}_")]
-    assert f"remove-{word}" not in changes(page(client, none))
+    assert f"remove-{word}-1" not in changes(page(client, none))
 
 
 @pytest.mark.parametrize(("part", "word"), [("pairs", "pair"), ("windows", "window")])
 def test_parts_stay_between_none_and_twenty(client: Client, part: str, word: str) -> None:
-    assert part not in values(target(client, ONE + f"&change=remove-{word}"))
+    assert_problem(client.get(ONE + f"&change=remove-{word}-1"), 400, "change")
     most = values(target(client, ONE + f"&{part}=20&change=add-{word}"))
     assert most[part] == "20"
 
 
 def test_changing_one_part_keeps_the_others(client: Client) -> None:
     fields = {**CW, **PAIR, **WINDOW, "shelf-far-infrared": "1"}
-    for change in ("add", "add-pair", "add-window"):
+    for change in ("add-line", "add-pair", "add-window"):
         kept = values(target(client, address(fields, change=change)))
         for name, value in fields.items():
             if name not in ("lines", "pairs", "windows"):

@@ -35,11 +35,11 @@ def test_every_table_is_well_formed(both: tuple[Element, dict[str, Any]]) -> Non
     """Caption, column heads with scope, one row head, as many cells as heads, reachable by keyboard."""
     root, answer = both
     tables = root.all("table")
-    # Key figures, chart, criteria twice, working, needs of the lines; each line's working; limits and
-    # working of each class; windows if there are any.
+    # Key figures, chart, criteria twice, working, rule sets side by side, needs of the lines; working of each
+    # line; limits and working of each class; windows if there are any.
     protection = answer["protection"]
     windows = bool(protection["windows"])
-    assert len(tables) == 6 + len(protection["lines"]) + 2 * len(answer["classification"]) + windows
+    assert len(tables) == 7 + len(protection["lines"]) + 2 * len(answer["classification"]) + windows
     captions = [t.one("caption").text for t in tables]
     assert all(captions)
     assert len(set(captions)) >= len(tables) - len(answer["classification"]) + 1

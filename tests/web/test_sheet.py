@@ -30,7 +30,12 @@ def test_sheet_has_name_date_and_setup(client: Client) -> None:
     given = root.by_id("setup-given")
     rows = {name.text: part.text for name, part in zip(given.all("dt"), given.all("dd"), strict=True)}
     assert "Name: Bench 4 alignment beam" in rows["Laser"]
-    for part in ("Wavelength: 532 nm", "Emission: continuous", "Power: 0.1 W", "Divergence: 1 mrad"):
+    for part in (
+        "Wavelength: 532 nm",
+        "Emission: continuous",
+        "Power: 0.1 W",
+        "Divergence, full angle: 1 mrad",
+    ):
         assert part in rows["Emission and beam"]
     assert "Exposure duration: 0.25 s" in rows["Exposure"]
     assert "Viewing distance: not evaluated" in rows["Exposure"]
