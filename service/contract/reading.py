@@ -136,13 +136,17 @@ def _text(body: bytes | bytearray) -> str:
 def array_items(body: bytes | bytearray) -> Iterator[Any | Problem]:
     """The items of a JSON array, one at a time; one that is JSON but cannot be used gives its Problem.
 
-    Raises MalformedBody where the body is no array, or where its text cannot be read on.
+    Raises MalformedBody where the body is no array, and while iterating where its text cannot be read on.
     """
     text = _text(body)
     at = _skip(text, 0)
     if not text.startswith("[", at):
         raise MalformedBody("the body is not a JSON array; send a list of requests")
-    at = _skip(text, at + 1)
+    return _items(text, _skip(text, at + 1))
+
+
+def _items(text: str, at: int) -> Iterator[Any | Problem]:
+    """The items from position `at` on, the first one's."""
     more = not text.startswith("]", at)
     while more:
         item, at, doubtful = _decode(text, at)

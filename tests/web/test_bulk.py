@@ -130,10 +130,11 @@ def test_an_array_goes_on_after_an_item_that_cannot_be_used(client: Client) -> N
     assert closing.complete
 
 
-def test_what_is_no_array_is_told(client: Client) -> None:
-    _, closing = records(client.post(BULK, content=json.dumps(GOOD), headers=ARRAY))
-    assert not closing.complete
-    assert closing.stopped == "the body is not a JSON array; send a list of requests"
+@pytest.mark.parametrize("content", [json.dumps(GOOD).encode(), b"", b"[\xff]"])
+def test_what_is_no_array_is_refused(client: Client, content: bytes) -> None:
+    answer = client.post(BULK, content=content, headers=ARRAY)
+    assert answer.status_code == 400
+    assert answer.json()["type"] == "/problems/malformed-body"
 
 
 def test_gzip_in_and_out(client: Client) -> None:
