@@ -187,9 +187,14 @@ def _schema_at(loc: list[str], model: type[BaseModel]) -> dict[str, Any] | None:
 
 
 def _numbers(schema: dict[str, Any]) -> str:
+    """The range of a number, with a comma before it; nothing where there is none."""
     low = schema.get("minimum", schema.get("exclusiveMinimum"))
+    high = schema.get("maximum", schema.get("exclusiveMaximum"))
+    if low is None or high is None:
+        return ""
     more = "above " if "exclusiveMinimum" in schema else ""
-    return f"{more}{low:g} to {schema['maximum']:g}"
+    below = "below " if "exclusiveMaximum" in schema else ""
+    return f", {more}{low:g} to {below}{high:g}"
 
 
 def _allowed(path: list[str], loc: list[str], model: type[BaseModel]) -> str:
@@ -215,7 +220,7 @@ def _allowed(path: list[str], loc: list[str], model: type[BaseModel]) -> str:
         unit = UNITS.get(name.rsplit("_", 1)[-1], "")
         pair = ", or a list of two" if name in PAIRS else ""
         kind = "a number" if schema["type"] == "number" else "a whole number"
-        return f"{kind}, {_numbers(schema)} {unit}".rstrip() + pair
+        return f"{kind}{_numbers(schema)} {unit}".rstrip() + pair
     if "enum" in schema:
         return ", ".join(map(str, schema["enum"]))
     if schema.get("type") == "array":
