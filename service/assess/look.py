@@ -161,6 +161,8 @@ class Moving:
         if self.setup.spots is not None:
             nearest = float(self.setup.lines.beams.nearest_m[0])
             return self.setup.places(WORSE_THAN_SMALL * max(far, nearest), self.edges_mrad)
+        # A hair farther than the standing beam, or rounding would make of its distance an endless one.
+        far *= 1.0 + 1e-9
         return self.setup.places(far if np.isfinite(far) else FARTHEST_M, self.edges_mrad)
 
     def at(self, distance_m: float, variant: int | None = None) -> Evaluation:

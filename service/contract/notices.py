@@ -8,13 +8,13 @@ import numpy as np
 
 from service.assess.evaluate import Evaluation
 from service.assess.steps import number_up
-from service.contract.beam import Beam
+from service.contract.beam import Beam, FibreMultimode
 from service.contract.request import Cw, EvaluationRequest, Line, Pulse, Train
 from service.contract.result import Notice
 from service.optics.beams import SQRT2
 from service.rules.ruleset import TARGETS
 
-__all__ = ["notices_of"]
+__all__ = ["aided_notices", "notices_of"]
 
 #: Above these a value is asked about (common practice, no source).
 WIDE_BEAM_MM = 1000.0
@@ -36,6 +36,17 @@ def notices_of(request: EvaluationRequest, evaluation: Evaluation, laser: int) -
         found += _focus(evaluation, members)
     found += _result_notices(evaluation, laser, members)
     return found
+
+
+def aided_notices(aided: Evaluation | None) -> Iterator[Notice]:
+    """What a reader must know of the eye behind an optical aid."""
+    if aided is not None and np.isinf(aided.eye.far_m[0]):
+        yield Notice(
+            code="unbounded",
+            field="viewing.aid",
+            text="For the eye behind the optical aid the beam never falls below its limit: there is no "
+            "hazard distance.",
+        )
 
 
 def _line_notices(path: str, line: Line, exposure_s: float) -> Iterator[Notice]:
@@ -93,6 +104,14 @@ def _train_notices(path: str, emission: Train, energy_j: float, exposure_s: floa
 
 def _beam_notices(path: str, line: Line) -> Iterator[Notice]:
     beam = line.beam
+    if isinstance(beam, FibreMultimode):
+        yield Notice(
+            code="fibre-cone",
+            field=f"{path}.beam.numerical_aperture",
+            text="The printed numerical aperture is the widest cone that the fibre guides. Light launched "
+            "in a narrower one, above all into a short fibre, leaves in a narrower one and reaches farther: "
+            "measure the cone that leaves, or enter the smallest that can occur.",
+        )
     if not isinstance(beam, Beam):
         return
     narrower = 1.0 if beam.profile == "tophat" or beam.level == "1/e2" else SQRT2

@@ -1,7 +1,7 @@
 """A second look: what becomes of the result where an assumption behind it does not hold.
 
 The 0.25 s of visible light rest on the aversion response of the eye, which does not protect skin. The angular
-subtense of a source is taken as constant, though a real source looks smaller from farther away.
+subtense of a source is taken as constant, though a real source looks smaller from farther away. Haze clears.
 """
 
 from __future__ import annotations
@@ -39,6 +39,17 @@ def second_looks(evaluation: Evaluation) -> Iterator[Notice]:
                 f"protect skin. Held in the beam for {SKIN_S:g} s, bare skin gets up to "
                 f"{number_up(skin.worst_ratio[0])} times its limit, and more than its limit "
                 f"{_reach(float(skin.far_m[0]))}.",
+            )
+    if lines.beams.extinction_per_m.any():
+        clear = replace(lines, beams=replace(lines.beams, extinction_per_m=np.zeros(lines.count)))
+        far = float(evaluate(clear, rules).eye.far_m[0])
+        if far > evaluation.eye.far_m[0]:
+            yield Notice(
+                code="hazy-air",
+                field="viewing.visibility_km",
+                text="The distances hold in haze only. In clear air the limit of the eye is exceeded "
+                f"{_reach(far)}, not just {_reach(float(evaluation.eye.far_m[0]))}. The visibility counts at "
+                "a contrast of 2 %: a meteorological optical range (5 %) is to be multiplied by 1.3 first.",
             )
     wide = np.flatnonzero(evaluation.conditions.extended)
     if wide.size:
