@@ -32,7 +32,7 @@ from service.contract.moving import (
     standing_still,
     swept_lines,
 )
-from service.contract.notices import notices_of
+from service.contract.notices import aided_notices, notices_of
 from service.contract.over_distance import over_distance_of
 from service.contract.problem import FieldError, InvalidRequest
 from service.contract.protection import protection_of
@@ -155,7 +155,7 @@ def _result(
     aided: Evaluation | None,
     duration_rows: list[int],
 ) -> EvaluationResult:
-    rules = evaluation.rules
+    rules, aid = evaluation.rules, request.viewing.aid
     published, standing = rules.rules, standing_still(evaluation)
     exposure = evaluation.lines.exposure_s
     durations = [_duration(evaluation, k, row) for k, row in enumerate(duration_rows)]
@@ -185,7 +185,11 @@ def _result(
         over_distance=over_distance_of(request, evaluation),
         working=[step_model(s) for s in [*steps, *working(evaluation, 0, first)]],
         classification=classes,
-        protection=protection_of(request, standing),
+        protection=protection_of(
+            request,
+            standing,
+            None if aided is None or aid is None else (standing_still(aided), aid_of(aid)),
+        ),
         measures=measures_for(
             classes[0].hazard_class, evaluation.lines.wavelength_nm.tolist(), _irradiance(standing)
         ),
@@ -197,6 +201,7 @@ def _result(
             ),
             *moving_notices(evaluation),
             *notices_of(request, evaluation, 0),
+            *aided_notices(aided),
         ],
         cautions=CAUTIONS,
         provenance=Provenance(

@@ -9,14 +9,14 @@ from numpy.typing import NDArray
 
 from service.assess.evaluate import Evaluation
 from service.assess.steps import number_up
-from service.contract.beam import Beam
+from service.contract.beam import Beam, FibreMultimode
 from service.contract.request import Cw, EvaluationRequest, Line, Pulse, Train
 from service.contract.result import Notice
 from service.optics.beams import SQRT2
 from service.rules.ruleset import TARGETS
 from service.rules.tables import Row
 
-__all__ = ["input_notices", "lasers_with_result_notices", "notices_of"]
+__all__ = ["aided_notices", "input_notices", "lasers_with_result_notices", "notices_of"]
 
 #: Above these a value is asked about (common practice, no source).
 WIDE_BEAM_MM = 1000.0
@@ -44,6 +44,17 @@ def input_notices(request: EvaluationRequest, exposure_s: list[float]) -> list[N
     for number, (line, seconds) in enumerate(zip(request.lines, exposure_s, strict=True)):
         found += _line_notices(f"lines.{number}", line, seconds)
     return found
+
+
+def aided_notices(aided: Evaluation | None) -> Iterator[Notice]:
+    """What a reader must know of the eye behind an optical aid."""
+    if aided is not None and np.isinf(aided.eye.far_m[0]):
+        yield Notice(
+            code="unbounded",
+            field="viewing.aid",
+            text="For the eye behind the optical aid the beam never falls below its limit: there is no "
+            "hazard distance.",
+        )
 
 
 def _line_notices(path: str, line: Line, exposure_s: float) -> Iterator[Notice]:
@@ -101,6 +112,14 @@ def _train_notices(path: str, emission: Train, energy_j: float, exposure_s: floa
 
 def _beam_notices(path: str, line: Line) -> Iterator[Notice]:
     beam = line.beam
+    if isinstance(beam, FibreMultimode):
+        yield Notice(
+            code="fibre-cone",
+            field=f"{path}.beam.numerical_aperture",
+            text="The printed numerical aperture is the widest cone that the fibre guides. Light launched "
+            "in a narrower one, above all into a short fibre, leaves in a narrower one and reaches farther: "
+            "measure the cone that leaves, or enter the smallest that can occur.",
+        )
     if not isinstance(beam, Beam):
         return
     narrower = 1.0 if beam.profile == "tophat" or beam.level == "1/e2" else SQRT2

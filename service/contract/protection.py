@@ -6,21 +6,21 @@ import numpy as np
 from numpy.typing import NDArray
 from pydantic import Field
 
+from service.assess.aid import Aid
 from service.assess.evaluate import Evaluation, optical_density
+from service.assess.looks import Look, behind_aid, both, worse
 from service.assess.marking import parse_marking
 from service.assess.protection import (
     Coverage,
     LineNeed,
     Pair,
     PairVerdict,
-    judge,
-    line_needs,
     ranked,
 )
 from service.assess.scales import SLACK
 from service.assess.screens import screen_load
 from service.assess.steps import number_up
-from service.assess.viewing import ratios_at, ratios_from, seen_from, sum_of_lines
+from service.assess.viewing import ratios_from, sum_of_lines
 from service.assess.working_protection import protection_steps
 from service.contract.request import EvaluationRequest, Eyewear, Window
 from service.contract.result import Known, Model, WorkingStep, step_model
@@ -103,6 +103,10 @@ class LineProtection(Model):
     wavelength_nm: float
     worst_place: AtPlace
     at_distance: AtPlace | None
+    behind_aid: AtPlace | None = Field(
+        description="For an eye behind viewing.aid at the most hazardous place; null without one. The load "
+        "is that of a beam narrowed by the magnification, an upper bound."
+    )
 
 
 class ModeCheck(Model):
@@ -129,7 +133,7 @@ class LineCheck(Model):
 
 
 class PairCheck(Model):
-    """Whether a pair will do, each line at its most hazardous place."""
+    """Whether a pair will do, each line at its most hazardous place, with viewing.aid behind it too."""
 
     name: str
     sufficient: bool = Field(description="Dense enough, shown to withstand the beam, not for alignment only.")
@@ -148,7 +152,7 @@ class WindowCheck(Model):
     """A window, enclosure wall or screen at its distance.
 
     The exposure is the worst of eye and skin at or behind it, each line at its own worst place (an upper
-    bound).
+    bound), with viewing.aid the worse of both eyes.
     """
 
     name: str
@@ -175,39 +179,38 @@ class Protection(Model):
     remarks: list[str]
 
 
-def protection_of(request: EvaluationRequest, evaluation: Evaluation) -> Protection:
-    """Needs of every line, verdict on every pair and window of one laser."""
-    tables = eyewear_tables(DATA)
-    narrowest = evaluation.lines.beams.narrowest_m()
-    ratio = ratios_from(evaluation, evaluation.eye, evaluation.lines.beams.nearest_m)
-    worst = line_needs(evaluation, ratio, narrowest, tables, onward=True)
-    there: list[LineNeed] | None = None
-    ratio_there = ratio
-    if request.viewing.distance_m is not None:
-        places = np.full(narrowest.shape, request.viewing.distance_m)
-        seen = seen_from(evaluation, request.viewing.distance_m)
-        ratio_there = ratios_at(seen, seen.eye, places)
-        there = line_needs(seen, ratio_there, places, tables, onward=False)
+def protection_of(
+    request: EvaluationRequest, evaluation: Evaluation, aided: tuple[Evaluation, Aid] | None = None
+) -> Protection:
+    """Needs of every line, verdict on every pair and window of one laser.
+
+    `aided`: the evaluation behind an optical aid, and the aid. Pairs and windows must then do for
+    the bare eye and for the eye behind it.
+    """
+    tables, distance = eyewear_tables(DATA), request.viewing.distance_m
+    bare = Look.of(evaluation, distance, tables)
+    behind = None if aided is None else Look.of(behind_aid(*aided), distance, tables)
     pairs = [_pair(p) for p in request.eyewear]
-    verdicts = [judge(p, evaluation, ratio, worst) for p in pairs]
-    at_distance = [judge(p, evaluation, ratio_there, there).sufficient for p in pairs] if there else None
+    verdicts = [worse(bare.judge(p), None if behind is None else behind.judge(p)) for p in pairs]
+    there = [both(bare.enough_there(p), None if behind is None else behind.enough_there(p)) for p in pairs]
     order = ranked(verdicts)
+    evaluations = [evaluation] if aided is None else [evaluation, aided[0]]
     return Protection(
         lines=[
             LineProtection(
                 line=n.line,
                 wavelength_nm=n.wavelength_nm,
                 worst_place=_place(n, evaluation, tables),
-                at_distance=None if there is None else _place(there[n.line], evaluation, tables),
+                at_distance=None if bare.there is None else _place(bare.there[n.line], evaluation, tables),
+                behind_aid=None
+                if behind is None
+                else _place(behind.worst[n.line], behind.evaluation, tables),
             )
-            for n in worst
+            for n in bare.worst
         ],
-        eyewear=[
-            _pair_check(v, worst, order.index(k) + 1, None if at_distance is None else at_distance[k])
-            for k, v in enumerate(verdicts)
-        ],
-        windows=[_window(w, evaluation, tables) for w in request.windows],
-        remarks=_remarks(worst),
+        eyewear=[_pair_check(v, bare.worst, order.index(k) + 1, there[k]) for k, v in enumerate(verdicts)],
+        windows=[_window(w, evaluations, tables) for w in request.windows],
+        remarks=_remarks(bare.worst),
     )
 
 
@@ -322,10 +325,11 @@ def _ratio_behind(evaluation: Evaluation, target: str, places: NDArray[np.float6
     return sum_of_lines(evaluation, result, ratios_from(evaluation, result, places))
 
 
-def _window(window: Window, evaluation: Evaluation, tables: EyewearTables) -> WindowCheck:
+def _window(window: Window, evaluations: list[Evaluation], tables: EyewearTables) -> WindowCheck:
     """A window: density from the rule set's limits, strength from the scale of screens."""
+    evaluation = evaluations[0]
     places = np.maximum(window.distance_m, evaluation.lines.beams.nearest_m)
-    ratio = max(_ratio_behind(evaluation, target, places) for target in TARGETS)
+    ratio = max(_ratio_behind(e, target, places) for e in evaluations for target in TARGETS)
     load = screen_load(evaluation.lines, window.distance_m, tables)
     remaining = None if window.optical_density is None else ratio * 10.0**-window.optical_density
     use = tables.use

@@ -147,7 +147,8 @@ class Viewing(Strict):
         None,
         ge=0.05,
         le=1000,
-        description="Visibility; without it the air is clear (stricter).",
+        description="Visibility at a contrast of 2 %, 1.3 times the meteorological optical range (5 %); "
+        "without it the air is clear (stricter).",
     )
     aid: Aid | None = Field(None, description="Binoculars, a telescope or a loupe between beam and eye.")
     outdoors: bool | None = Field(

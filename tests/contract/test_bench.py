@@ -302,3 +302,58 @@ def test_random_chains(lines: list[dict[str, Any]], bench: list[dict[str, Any]],
         far = math.inf if a.hazard_distance_m is None else a.hazard_distance_m
         nearer = math.inf if b.hazard_distance_m is None else b.hazard_distance_m
         assert nearer <= far * (1 + 1e-6) + 1e-9
+
+
+WIDE = {"profile": "tophat", "diameter_mm": 100, "divergence_mrad": 0}
+BINOCULARS = {"objective_mm": 50, "magnification": 7}
+
+
+def test_eyewear_and_windows_must_do_behind_binoculars() -> None:
+    """A uniform beam wider than the objective: 7 x 50 send 49 times the irradiance into the eye (49 mm to
+    7 mm), so a density that just does for the bare eye falls short by log10(49)."""
+    bare = 4 * 100 / (math.pi * 0.1**2) / (18 * 0.25**-0.25)
+    density = math.log10(bare) + 0.1
+    pair = {"name": "P", "ranges": [{"from_nm": 500, "to_nm": 600, "optical_density": density}]}
+    wall = {"name": "W", "distance_m": 1.0, "optical_density": density}
+    more = {"eyewear": [pair], "windows": [wall]}
+
+    def look(viewing: dict[str, Any]) -> Any:
+        one = {"wavelength_nm": 532, "emission": {"mode": "cw", "power_w": 100}, "beam": WIDE}
+        body = {"exposure_s": 0.25, "lines": [one], "viewing": viewing, **more}
+        return answer(EvaluationRequest.model_validate(body)).protection
+
+    plain, aided = look({}), look({"aid": BINOCULARS, "distance_m": 1.0})
+    assert plain.eyewear[0].dense_enough
+    assert plain.lines[0].behind_aid is None
+    assert plain.windows[0].sufficient
+    assert not aided.eyewear[0].dense_enough
+    assert aided.eyewear[0].sufficient_at_distance is False
+    assert aided.eyewear[0].remaining_ratio == pytest.approx(49 * 10**-0.1, rel=1e-9)
+    assert any("optical aid" in text for text in aided.eyewear[0].warnings)
+    assert aided.lines[0].behind_aid.optical_density == pytest.approx(math.log10(49 * bare), rel=1e-9)
+    assert aided.lines[0].worst_place.optical_density == pytest.approx(math.log10(bare), rel=1e-9)
+    assert aided.windows[0].hazard_ratio == pytest.approx(49 * bare, rel=1e-9)
+    assert not aided.windows[0].sufficient
+
+
+def test_no_distance_behind_binoculars_is_told() -> None:
+    """A parallel beam below the limit of the bare eye, above it 49 times stronger."""
+    power = 0.5 * 18 * 0.25**-0.25 * math.pi * 0.1**2 / 4
+    result = run(viewing={"aid": BINOCULARS}, power=power, beam=WIDE)
+    assert result.eye.hazard_distance_m == 0.0
+    assert result.eye_aided is not None
+    assert result.eye_aided.hazard_distance_m is None
+    assert [n.field for n in result.notices if n.code == "unbounded"] == ["viewing.aid"]
+
+
+def test_haze_is_told_beside_clear_air() -> None:
+    clear, hazy = run(power=100), run(viewing={"visibility_km": 1}, power=100)
+    assert not any(n.code == "hazy-air" for n in clear.notices)
+    text = next(n.text for n in hazy.notices if n.code == "hazy-air")
+    assert clear.eye.hazard_distance_m is not None
+    assert f"{clear.eye.hazard_distance_m:.0f}" in text
+
+
+def test_the_cone_of_a_fibre_can_be_narrower() -> None:
+    beam = {"profile": "fibre_multimode", "numerical_aperture": 0.2, "core_diameter_um": 50}
+    assert any(n.code == "fibre-cone" for n in run(beam=beam).notices)

@@ -105,6 +105,20 @@ def test_pulses_are_not_credited() -> None:
     assert any(n.code == "sweep-not-credited" for n in swept.notices)
 
 
+@pytest.mark.parametrize("energy", [0.01897025158951505, 0.005691075476854515])
+def test_pulses_under_a_scanner_keep_their_distance(energy: float) -> None:
+    """Not credited, so the distance is the standing beam's, to the last digit; not an endless one."""
+    pulse = {"mode": "pulse", "energy_j": energy * 1e6, "pulse_s": 1.4068182121863964e-10}
+    line = {
+        "wavelength_nm": 29682.208817304752,
+        "emission": pulse,
+        "beam": {"diameter_mm": 0.15636215839943593, "divergence_mrad": 3141, "level": "1/e"},
+    }
+    result = run(LINE, line=line, rules="iec-60825-1-2014", viewing={"visibility_km": 4.155020932412492})
+    assert result.scan is not None
+    assert far(result.eye) == pytest.approx(far(result.scan.failure_eye), rel=1e-9)
+
+
 @pytest.mark.parametrize("sweeps", [1e3, 1e6])
 def test_rows_of_a_raster_come_in_a_burst(sweeps: float) -> None:
     """1000 rows, seen at 2 m: the rows that touch the pupil follow each other, then none come until the next
