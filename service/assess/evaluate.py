@@ -26,6 +26,9 @@ __all__ = ["Evaluation", "Sums", "TargetResult", "evaluate", "evaluate_target", 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.intp]
 
+#: A ratio that haze has extinguished; its logarithm stays finite.
+NOTHING = 1e-300
+
 
 @dataclass(slots=True)
 class Sums:
@@ -187,7 +190,8 @@ def _alone(criteria: Criteria, lines: Lines, place: Floats, ratio: Floats) -> tu
         low, high = beams.reach_m(aperture, 1.0 / strength)
 
         def excess(k: Ints, z: Floats) -> Floats:
-            return np.log(strength[k] * beams.take(k).fraction(aperture[k], z))
+            ratio = strength[k] * beams.take(k).fraction(aperture[k], z)
+            return np.log(np.maximum(ratio, NOTHING))
 
         far[over] = falling_root(excess, low, high)
         near[over] = np.maximum(0.0, 2.0 * place[over] - far[over])

@@ -131,7 +131,7 @@ def evaluated(
     return evaluate(lines, rules, aid) if setup is None else look(setup, rules, aid)
 
 
-def _scan(request: EvaluationRequest, evaluation: Evaluation) -> ScanAnswer | None:
+def _scan(request: EvaluationRequest, evaluation: Evaluation, aided: Evaluation | None) -> ScanAnswer | None:
     """The sweep, and the case that it stops."""
     if evaluation.moving is None or evaluation.moving.setup.scan is None:
         return None
@@ -140,6 +140,7 @@ def _scan(request: EvaluationRequest, evaluation: Evaluation) -> ScanAnswer | No
         lines=swept_lines(evaluation),
         failure_eye=_target(request, still, "eye"),
         failure_skin=_target(request, still, "skin"),
+        failure_eye_aided=None if aided is None else _target(request, standing_still(aided), "eye"),
     )
 
 
@@ -180,7 +181,7 @@ def _result(
         durations=durations,
         eye_aided=None if aided is None else _target(request, aided, "eye"),
         diffuse=diffuse_answer(evaluation, rules),
-        scan=_scan(request, evaluation),
+        scan=_scan(request, evaluation, aided),
         airspace=airspace_of(standing) if request.viewing.outdoors else None,
         over_distance=over_distance_of(request, evaluation),
         working=[step_model(s) for s in [*steps, *working(evaluation, 0, first)]],

@@ -71,6 +71,9 @@ class ScanAnswer(Model):
     lines: list[SweptLine]
     failure_eye: TargetAnswer
     failure_skin: TargetAnswer
+    failure_eye_aided: TargetAnswer | None = Field(
+        description="The eye behind viewing.aid when the sweep stops; null without one."
+    )
 
 
 def _finite(x: float) -> float | None:

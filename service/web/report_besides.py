@@ -36,13 +36,19 @@ def besides_blocks(result: EvaluationResult) -> list[Block]:
             ),
         ]
     if result.scan is not None:
-        stopped = [result.scan.failure_eye, result.scan.failure_skin]
+        cases = {
+            "Eye": result.scan.failure_eye,
+            "Skin": result.scan.failure_skin,
+            "Eye with optics": result.scan.failure_eye_aided,
+        }
+        names = [name for name, target in cases.items() if target is not None]
+        stopped = [target for target in cases.values() if target is not None]
         rows = [
             ["Hazard distance", *(reached(t.hazard_distance_m) for t in stopped)],
             ["Exposure / limit at the worst place", *(up(t.hazard_ratio) for t in stopped)],
             ["Optical density needed", *(up(t.optical_density) for t in stopped)],
         ]
-        blocks += [heading("When the sweep stops", 2), table(["", "Eye", "Skin"], rows, [1.3, 1.0, 1.0])]
+        blocks += [heading("When the sweep stops", 2), table(["", *names], rows, [1.3] + [1.0] * len(names))]
     if result.airspace is not None:
         sky = result.airspace
         rows = [

@@ -192,3 +192,21 @@ def test_never_worse_than_standing_still(
     places = zip(swept.over_distance.distance_m, swept.over_distance.eye.hazard_ratio, strict=True)
     assert all(ratio <= 1.0 + 1e-9 for z, ratio in places if z > far(swept.eye))
     assert far(run(scanner, power * 3, rules=rules, line=line).eye) >= far(swept.eye) * (1 - 1e-9)
+
+
+def test_binoculars_on_a_beam_that_stops() -> None:
+    """The failure case behind optics is the beam without a scanner behind the same optics."""
+    viewing = {"aid": {"objective_mm": 50, "magnification": 7}}
+    swept, plain = run(viewing=viewing), run(None, viewing=viewing)
+    assert swept.scan is not None
+    assert swept.scan.failure_eye_aided == plain.eye_aided
+    assert run().scan.failure_eye_aided is None  # type: ignore[union-attr]
+
+
+def test_haze_that_extinguishes_everything() -> None:
+    """Fifty metres of visibility leave nothing after some kilometres: finite figures, no warning."""
+    beam = {"diameter_mm": 2, "divergence_mrad": 0, "level": "1/e"}
+    result = run(None, 1e12, line={"beam": beam}, viewing={"visibility_km": 0.05})
+    z = far(result.eye)
+    # 1e12 W through 7 mm falls to the limit of 0.25 s after ln(ratio) extinction lengths.
+    assert z == pytest.approx(math.log(result.eye.hazard_ratio) / (3.912 / 50), rel=1e-9)
