@@ -181,7 +181,7 @@ def test_from_the_answer_to_a_sweep_and_back(page: Page) -> None:
 
 def test_report_opens_from_the_answer(page: Page, address: str) -> None:
     page.goto(EVALUATED)
-    link = page.get_by_role("link", name="PDF, A4").get_attribute("href")
+    link = page.get_by_role("link", name="report, A4").get_attribute("href")
     answer = httpx.get(f"{address}{link}", follow_redirects=True)
     assert answer.headers["content-type"] == "application/pdf"
     with pdfplumber.open(io.BytesIO(answer.content)) as opened:
