@@ -18,6 +18,7 @@ from service.rules.eyewear import eyewear_tables
 from service.rules.materials import materials
 from service.settings import Settings
 from service.web import api, health, pages, rules_pages, static, trust_api, trust_pages
+from service.web.guard import Guard
 from service.web.headers import Envelope
 from service.web.openapi import describe
 from service.web.problems import PlainProblem, problem_response
@@ -67,5 +68,6 @@ def create_app(settings: Settings | None = None) -> FastAPI:
     }
     for kind, handler in handlers.items():
         app.add_exception_handler(kind, handler)
+    app.add_middleware(Guard, settings=app.state.settings, refuse=problem_response)
     app.add_middleware(Envelope, on_failure=on_failure)
     return app

@@ -12,6 +12,7 @@ from service import __version__
 from service.app import create_app
 from service.rules.tables import TableError
 from service.settings import Settings, SettingsError
+from service.web.patience import patient_protocol
 
 __all__ = ["main"]
 
@@ -38,7 +39,9 @@ def main(arguments: list[str] | None = None) -> int:
         print(f"blinkline: cannot listen on {host} port {port}: {error}", file=sys.stderr)
         return 2
     print(f"Blinkline {__version__} on http://{host}:{listener.getsockname()[1]}", flush=True)
-    config = uvicorn.Config(app, log_level="warning", server_header=False)
+    config = uvicorn.Config(
+        app, log_level="warning", server_header=False, http=patient_protocol(settings.request_time)
+    )
     uvicorn.Server(config).run(sockets=[listener])
     return 0
 

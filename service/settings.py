@@ -18,11 +18,18 @@ class Settings:
     """What an operator may set.
 
     `host`, `port`: where `blinkline serve` listens. `body_limit`: largest request body read [bytes].
+    `allowed_hosts`: host names served, separated by commas; blank = any. `request_time`: longest time for
+    head and body to arrive, and for a part of an answer to be taken [s]. `running_limit`: most requests
+    computed at a time, `rate_limit`: most requests of one address a minute (0 = any); both per process.
     """
 
     host: str = "127.0.0.1"
     port: int = 8321
     body_limit: int = 1_000_000
+    allowed_hosts: str = ""
+    request_time: int = 30
+    running_limit: int = 100
+    rate_limit: int = 0
 
     @classmethod
     def from_environment(cls, environment: Mapping[str, str] = os.environ) -> Settings:
@@ -35,11 +42,12 @@ class Settings:
             if name not in known:
                 raise SettingsError(f"{name} is no setting; there are {', '.join(sorted(known))}")
             field = known[name]
-            if field.name == "host":
-                values["host"] = text
+            if field.name in ("host", "allowed_hosts"):
+                values[field.name] = text
                 continue
             top = 65535 if field.name == "port" else 1_000_000_000
-            if not text.isdecimal() or not 1 <= int(text) <= top:
-                raise SettingsError(f"{name} is {text!r}, expected a whole number from 1 to {top}")
+            least = 0 if field.name == "rate_limit" else 1
+            if not text.isdecimal() or not least <= int(text) <= top:
+                raise SettingsError(f"{name} is {text!r}, expected a whole number from {least} to {top}")
             values[field.name] = int(text)
         return cls(**values)  # type: ignore[arg-type]

@@ -83,6 +83,8 @@ class Problem(Exception):
         super().__init__(detail)
         self.detail = detail
         self.errors = list(errors)
+        #: Headers of the answer, by name in small letters.
+        self.headers: dict[str, str] = {}
 
     def document(self) -> ProblemDocument:
         """The document to send."""

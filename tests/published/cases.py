@@ -1,10 +1,10 @@
 """What the checks of this folder share: published cases, their tolerance, and the product asked for them.
 
 A case is a printed number with its source, as `data/checks/published.toml` has it: the running service
-computes the same cases on its page /checks, here they are asked for independently. `how_known` says whether the source was read or is recalled
-from memory; `trust` is A (firm) or B (usable, mind edition and rounding). A case is met when the value
-of the product lies within half a unit in the last printed digit, or within a tolerance that the check
-states beside it.
+computes the same cases on its page /checks, here they are asked for independently. `how_known` says
+whether the source was read or is recalled from memory; `trust` is A (firm) or B (usable, mind edition
+and rounding). A case is met when the value of the product lies within half a unit in the last printed
+digit, or within a tolerance that the check states beside it.
 
 Not used, because the product has no such quantity (yet):
 
