@@ -6,7 +6,7 @@ import asyncio
 import time
 from collections.abc import Callable
 
-from starlette.requests import Request
+from starlette.requests import ClientDisconnect, Request
 from starlette.responses import Response
 from starlette.types import ASGIApp, Message, Receive, Scope, Send
 
@@ -168,6 +168,8 @@ class Guard:
 
         try:
             await self.app(request.scope, patient_receive, patient_send)
+        except ClientDisconnect:
+            return  # nobody is left to be answered
         except Problem as problem:
             if started:
                 raise
