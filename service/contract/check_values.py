@@ -92,8 +92,9 @@ def _distance(ask: Ask) -> float:
 
 
 def _pulse_factor(ask: Ask) -> float:
-    (row,) = (c for c in _target(ask).criteria if c.rule == "train")
-    return math.nan if row.pulse_factor is None else row.pulse_factor
+    """Smallest C_P of the rows that hold; 1 where none asks for it."""
+    found = (c.pulse_factor for c in _target(ask).criteria if c.rule == "train")
+    return min((f for f in found if f is not None), default=1.0)
 
 
 def _class_end(ask: Ask) -> float:
@@ -169,6 +170,7 @@ def _density(ask: Ask) -> float:
 #: Reader by the name that `ask.read` gives.
 READERS: dict[str, Callable[[Ask], float]] = {
     "allowed": _allowed,
+    "aperture_mm": lambda ask: _strictest(ask).aperture_mm,
     "class_end": _class_end,
     "crossover": _crossover,
     "density": _density,
