@@ -17,7 +17,17 @@ from service.rules.airspace import airspace_tables
 from service.rules.eyewear import eyewear_tables
 from service.rules.materials import materials
 from service.settings import Settings
-from service.web import api, differences_page, health, pages, rules_pages, static, trust_api, trust_pages
+from service.web import (
+    api,
+    differences_page,
+    guide,
+    health,
+    pages,
+    rules_pages,
+    static,
+    trust_api,
+    trust_pages,
+)
 from service.web.guard import Guard
 from service.web.headers import Envelope
 from service.web.openapi import describe
@@ -44,6 +54,7 @@ def create_app(settings: Settings | None = None) -> FastAPI:
     for router in (api.router, health.router, pages.router, rules_pages.router, static.router):
         app.include_router(router)
     app.include_router(differences_page.router)
+    app.include_router(guide.router)
     app.include_router(trust_api.router)
     app.include_router(trust_pages.router)
     describe(app)
