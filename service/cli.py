@@ -29,7 +29,7 @@ def main(arguments: list[str] | None = None) -> int:
     try:
         settings = Settings.from_environment()
         app = create_app(settings)
-    except (SettingsError, TableError) as error:
+    except (SettingsError, TableError, OSError) as error:
         print(f"blinkline: {error}", file=sys.stderr)
         return 2
     host, port = chosen.host or settings.host, settings.port if chosen.port is None else chosen.port
