@@ -17,6 +17,8 @@ __all__ = ["BodyTooSlow", "Guard", "Overloaded", "TooManyRequests", "UnknownHost
 
 #: After a refusal for want of room, come back in so many seconds.
 RETRY_S = 1
+#: A body that comes at this pace or faster may take longer than the time limit [bytes/s].
+STEADY = 100_000
 #: Most clients whose rates are kept; beyond, those that have been quiet longest are forgotten.
 MOST_CLIENTS = 10_000
 #: Probes and counts must be answered when nothing else is, and by the address of the container.
@@ -140,7 +142,7 @@ class Guard:
         deadline = time.monotonic() + self.patience_s
 
         async def patient_receive() -> Message:
-            nonlocal arrived
+            nonlocal arrived, deadline
             if arrived:
                 return await receive()
             self.running -= 1
@@ -151,6 +153,7 @@ class Guard:
             finally:
                 self.running += 1
             arrived = not message.get("more_body", False)
+            deadline += len(message.get("body", b"")) / STEADY
             if arrived and message.get("body"):
                 if self.running > self.room:
                     raise Overloaded(self.room)

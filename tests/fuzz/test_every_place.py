@@ -39,7 +39,7 @@ FULL: dict[str, Any] = {
     ],
     "windows": [{"name": "Screen", "distance_m": 1, "optical_density": 3}],
 }
-ODD = [None, True, -1, 1e308, -1e308, 5e-324, 10**400, "x", "\ud800", [], [{}], {"a": 1}, ["a", 2]]
+ODD = [None, -1e308, 5e-324, 10**400, "\ud800", [], {"a": 1}]
 
 
 def places(node: Any, way: tuple[Any, ...] = ()) -> Iterator[tuple[Any, ...]]:

@@ -9,7 +9,7 @@ import pytest
 from tests.fuzz.schema import MODES, operations, send_many
 from tests.web.client import Client
 
-COUNT = {"post": 60, "get": 12}
+COUNT = {"post": 40, "get": 8}
 
 
 @pytest.mark.parametrize("mode", MODES, ids=[m.value for m in MODES])

@@ -155,3 +155,9 @@ def test_a_client_that_trickles_is_refused_in_time() -> None:
 def test_unusable_settings_are_named(name: str, text: str) -> None:
     with pytest.raises(SettingsError, match=f"BLINKLINE_{name} is '{text}'"):
         Settings.from_environment({f"BLINKLINE_{name}": text})
+
+
+def test_a_large_body_that_comes_steadily_has_the_time_it_needs() -> None:
+    """250 kB every 0.4 s for 2 s, where the limit is 1 s and 1 MB: then too large, not too slow."""
+    start, *_ = asgi(Settings(request_time=1), [b" " * 250_000] * 5, 0.4)
+    assert start["status"] == 413
