@@ -9,6 +9,9 @@ from uvicorn.protocols.http.httptools_impl import HttpToolsProtocol
 
 __all__ = ["patient_protocol"]
 
+#: Time to read what has arrived, once the time is over [s].
+GRACE_S = 1.0
+
 
 def patient_protocol(seconds: float) -> type[HttpToolsProtocol]:
     """A connection protocol that closes a connection whose next request head takes longer than `seconds`.
@@ -32,6 +35,10 @@ def patient_protocol(seconds: float) -> type[HttpToolsProtocol]:
                 self.head_timer = None
 
         def _give_up(self) -> None:
+            # A busy process may have the head at hand and not have read it yet.
+            self.head_timer = self.loop.call_later(GRACE_S, self._close)
+
+        def _close(self) -> None:
             self.head_timer = None
             if not self.transport.is_closing():
                 self.transport.close()

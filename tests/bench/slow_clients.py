@@ -111,6 +111,7 @@ async def measure(port: int) -> None:
         statuses = Counter(a.status_code for a in answers)
         print(f"burst of {BURST}: {dict(statuses)} in {took:.2f} s")
         assert all("retry-after" in a.headers for a in answers if a.status_code == 503)
+    async with httpx.AsyncClient(base_url=base, timeout=60) as client:
         after = await client.get("/health/live")
         print(f"after the burst: /health/live {after.status_code}; {told(await normal(client))}")
 
