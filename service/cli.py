@@ -53,6 +53,7 @@ def _listen(host: str, port: int) -> socket.socket:
     try:
         listener.setsockopt(socket.SOL_SOCKET, socket.SO_REUSEADDR, 1)
         listener.bind((host, port))
+        listener.listen()
     except BaseException:
         listener.close()
         raise
