@@ -55,4 +55,4 @@ def test_one_request_after_another_on_a_connection(port: int) -> None:
             if not last:
                 line.settimeout(20)
                 assert line.recv(65536).startswith(b"HTTP/1.1 200 ")
-        assert received(line).startswith(b"HTTP/1.1 200 ")
+        assert b"HTTP/1.1 200 " in received(line)
