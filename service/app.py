@@ -18,7 +18,24 @@ from service.rules.eyewear import eyewear_tables
 from service.rules.materials import materials
 from service.settings import Settings
 from service.sign.tables import sign_tables
-from service.web import api, bulk, exports, health, metrics, pages, report, rules_pages, sign, static, sweep
+from service.web import (
+    api,
+    bulk,
+    differences_page,
+    exports,
+    guide,
+    health,
+    metrics,
+    pages,
+    report,
+    rules_pages,
+    sign,
+    static,
+    sweep,
+    trust_api,
+    trust_pages,
+)
+from service.web.guard import Guard
 from service.web.headers import Envelope
 from service.web.openapi import describe
 from service.web.problems import PlainProblem, problem_response
@@ -42,20 +59,24 @@ def create_app(settings: Settings | None = None) -> FastAPI:
         redoc_url=None,
     )
     app.state.settings = settings or Settings()
-    for router in (
-        api.router,
-        bulk.router,
-        exports.router,
-        health.router,
-        metrics.router,
-        pages.router,
-        report.router,
-        rules_pages.router,
-        sign.router,
-        static.router,
-        sweep.router,
+    for module in (
+        api,
+        bulk,
+        differences_page,
+        exports,
+        guide,
+        health,
+        metrics,
+        pages,
+        report,
+        rules_pages,
+        sign,
+        static,
+        sweep,
+        trust_api,
+        trust_pages,
     ):
-        app.include_router(router)
+        app.include_router(module.router)
     describe(app)
 
     async def on_problem(request: Request, error: Exception) -> Response:
@@ -79,6 +100,7 @@ def create_app(settings: Settings | None = None) -> FastAPI:
     }
     for kind, handler in handlers.items():
         app.add_exception_handler(kind, handler)
+    app.add_middleware(Guard, settings=app.state.settings, refuse=problem_response)
     app.add_middleware(metrics.Measured)
     app.add_middleware(Envelope, on_failure=on_failure)
     return app

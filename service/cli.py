@@ -31,7 +31,7 @@ def _evaluate(chosen: argparse.Namespace) -> int:
     try:
         rule_sets()
         schemes()
-    except TableError as error:
+    except (TableError, OSError) as error:
         print(f"blinkline: {error}", file=sys.stderr)
         return 2
     settle()

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import os
+import sys
 from pathlib import Path
 
 __all__ = ["DATA", "STATIC", "TEMPLATES"]
@@ -13,3 +15,8 @@ ROOT = SHIPPED if SHIPPED.is_dir() else HERE.parent
 DATA = ROOT / "data"
 TEMPLATES = ROOT / "templates"
 STATIC = HERE / "static"
+
+for folder in (DATA, TEMPLATES, STATIC):
+    if not os.access(folder, os.R_OK | os.X_OK):
+        print(f"blinkline: the folder {folder} is missing or cannot be read; install again", file=sys.stderr)
+        raise SystemExit(2)

@@ -21,6 +21,7 @@ from service.logs import configure
 from service.rules.tables import TableError
 from service.settings import Settings, SettingsError
 from service.web.metrics import SHARED
+from service.web.patience import patient_protocol
 
 __all__ = ["add_command", "application", "run"]
 
@@ -55,7 +56,7 @@ def run(chosen: argparse.Namespace) -> int:
             raise SettingsError(f"--workers is {chosen.workers}, expected 1 to {MOST_WORKERS}")
         settings = Settings.from_environment()
         app = application()
-    except (SettingsError, TableError) as error:
+    except (SettingsError, TableError, OSError) as error:
         print(f"blinkline: {error}", file=sys.stderr)
         return 2
     host, port = chosen.host or settings.host, settings.port if chosen.port is None else chosen.port
@@ -70,6 +71,7 @@ def run(chosen: argparse.Namespace) -> int:
         "access_log": False,
         "server_header": False,
         "timeout_graceful_shutdown": PATIENCE_S,
+        "http": patient_protocol(settings.request_time),
     }
     if chosen.workers == 1:
         uvicorn.Server(uvicorn.Config(app, **options)).run(sockets=[listener])

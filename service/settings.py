@@ -38,6 +38,9 @@ class Settings:
     For signs: `public_address`: where people reach this service (blank: as the request says);
     `sign_policy`: signal words by the class (`standard`) or DANGER for every 3B and 4 (`strict`);
     `lso_name`, `lso_phone`: laser safety officer of the site.
+    `allowed_hosts`: host names served, separated by commas; blank = any. `request_time`: longest time for
+    head and body to arrive, and for a part of an answer to be taken [s]. `running_limit`: most requests
+    computed at a time, `rate_limit`: most requests of one address a minute (0 = any); both per process.
     """
 
     host: str = "127.0.0.1"
@@ -49,6 +52,10 @@ class Settings:
     sign_policy: str = "standard"
     lso_name: str = ""
     lso_phone: str = ""
+    allowed_hosts: str = ""
+    request_time: int = 30
+    running_limit: int = 100
+    rate_limit: int = 0
 
     @classmethod
     def from_environment(cls, environment: Mapping[str, str] = os.environ) -> Settings:
@@ -68,7 +75,8 @@ class Settings:
                 values[field.name] = text
                 continue
             top = 65535 if field.name == "port" else 1_000_000_000
-            if not text.isdecimal() or not 1 <= int(text) <= top:
-                raise SettingsError(f"{name} is {text!r}, expected a whole number from 1 to {top}")
+            least = 0 if field.name == "rate_limit" else 1
+            if not text.isdecimal() or not least <= int(text) <= top:
+                raise SettingsError(f"{name} is {text!r}, expected a whole number from {least} to {top}")
             values[field.name] = int(text)
         return cls(**values)  # type: ignore[arg-type]

@@ -163,7 +163,7 @@ KINDS = {"free": "Beam", "fibre_single_mode": "FibreSingleMode", "fibre_multimod
 def _tag(value: Any) -> str:
     """Which kind of beam: a fibre end by its name, anything else by waist and divergence."""
     profile = value.get("profile") if isinstance(value, dict) else getattr(value, "profile", None)
-    return profile if profile in KINDS else "free"
+    return profile if isinstance(profile, str) and profile in KINDS else "free"
 
 
 AnyBeam = Annotated[

@@ -83,6 +83,8 @@ class Problem(Exception):
         super().__init__(detail)
         self.detail = detail
         self.errors = list(errors)
+        #: Headers of the answer, by name in small letters.
+        self.headers: dict[str, str] = {}
 
     def document(self) -> ProblemDocument:
         """The document to send."""
@@ -216,13 +218,13 @@ def _allowed(path: list[str], loc: list[str], model: type[BaseModel]) -> str:
     if "anyOf" in schema:
         kinds = [s for s in schema["anyOf"] if s.get("type") != "null"]
         schema = next((s for s in kinds if s.get("type") == "number"), kinds[0])
+    if "enum" in schema:
+        return ", ".join(map(str, schema["enum"]))
     if schema.get("type") in ("number", "integer"):
         unit = UNITS.get(name.rsplit("_", 1)[-1], "")
         pair = ", or a list of two" if name in PAIRS else ""
         kind = "a number" if schema["type"] == "number" else "a whole number"
         return f"{kind}{_numbers(schema)} {unit}".rstrip() + pair
-    if "enum" in schema:
-        return ", ".join(map(str, schema["enum"]))
     if schema.get("type") == "array":
         low, high = schema.get("minItems", 0), schema["maxItems"]
         return f"a list of {low} to {high} items"

@@ -44,6 +44,12 @@ PROBLEMS = {
     "not-found": "There is nothing at this address.",
     "bad-address": "The address of a page has a parameter that the form does not know, or comes from "
     "an older form. Nothing is filled in silently, because a changed value could hide a hazard.",
+    "unknown-host": "The request names a host that the operator of this service has not listed.",
+    "too-many-requests": "Your address asks more often than the operator allows. The header retry-after "
+    "says in how many seconds to ask again.",
+    "overloaded": "More requests are being computed than the operator allows, so this one was refused "
+    "before anything was computed. The header retry-after says when to ask again.",
+    "body-too-slow": "The body of the request did not arrive in the time that the operator allows.",
     "http": "The request cannot be answered; the status and the detail say why.",
 }
 

@@ -32,6 +32,7 @@ def wants_page(request: Request) -> bool:
 def problem_response(request: Request, problem: Problem, headers: dict[str, str] | None = None) -> Response:
     """The answer to a failed request."""
     document = problem.document()
+    headers = {**problem.headers, **(headers or {})}
     if wants_page(request):
         return page(request, "problem.html", status=problem.status, headers=headers, problem=document)
     body = document.model_dump_json()

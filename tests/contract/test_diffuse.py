@@ -60,29 +60,6 @@ def test_small_spot_by_lamberts_law(reflectance: float, angle: float) -> None:
     assert result.eye.worst_place_m == 0.1
 
 
-@pytest.mark.parametrize(
-    ("wavelength", "exposure", "limit", "power", "stated", "printed", "digits"),
-    [
-        # OSHA Technical Manual, table of nominal hazard zones, diffuse (read); the stated old limit [W/cm2]
-        # only scales the power, so that the geometry alone is compared.
-        (1064, 10, 50.0, 100, 0.0051, 0.8, 0.05),
-        (10600, 10, 1000.0, 500, 0.1, 0.4, 0.05),
-        (514.5, 0.25, GLANCE, 5, 0.0025, 0.25, 0.005),
-    ],
-)
-def test_published_diffuse_distances(
-    wavelength: float,
-    exposure: float,
-    limit: float,
-    power: float,
-    stated: float,
-    printed: float,
-    digits: float,
-) -> None:
-    result = run(power * limit / (stated * 1e4), spot_mm=0.01, wavelength=wavelength, exposure=exposure)
-    assert distance(result) == pytest.approx(printed, abs=digits)
-
-
 @pytest.mark.parametrize("spot_mm", [3.0, 20.0, 90.0, 300.0])
 def test_the_limit_is_the_one_at_the_solved_distance(spot_mm: float) -> None:
     """alpha = d / r there; C_E = alpha / 1.5, beyond 100 mrad alpha^2 / 150 (ICNIRP 2013, from memory)."""

@@ -54,6 +54,7 @@ def evaluate(
     emission: dict[str, Any],
     exposure_s: float | None = None,
     subtense_mrad: float = 1.5,
+    bench: list[dict[str, Any]] | None = None,
     **beam: Any,
 ) -> EvaluationResult:
     """The answer of contract v1 for one line; the beam is narrow unless its fields are given."""
@@ -68,6 +69,7 @@ def evaluate(
                 "subtense_mrad": subtense_mrad,
             }
         ],
+        "bench": bench or [],
     }
     return answer(EvaluationRequest.model_validate(request))
 

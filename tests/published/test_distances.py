@@ -66,3 +66,26 @@ def test_to_a_stated_limit(case: Case) -> None:
     stated = case.inputs.get("MPE_W_m2", 1e4 * case.inputs.get("MPE_W_cm2", 0.0))
     width, angle = case.inputs["beam_diameter_mm"] * 1e-3, case.inputs["divergence_mrad"] * 1e-3
     check(case, reach_m(case.inputs["power_W"], stated, width, angle))
+
+
+#: Limit of the product [W/m2] and exposure [s] for each printed diffuse distance.
+DIFFUSE = {
+    "OSHA-YAG-10s-diffuse": (50.0, 10.0),
+    "OSHA-CO2-8h-diffuse": (1000.0, 3e4),
+    "OSHA-AR-0.25s-diffuse": (18 * 0.25**-0.25, 0.25),
+}
+
+
+@pinned(*DIFFUSE)
+def test_off_a_diffuse_surface(case: Case) -> None:
+    """The stated limit of the old edition only scales the power, so that the geometry alone is compared."""
+    allowed, exposure = DIFFUSE[case.id]
+    power = case.inputs["power_W"] * allowed / (case.inputs["MPE_W_cm2"] * 1e4)
+    result = evaluate(
+        ANSI,
+        case.inputs["wavelength_nm"],
+        cw(power),
+        exposure,
+        bench=[{"element": "diffuser", "reflectance": case.inputs["reflectance"]}],
+    )
+    check(case, result.eye.hazard_distance_m)

@@ -63,6 +63,9 @@ class Client:
     def request(self, method: str, url: str, **more: Any) -> httpx.Response:
         return self._runner.run(self._client.request(method, url, **more))
 
+    def send(self, request: httpx.Request) -> httpx.Response:
+        return self._runner.run(self._client.send(request))
+
     def get(self, url: str, **more: Any) -> httpx.Response:
         return self.request("GET", url, **more)
 
