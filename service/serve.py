@@ -21,7 +21,7 @@ from service.logs import configure
 from service.rules.tables import TableError
 from service.settings import Settings, SettingsError
 from service.web.metrics import SHARED
-from service.web.patience import patient_protocol
+from service.web.patience import Patient
 
 __all__ = ["add_command", "application", "run"]
 
@@ -44,6 +44,7 @@ def application() -> FastAPI:
     """The application of one process, with the settings of the environment."""
     settings = Settings.from_environment()
     configure(settings.log)
+    Patient.seconds = settings.request_time
     app = create_app(settings)
     settle()
     return app
@@ -71,7 +72,7 @@ def run(chosen: argparse.Namespace) -> int:
         "access_log": False,
         "server_header": False,
         "timeout_graceful_shutdown": PATIENCE_S,
-        "http": patient_protocol(settings.request_time),
+        "http": Patient,
     }
     if chosen.workers == 1:
         uvicorn.Server(uvicorn.Config(app, **options)).run(sockets=[listener])

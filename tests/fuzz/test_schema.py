@@ -16,5 +16,6 @@ COUNT = {"post": 40, "get": 8}
 @pytest.mark.parametrize("operation", operations(), ids=lambda o: o.label)
 def test_answers_are_sound(client: Client, operation: Any, mode: Any) -> None:
     statuses = send_many(client, operation, mode, COUNT[operation.method], 1)
-    if mode is MODES[1] and operation.method == "post":
+    # A bulk body answers each bad line with a problem in its place.
+    if mode is MODES[1] and operation.method == "post" and not operation.path.endswith("/bulk"):
         assert not any(status < 300 for status in statuses), statuses
