@@ -62,7 +62,9 @@ def record_all(connection: sa.Connection, actor: Actor, entries: Iterable[Entry]
 
 
 def _digest(row: dict[str, Any]) -> str:
-    text = canonical([row[k] for k in ("previous", "at", "actor", "via", "action", "subject", "subject_id", "detail")])
+    text = canonical(
+        [row[k] for k in ("previous", "at", "actor", "via", "action", "subject", "subject_id", "detail")]
+    )
     return hashlib.sha256(text.encode()).hexdigest()
 
 

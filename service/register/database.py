@@ -135,10 +135,11 @@ class Database:
             yield
         except sa.exc.IntegrityError:
             raise
-        except sa.exc.DBAPIError as error:
-            reason = str(error.orig).strip().splitlines()[0] if str(error.orig).strip() else "no reason given"
+        except (sa.exc.DBAPIError, sqlite3.Error) as error:
+            reason = str(getattr(error, "orig", error)).strip() or "no reason given"
             raise RegisterUnavailable(
-                f"the register cannot be used: {reason}. Nothing was changed.", {"retry-after": "5"}
+                f"the register cannot be used: {reason.splitlines()[0]}. Nothing was changed.",
+                {"retry-after": "5"},
             ) from error
         except sa.exc.TimeoutError as error:
             raise RegisterUnavailable("too many requests at once; try again", {"retry-after": "5"}) from error

@@ -22,9 +22,9 @@ __all__ = [
     "LaserIn",
     "LaserPage",
     "LaserSummary",
+    "ReviewIn",
     "Revision",
     "RevisionDocument",
-    "ReviewIn",
     "State",
     "Status",
 ]

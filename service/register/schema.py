@@ -195,6 +195,7 @@ reevaluations = sa.Table(
     METADATA,
     _id(),
     _text("started_at", 32),
+    _text("beat_at", 32),
     _text("ended_at", 32, nullable=True),
     _text("by", 100),
     _text("state", 12),

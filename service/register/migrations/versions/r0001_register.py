@@ -11,17 +11,10 @@ revision = "r0001"
 down_revision = None
 
 #: What a revision holds stays; its result may be added once.
-HELD = [
-    "request",
-    "request_digest",
-    "figures",
-    "tables",
-    "service_version",
-    "created_at",
-    "created_by",
-    "laser_id",
-    "number",
-]
+HELD = (
+    *("laser_id", "number", "request", "request_digest", "figures", "tables"),
+    *("service_version", "created_at", "created_by"),
+)
 SQLITE = (
     "CREATE TRIGGER events_stay BEFORE UPDATE ON events BEGIN SELECT RAISE(ABORT, 'events stay'); END",
     "CREATE TRIGGER events_kept BEFORE DELETE ON events BEGIN SELECT RAISE(ABORT, 'events stay'); END",
@@ -120,6 +113,7 @@ def upgrade() -> None:
         "reevaluations",
         sa.Column("id", sa.Integer(), autoincrement=True, nullable=False),
         sa.Column("started_at", sa.String(length=32), nullable=False),
+        sa.Column("beat_at", sa.String(length=32), nullable=False),
         sa.Column("ended_at", sa.String(length=32), nullable=True),
         sa.Column("by", sa.String(length=100), nullable=False),
         sa.Column("state", sa.String(length=12), nullable=False),
