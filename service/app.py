@@ -13,12 +13,14 @@ from service.contract.answer import rule_sets
 from service.contract.classification import schemes
 from service.contract.problem import NotFound, Problem
 from service.files import DATA
+from service.register.database import Database, database_url
 from service.rules.eyewear import eyewear_tables
 from service.settings import Settings
 from service.web import api, health, pages, rules_pages, static
 from service.web.headers import Envelope
 from service.web.openapi import describe
 from service.web.problems import PlainProblem, problem_response
+from service.web.register import api_admin, api_csv, api_lasers, api_shelf
 
 __all__ = ["create_app"]
 
@@ -36,13 +38,16 @@ def create_app(settings: Settings | None = None) -> FastAPI:
         redoc_url=None,
     )
     app.state.settings = settings or Settings()
+    app.state.register = Database(database_url(app.state.settings.database, app.state.settings.data_dir))
     for router in (api.router, health.router, pages.router, rules_pages.router, static.router):
         app.include_router(router)
+    for module in (api_csv, api_lasers, api_shelf, api_admin):
+        app.include_router(module.router)
     describe(app)
 
     async def on_problem(request: Request, error: Exception) -> Response:
         assert isinstance(error, Problem)
-        return problem_response(request, error)
+        return problem_response(request, error, getattr(error, "headers", None))
 
     async def on_http(request: Request, error: Exception) -> Response:
         assert isinstance(error, HTTPException)

@@ -5,8 +5,11 @@ from __future__ import annotations
 import os
 from collections.abc import Mapping
 from dataclasses import dataclass, fields
+from ipaddress import ip_network
 
 __all__ = ["Settings", "SettingsError"]
+
+SIGN_IN = ("off", "password", "header")
 
 
 class SettingsError(ValueError):
@@ -18,11 +21,20 @@ class Settings:
     """What an operator may set.
 
     `host`, `port`: where `blinkline serve` listens. `body_limit`: largest request body read [bytes].
+    `data_dir`: folder of the register (blank: per user). `database`: PostgreSQL address instead.
+    `sign_in`: off, password or header. `proxies`: addresses of reverse proxies, parted by commas.
+    `user_header`: header in which such a proxy names the user. `import_limit`: largest CSV file [bytes].
     """
 
     host: str = "127.0.0.1"
     port: int = 8321
     body_limit: int = 1_000_000
+    data_dir: str = ""
+    database: str = ""
+    sign_in: str = "off"
+    proxies: str = ""
+    user_header: str = "x-remote-user"
+    import_limit: int = 20_000_000
 
     @classmethod
     def from_environment(cls, environment: Mapping[str, str] = os.environ) -> Settings:
@@ -35,11 +47,29 @@ class Settings:
             if name not in known:
                 raise SettingsError(f"{name} is no setting; there are {', '.join(sorted(known))}")
             field = known[name]
-            if field.name == "host":
-                values["host"] = text
+            if isinstance(field.default, str):
+                values[field.name] = text
                 continue
             top = 65535 if field.name == "port" else 1_000_000_000
             if not text.isdecimal() or not 1 <= int(text) <= top:
                 raise SettingsError(f"{name} is {text!r}, expected a whole number from 1 to {top}")
             values[field.name] = int(text)
-        return cls(**values)  # type: ignore[arg-type]
+        return cls(**values)._checked()  # type: ignore[arg-type]
+
+    def _checked(self) -> Settings:
+        """Itself. Raises SettingsError where texts do not go together."""
+        if self.sign_in not in SIGN_IN:
+            raise SettingsError(f"BLINKLINE_SIGN_IN is {self.sign_in!r}, expected {', '.join(SIGN_IN)}")
+        for address in self.proxy_addresses:
+            try:
+                ip_network(address, strict=False)
+            except ValueError:
+                raise SettingsError(f"BLINKLINE_PROXIES holds {address!r}, which is no address") from None
+        if self.sign_in == "header" and not self.proxies:
+            raise SettingsError("BLINKLINE_SIGN_IN is 'header', so BLINKLINE_PROXIES must name the proxy")
+        return self
+
+    @property
+    def proxy_addresses(self) -> list[str]:
+        """Addresses or networks of the reverse proxies."""
+        return [a.strip() for a in self.proxies.split(",") if a.strip()]

@@ -22,7 +22,7 @@ from service.register.actor import SCOPES, Actor, Role
 from service.register.audit import Entry, record
 from service.register.clock import in_future, now, seconds_since
 from service.register.models import Tag
-from service.register.problems import Conflict, TooManyAttempts, field_error
+from service.register.problems import Conflict, Forbidden, TooManyAttempts, field_error
 from service.register.schema import attempts, sessions, tokens, users
 
 __all__ = [
@@ -55,6 +55,7 @@ SESSION_S = 12 * 3600.0
 #: Failures that are free, the first wait [s], the longest wait [s].
 FREE, FIRST_S, LONGEST_S = 5, 5.0, 900.0
 PREFIX = "blk_"
+TOKEN_COLUMNS = (tokens.c.digest, tokens.c.scope, tokens.c.expires_at)
 
 
 class UserIn(Strict):
@@ -97,7 +98,7 @@ class TokenInfo(Model):
 
 
 def _hashed(password: str, salt: bytes) -> str:
-    digest = hashlib.scrypt(password.encode(), salt=salt, **COST)  # type: ignore[arg-type]
+    digest = hashlib.scrypt(password.encode(), salt=salt, **COST)
     return f"scrypt${base64.b64encode(salt).decode()}${base64.b64encode(digest).decode()}"
 
 
@@ -250,11 +251,13 @@ def actor_of_session(connection: sa.Connection, secret: str) -> Actor | None:
 def make_token(connection: sa.Connection, actor: Actor, body: TokenIn) -> tuple[int, str]:
     """Make an API token of one's own; id and secret, which is shown once.
 
-    Raises InvalidRequest for an unknown scope, Conflict without an account.
+    Raises InvalidRequest for an unknown scope, Forbidden for a wider one, Conflict without an account.
     """
     if body.scope not in SCOPES:
         error = field_error("scope", body.scope, ", ".join(SCOPES), "unknown scope", "Choose one of those.")
         raise InvalidRequest("scope: unknown scope", [error])
+    if not actor.may(SCOPES[body.scope]):
+        raise Forbidden(f"a token of scope {body.scope} reaches farther than you do")
     if actor.user_id is None:
         raise Conflict("tokens belong to user accounts; there is none without sign-in")
     secret = PREFIX + secrets.token_urlsafe(32)
@@ -275,7 +278,7 @@ def make_token(connection: sa.Connection, actor: Actor, body: TokenIn) -> tuple[
 def revoke_token(connection: sa.Connection, actor: Actor, token_id: int) -> None:
     """Revoke a token: one's own, or anybody's as admin. Raises NotFound."""
     row = connection.execute(sa.select(tokens).where(tokens.c.id == token_id)).mappings().first()
-    if row is None or (row["user_id"] != actor.user_id and not actor.may("admin")):
+    if row is None or (row["user_id"] != actor.user_id and not actor.may("admin")):  # others' stay unseen
         raise NotFound(f"there is no token {token_id} of yours")
     if row["revoked_at"] is None:
         connection.execute(sa.update(tokens).where(tokens.c.id == token_id).values(revoked_at=now()))

@@ -96,6 +96,7 @@ def restore(database: Database, file: Path) -> dict[str, int]:
             for table in _tables():
                 if connection.execute(sa.select(sa.literal(1)).select_from(table).limit(1)).first():
                     raise BackupError(f"the register is not empty ({table.name}); restore into a new one")
+            end, batch, of = None, list[dict[str, Any]](), ""
             head = json.loads(next(lines, "null"))
             if not isinstance(head, dict) or head.get("register", {}).get("format") != FORMAT:
                 raise BackupError(f"{file} is no backup of a register")
@@ -104,26 +105,25 @@ def restore(database: Database, file: Path) -> dict[str, int]:
                     f"{file} has tables of version {head['register']['schema']}, this service makes "
                     f"{_schema(connection)}; restore with the service that made it, then upgrade"
                 )
-            batch: dict[str, list[dict[str, Any]]] = {}
-            end = None
             for line in lines:
                 entry = json.loads(line)
                 if isinstance(entry, dict):
                     end = entry.get("end")
                     break
                 name, row = entry
-                batch.setdefault(name, []).append(_in(row))
+                if batch and (name != of or len(batch) >= BATCH):
+                    connection.execute(sa.insert(tables[of]), batch)
+                    batch = []
+                of = name
+                batch.append(_in(row))
                 counts[name] += 1
-                if len(batch[name]) >= BATCH:
-                    connection.execute(sa.insert(tables[name]), batch.pop(name))
-            for table in _tables():
-                if rows := batch.get(table.name):
-                    connection.execute(sa.insert(table), rows)
+            if batch:
+                connection.execute(sa.insert(tables[of]), batch)
             if end != counts:
                 raise BackupError(f"{file} is not complete; nothing was restored")
             if not database.sqlite:
                 _sequences(connection)
-    except (OSError, EOFError, ValueError, KeyError, TypeError) as error:
+    except (OSError, EOFError, ValueError, KeyError, TypeError, sa.exc.IntegrityError) as error:
         if isinstance(error, BackupError):
             raise
         raise BackupError(f"cannot read {file}: {error}") from None

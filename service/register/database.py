@@ -68,7 +68,8 @@ class Database:
     def __init__(self, url: sa.URL) -> None:
         self.url = url
         self.sqlite = url.drivername == "sqlite"
-        self._writing = threading.Lock()
+        self._writing, self._opening = threading.Lock(), threading.Lock()
+        self._opened = False
         if self.sqlite:
             options: dict[str, Any] = {
                 "connect_args": {"timeout": BUSY_MS / 1000, "check_same_thread": False}
@@ -103,6 +104,14 @@ class Database:
                     yield connection
             finally:
                 self._writing.release()
+
+    def open(self) -> None:
+        """Bring the tables up to date, once in the life of this object."""
+        if not self._opened:
+            with self._opening:
+                if not self._opened:
+                    self.migrate()
+                    self._opened = True
 
     def migrate(self) -> None:
         """Bring the tables up to date; makes the folder and the file where there is none yet."""

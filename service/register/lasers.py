@@ -111,7 +111,9 @@ def update(
     old = {k: row[k] for k in IDENTITY}
     changed = {k: {"from": old[k], "to": identity[k]} for k in IDENTITY if old[k] != identity[k]}
     current = revision_row(connection, laser_id, row["revision"])
-    same = request_from(current["request"]) == kept.request
+    # Another name is no other setup.
+    before = request_from(current["request"]).model_copy(update={"label": kept.request.label})
+    same = before == kept.request
     if not changed and same:
         return False
     if row["status"] == "retired":

@@ -5,7 +5,6 @@ from __future__ import annotations
 import base64
 import binascii
 import json
-from collections.abc import Iterator
 from typing import Annotated, Any, Literal
 
 import sqlalchemy as sa
@@ -21,7 +20,7 @@ from service.register.problems import field_error
 from service.register.schema import lasers
 from service.register.stored import summary
 
-__all__ = ["SORTS", "Filters", "Sort", "every_laser", "overview", "page_of", "stale"]
+__all__ = ["SORTS", "Filters", "Sort", "overview", "page_of", "stale"]
 
 Sort = Literal[
     "asset_tag", "label", "place", "owner", "status", "class", "distance", "density", "review", "updated"
@@ -84,6 +83,11 @@ class Filters(Strict):
             found.append(stale())
         return found
 
+    def order(self) -> tuple[sa.ColumnElement[Any], ...]:
+        """The order of the query; the id decides between equals."""
+        key = SORTS[self.sort]
+        return (key.desc(), lasers.c.id.desc()) if self.descending else (key, lasers.c.id)
+
 
 def stale() -> sa.ColumnElement[bool]:
     """Condition: the figures of a laser in use were made with other tables, or another service."""
@@ -102,19 +106,11 @@ def page_of(connection: sa.Connection, filters: Filters, limit: int, cursor: str
         after = sa.tuple_(key, lasers.c.id)
         bound = sa.tuple_(sa.literal(value, key.type), sa.literal(last))
         query = query.where(after < bound if filters.descending else after > bound)
-    order = (key.desc(), lasers.c.id.desc()) if filters.descending else (key, lasers.c.id)
-    rows = connection.execute(query.order_by(*order).limit(limit + 1)).mappings().all()
+    rows = connection.execute(query.order_by(*filters.order()).limit(limit + 1)).mappings().all()
     more = len(rows) > limit
     rows = rows[:limit]
     following = _write(rows[-1]["sort_key"], rows[-1]["id"], filters) if more else None
     return LaserPage(items=[summary(dict(r)) for r in rows], next=following, total=total)
-
-
-def every_laser(connection: sa.Connection, filters: Filters) -> Iterator[Any]:
-    """Rows of every laser that the filters name, in their order."""
-    key = SORTS[filters.sort]
-    order = (key.desc(), lasers.c.id.desc()) if filters.descending else (key, lasers.c.id)
-    yield from connection.execute(sa.select(lasers).where(*filters.conditions()).order_by(*order)).mappings()
 
 
 def _mark(filters: Filters) -> str:

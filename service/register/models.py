@@ -75,7 +75,8 @@ Tag = Annotated[str, Field(max_length=60), AfterValidator(clean), AfterValidator
 Text = Annotated[str, Field(max_length=200), AfterValidator(clean)]
 Reason = Annotated[str, Field(max_length=500), AfterValidator(clean)]
 Comment = Annotated[str, Field(max_length=2000), AfterValidator(cleaned_lines)]
-Day = Annotated[str | None, BeforeValidator(_blank_is_none), AfterValidator(_date), Field(max_length=10)]
+DayText = Annotated[str, Field(max_length=10, json_schema_extra={"format": "date"})]
+Day = Annotated[DayText | None, BeforeValidator(_blank_is_none), AfterValidator(_date)]
 
 
 class LaserIn(Strict):
@@ -94,6 +95,11 @@ class LaserIn(Strict):
     def name(self) -> str:
         """The label, or that of the request."""
         return self.label or self.request.label
+
+    @property
+    def asked(self) -> EvaluationRequest:
+        """The request under the name of the laser."""
+        return self.request.model_copy(update={"label": self.name})
 
 
 class DecisionIn(Strict):

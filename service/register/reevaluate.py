@@ -31,6 +31,7 @@ from service.register.lasers import new_revision
 from service.register.models import Figures
 from service.register.problems import Conflict
 from service.register.schema import lasers, reevaluated, reevaluations, revisions
+from service.register.stored import MOST
 
 __all__ = ["Changed", "Run", "adopt", "changes_of", "run_of", "runs", "start", "work"]
 
@@ -182,6 +183,8 @@ def runs(connection: sa.Connection, limit: int = 20) -> list[Run]:
 
 def run_of(connection: sa.Connection, run_id: int) -> Run:
     """One pass. Raises NotFound."""
+    if run_id > MOST:
+        raise NotFound(f"there is no re-evaluation {run_id}")
     row = connection.execute(sa.select(reevaluations).where(reevaluations.c.id == run_id)).mappings().first()
     if row is None:
         raise NotFound(f"there is no re-evaluation {run_id}")

@@ -18,6 +18,7 @@ from service.register.lasers import expect_version
 from service.register.models import EyewearIn, EyewearRecord
 from service.register.problems import Conflict
 from service.register.schema import eyewear, matches
+from service.register.stored import MOST
 
 __all__ = ["add", "change", "pair_of", "record_of", "shelf_list", "shelf_row"]
 
@@ -42,6 +43,8 @@ def pair_of(row: Mapping[str, Any]) -> Eyewear:
 
 def shelf_row(connection: sa.Connection, eyewear_id: int) -> dict[str, Any]:
     """The row of a pair. Raises NotFound."""
+    if eyewear_id > MOST:
+        raise NotFound(f"there is no eyewear {eyewear_id} on the shelf")
     row = connection.execute(sa.select(eyewear).where(eyewear.c.id == eyewear_id)).mappings().first()
     if row is None:
         raise NotFound(f"there is no eyewear {eyewear_id} on the shelf")

@@ -15,6 +15,7 @@ from service.register.models import Decision, Figures, Laser, LaserSummary, Revi
 from service.register.schema import decisions, lasers, revisions
 
 __all__ = [
+    "MOST",
     "history",
     "laser",
     "laser_row",
@@ -25,6 +26,8 @@ __all__ = [
 ]
 
 Row = Mapping[str, Any]
+#: The highest id that the tables hold.
+MOST = 2**31 - 1
 AS_STORED = (
     *("id", "asset_tag", "label", "place", "owner", "manufacturer", "status"),
     *("version", "revision", "approved_revision", "review_due"),
@@ -59,6 +62,8 @@ def summary(row: Row) -> LaserSummary:
 
 def laser_row(connection: sa.Connection, laser_id: int) -> Row:
     """The row of a laser. Raises NotFound."""
+    if laser_id > MOST:
+        raise NotFound(f"there is no laser {laser_id} in the register")
     row = connection.execute(sa.select(lasers).where(lasers.c.id == laser_id)).mappings().first()
     if row is None:
         raise NotFound(f"there is no laser {laser_id} in the register")
@@ -67,6 +72,8 @@ def laser_row(connection: sa.Connection, laser_id: int) -> Row:
 
 def revision_row(connection: sa.Connection, laser_id: int, number: int) -> Row:
     """The row of a revision. Raises NotFound."""
+    if max(laser_id, number) > MOST:
+        raise NotFound(f"laser {laser_id} has no revision {number}")
     query = sa.select(revisions).where(revisions.c.laser_id == laser_id, revisions.c.number == number)
     row = connection.execute(query).mappings().first()
     if row is None:

@@ -19,7 +19,7 @@ from service.contract.problem import (
 )
 from service.contract.request import EvaluationRequest
 
-__all__ = ["read_request"]
+__all__ = ["read_json", "read_limited", "read_request"]
 
 #: Integers with more digits than any double holds are read as infinite, and refused by their field.
 MAX_DIGITS = 400
@@ -80,7 +80,11 @@ async def _read_body(request: Request) -> bytes:
     media = request.headers.get("content-type", "").partition(";")[0].strip().lower()
     if media != "application/json" and not media.endswith("+json"):
         raise UnsupportedMedia(f"content-type is {media[:100]!r}; send application/json")
-    limit = request.app.state.settings.body_limit
+    return await read_limited(request, request.app.state.settings.body_limit)
+
+
+async def read_limited(request: Request, limit: int) -> bytes:
+    """The body. Raises BodyTooLarge beyond a limit [bytes]."""
     parts, size = [], 0
     async for chunk in request.stream():
         size += len(chunk)
@@ -90,8 +94,8 @@ async def _read_body(request: Request) -> bytes:
     return b"".join(parts)
 
 
-async def read_request(request: Request) -> EvaluationRequest:
-    """The evaluation request in the body. Raises a Problem that names what is wrong."""
+async def read_json(request: Request) -> Any:
+    """The JSON document in the body. Raises a Problem that names what is wrong."""
     body = await _read_body(request)
     try:
         data = json.loads(body.decode(), object_pairs_hook=_object, parse_int=_integer)
@@ -102,6 +106,12 @@ async def read_request(request: Request) -> EvaluationRequest:
         raise MalformedBody("the body is not UTF-8 text") from None
     except RecursionError:
         raise MalformedBody("the body is nested too deeply") from None
+    return data
+
+
+async def read_request(request: Request) -> EvaluationRequest:
+    """The evaluation request in the body. Raises a Problem that names what is wrong."""
+    data = await read_json(request)
     try:
         return EvaluationRequest.model_validate(data)
     except ValidationError as error:
