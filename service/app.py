@@ -20,9 +20,24 @@ from service.web import api, health, pages, rules_pages, static
 from service.web.headers import Envelope
 from service.web.openapi import describe
 from service.web.problems import PlainProblem, problem_response
-from service.web.register import api_admin, api_csv, api_lasers, api_shelf
+from service.web.register import (
+    api_admin,
+    api_csv,
+    api_lasers,
+    api_shelf,
+    pages_accounts,
+    pages_csv,
+    pages_lasers,
+    pages_shelf,
+    pages_signoff,
+)
 
 __all__ = ["create_app"]
+
+REGISTER = (
+    *(api_csv, api_lasers, api_shelf, api_admin),
+    *(pages_csv, pages_lasers, pages_signoff, pages_shelf, pages_accounts),
+)
 
 
 def create_app(settings: Settings | None = None) -> FastAPI:
@@ -41,7 +56,7 @@ def create_app(settings: Settings | None = None) -> FastAPI:
     app.state.register = Database(database_url(app.state.settings.database, app.state.settings.data_dir))
     for router in (api.router, health.router, pages.router, rules_pages.router, static.router):
         app.include_router(router)
-    for module in (api_csv, api_lasers, api_shelf, api_admin):
+    for module in REGISTER:
         app.include_router(module.router)
     describe(app)
 

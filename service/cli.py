@@ -7,9 +7,12 @@ import socket
 import sys
 
 import uvicorn
+from fastapi import FastAPI
 
-from service import __version__
+from service import __version__, register_commands
 from service.app import create_app
+from service.contract.problem import Problem
+from service.register.database import shown_url
 from service.rules.tables import TableError
 from service.settings import Settings, SettingsError
 
@@ -24,9 +27,12 @@ def main(arguments: list[str] | None = None) -> int:
     serve = commands.add_parser("serve", help="serve pages and API")
     serve.add_argument("--host", help="address to listen on (default: BLINKLINE_HOST or 127.0.0.1)")
     serve.add_argument("--port", type=int, help="port to listen on (default: BLINKLINE_PORT or 8321)")
+    register_commands.add_commands(commands)
     chosen = parser.parse_args(arguments)
     try:
         settings = Settings.from_environment()
+        if chosen.command != "serve":
+            return register_commands.run(chosen, settings)
         app = create_app(settings)
     except (SettingsError, TableError) as error:
         print(f"blinkline: {error}", file=sys.stderr)
@@ -38,9 +44,20 @@ def main(arguments: list[str] | None = None) -> int:
         print(f"blinkline: cannot listen on {host} port {port}: {error}", file=sys.stderr)
         return 2
     print(f"Blinkline {__version__} on http://{host}:{listener.getsockname()[1]}", flush=True)
-    config = uvicorn.Config(app, log_level="warning", server_header=False)
+    _open_register(app)
+    # What a proxy forwards is read by the register itself, from the proxies named in the settings.
+    config = uvicorn.Config(app, log_level="warning", server_header=False, proxy_headers=False)
     uvicorn.Server(config).run(sockets=[listener])
     return 0
+
+
+def _open_register(app: FastAPI) -> None:
+    """Open the register, or tell why it stays closed: evaluations work without."""
+    try:
+        app.state.register.open()
+    except Problem as problem:
+        place = shown_url(app.state.register.url)
+        print(f"blinkline: no register at {place}: {problem.detail}", file=sys.stderr, flush=True)
 
 
 def _listen(host: str, port: int) -> socket.socket:

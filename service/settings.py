@@ -7,6 +7,8 @@ from collections.abc import Mapping
 from dataclasses import dataclass, fields
 from ipaddress import ip_network
 
+from service.register.database import database_url
+
 __all__ = ["Settings", "SettingsError"]
 
 SIGN_IN = ("off", "password", "header")
@@ -67,6 +69,10 @@ class Settings:
                 raise SettingsError(f"BLINKLINE_PROXIES holds {address!r}, which is no address") from None
         if self.sign_in == "header" and not self.proxies:
             raise SettingsError("BLINKLINE_SIGN_IN is 'header', so BLINKLINE_PROXIES must name the proxy")
+        try:
+            database_url(self.database, self.data_dir)
+        except ValueError as error:
+            raise SettingsError(f"BLINKLINE_DATABASE cannot be used: {error}") from None
         return self
 
     @property

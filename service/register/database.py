@@ -11,6 +11,7 @@ import sqlite3
 import threading
 from collections.abc import Iterator
 from contextlib import contextmanager
+from importlib.util import find_spec
 from pathlib import Path
 from typing import Any
 
@@ -43,6 +44,8 @@ def database_url(database: str, data_dir: str) -> sa.URL:
     except sa.exc.ArgumentError:
         raise ValueError("it is no address such as postgresql://user@host/name") from None
     if url.drivername in ("postgresql", "postgres", "postgresql+psycopg"):
+        if find_spec("psycopg") is None:
+            raise ValueError("PostgreSQL needs the extra 'postgresql' (the package psycopg)")
         return url.set(drivername="postgresql+psycopg")
     if url.drivername == "sqlite" and url.database and url.database != ":memory:":
         return url

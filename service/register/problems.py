@@ -20,6 +20,7 @@ __all__ = [
     "Conflict",
     "Forbidden",
     "KeyReused",
+    "RegisterProblem",
     "RegisterUnavailable",
     "SignInNeeded",
     "StaleVersion",

@@ -37,6 +37,7 @@ __all__ = [
     "Visitor",
     "actor_of",
     "check_form",
+    "check_site",
     "drop_cookie",
     "form_token",
     "over_tls",
