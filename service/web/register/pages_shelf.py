@@ -8,6 +8,7 @@ from fastapi import APIRouter
 from starlette.requests import Request
 from starlette.responses import Response
 
+from service.contract.classification import schemes
 from service.contract.problem import FieldError, InvalidRequest, Problem
 from service.register import listing, matching, reevaluate, shelf
 from service.register.actor import Actor
@@ -171,8 +172,8 @@ def overview_page(request: Request, actor: View, database: Store) -> Response:
     """By class, overdue, without suitable eyewear, with other tables."""
     with database.read() as connection:
         counts = listing.overview(connection)
-        overdue = listing.page_of(connection, listing.Filters(overdue=True, sort="review"), 50, None)
-        waiting = listing.page_of(connection, listing.Filters(status="submitted"), 50, None)
+        overdue = listing.page_of(connection, listing.Filters(overdue=True, sort="review"), 10, None)
+        waiting = listing.page_of(connection, listing.Filters(status="submitted"), 10, None)
     return register_page(
         request,
         actor,
@@ -180,6 +181,7 @@ def overview_page(request: Request, actor: View, database: Store) -> Response:
         counts=counts,
         overdue=overdue,
         waiting=waiting,
+        classes=[c.name for c in next(iter(schemes().values())).scheme.classes],
         cover=matching.without_eyewear(database),
     )
 
