@@ -93,5 +93,5 @@ def _known(connection: sa.Connection, tags: list[str]) -> dict[str, int]:
         query = sa.select(lasers.c.asset_tag, lasers.c.id).where(
             lasers.c.asset_tag.in_(tags[start : start + TAGS])
         )
-        found.update((tag, i) for tag, i in connection.execute(query).tuples())
+        found.update((str(tag), int(i)) for tag, i in connection.execute(query))
     return found

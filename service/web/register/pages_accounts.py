@@ -66,7 +66,7 @@ def _sign_in_page(
         "sign_in.html",
         problem=problem,
         following=_next(following),
-        name=name,
+        typed=name,
         nobody=nobody,
     )
 
