@@ -14,6 +14,7 @@ import sqlalchemy as sa
 
 from service import __version__
 from service.contract.problem import InvalidRequest
+from service.contract.request import EvaluationRequest
 from service.register.actor import Actor
 from service.register.audit import Entry, record_all
 from service.register.clock import now
@@ -27,12 +28,22 @@ from service.register.figures import (
     tables_digest,
     tables_of,
 )
-from service.register.models import LaserIn
+from service.register.figures import kept as evaluate_kept
+from service.register.models import Figures, LaserIn
 from service.register.problems import Conflict, StaleVersion, field_error
 from service.register.schema import lasers, revisions
 from service.register.stored import laser_row, revision_row
 
-__all__ = ["IDENTITY", "create", "create_all", "expect_version", "find_tag", "new_revision", "update"]
+__all__ = [
+    "IDENTITY",
+    "create",
+    "create_all",
+    "expect_version",
+    "find_tag",
+    "new_revision",
+    "prepared",
+    "update",
+]
 
 IDENTITY = ("asset_tag", "label", "place", "owner", "manufacturer", "review_due")
 Row = dict[str, Any]
@@ -50,6 +61,25 @@ def expect_version(row: Any, version: int | None) -> None:
         raise StaleVersion(
             f"version {version} was read, but the record is at version {row['version']}. Read it again."
         )
+
+
+def prepared(connection: sa.Connection, laser_id: int, version: int | None, body: LaserIn) -> Kept:
+    """What `update` is to store: evaluated anew only where the request differs from the stored one.
+
+    Raises NotFound, and StaleVersion before anything is computed.
+    """
+    row = laser_row(connection, laser_id)
+    expect_version(row, version)
+    if version is not None:
+        current = revision_row(connection, laser_id, row["revision"])
+        if _same_setup(current, body.asked):
+            return Kept(body.asked, Figures.model_validate_json(current["figures"]), None)
+    return evaluate_kept(body.asked)
+
+
+def _same_setup(current: Any, request: EvaluationRequest) -> bool:
+    """Whether a revision holds this request; another name is no other setup."""
+    return request_from(current["request"]).model_copy(update={"label": request.label}) == request
 
 
 def create(connection: sa.Connection, actor: Actor, body: LaserIn, kept: Kept) -> int:
@@ -111,9 +141,7 @@ def update(
     old = {k: row[k] for k in IDENTITY}
     changed = {k: {"from": old[k], "to": identity[k]} for k in IDENTITY if old[k] != identity[k]}
     current = revision_row(connection, laser_id, row["revision"])
-    # Another name is no other setup.
-    before = request_from(current["request"]).model_copy(update={"label": kept.request.label})
-    same = before == kept.request
+    same = _same_setup(current, kept.request)
     if not changed and same:
         return False
     if row["status"] == "retired":

@@ -198,11 +198,13 @@ def test_an_exported_register_imports_back_the_same(web: Web, address: str, tmp_
 
 
 def test_ten_thousand_rows(web: Web) -> None:
-    """Each laser's figures are checked against the closed form of a narrow Gaussian beam elsewhere."""
-    rows = [f"T-{n},Laser {n},,{400 + n % 700},cw,{(1 + n % 50) * 0.001:.3f},2,1" for n in range(10_000)]
-    assert web.ok(send(web, table(*rows)))["created"] == 10_000
-    assert web.ok(web.get(f"{LASERS}?limit=1"))["total"] == 10_000
-    assert web.ok(web.get(f"{LASERS}?asset_tag=T-9999"))["items"][0]["wavelengths_nm"] == "599"
+    """A tenth of them on PostgreSQL; a second import finds nothing to do."""
+    count = 10_000 if web.app.state.register.sqlite else 1_000
+    rows = [f"T-{n},Laser {n},,{400 + n % 700},cw,{(1 + n % 50) * 0.001:.3f},2,1" for n in range(count)]
+    assert web.ok(send(web, table(*rows)))["created"] == count
+    assert web.ok(web.get(f"{LASERS}?limit=1"))["total"] == count
+    assert web.ok(web.get(f"{LASERS}?asset_tag=T-999"))["items"][0]["wavelengths_nm"] == "699"
+    assert web.ok(send(web, table(*rows[:500])))["unchanged"] == 500
 
 
 def test_the_page_tells_the_columns_and_the_errors(web: Web) -> None:

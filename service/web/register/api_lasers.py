@@ -126,7 +126,8 @@ def put_laser(request: Request, actor: Edit, database: Store, data: JsonBody, la
     """Replaces identity and request; another request makes a new revision, a draft. Needs If-Match."""
     version = if_match(request, "laser", laser_id)
     body = parsed(LaserIn, data)
-    result = kept(body.asked)
+    with database.read() as connection:
+        result = lasers.prepared(connection, laser_id, version, body)
     with database.write() as connection:
         lasers.update(connection, actor, laser_id, version, body, result)
     return _laser(request, database, laser_id)
