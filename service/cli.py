@@ -43,8 +43,8 @@ def main(arguments: list[str] | None = None) -> int:
     except (OSError, OverflowError) as error:
         print(f"blinkline: cannot listen on {host} port {port}: {error}", file=sys.stderr)
         return 2
-    print(f"Blinkline {__version__} on http://{host}:{listener.getsockname()[1]}", flush=True)
     _open_register(app)
+    print(f"Blinkline {__version__} on http://{host}:{listener.getsockname()[1]}", flush=True)
     # What a proxy forwards is read by the register itself, from the proxies named in the settings.
     config = uvicorn.Config(app, log_level="warning", server_header=False, proxy_headers=False)
     uvicorn.Server(config).run(sockets=[listener])

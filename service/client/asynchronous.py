@@ -89,14 +89,17 @@ class AsyncClient(Shared):
         return await self._run(calls.change(laser, body))
 
     async def upsert(self, body: Body) -> tuple[Laser, Done]:
-        """Create the laser, or change the one with this asset tag; a lost race is run again."""
+        """Create the laser, or change the one with this asset tag; a lost race is run again.
+
+        Of a laser that is there, what the body does not name stays as it is.
+        """
         tag = calls.tag_of(body)
         for _ in range(5):
             found = await self.find(tag)
             try:
                 if found is None:
                     return await self.create(body), "created"
-                laser = await self.change(found, body)
+                laser = await self.change(found, calls.merged(found, body))
             except Stale:
                 continue
             except InConflict:

@@ -45,6 +45,7 @@ __all__ = [
     "import_csv",
     "laser_of",
     "lasers_page",
+    "merged",
     "pause",
     "put_on_shelf",
     "revisions_of",
@@ -209,6 +210,13 @@ def put_on_shelf(body: Body) -> Call[EyewearRecord]:
 def tag_of(body: Body) -> str:
     """The asset tag of a laser to be sent."""
     return str(_plain(body)["asset_tag"]).strip()
+
+
+def merged(found: LaserSummary, body: Body) -> dict[str, Any]:
+    """A change that keeps what it does not name."""
+    given = body.model_dump(mode="json", exclude_unset=True) if isinstance(body, BaseModel) else dict(body)
+    kept = {n: getattr(found, n) for n in ("label", "place", "owner", "manufacturer", "review_due")}
+    return {**kept, **given}
 
 
 def pause(tries: int, response: httpx.Response | None) -> float:

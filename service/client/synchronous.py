@@ -88,14 +88,17 @@ class Client(Shared):
         return self._run(calls.change(laser, body))
 
     def upsert(self, body: Body) -> tuple[Laser, Done]:
-        """Create the laser, or change the one with this asset tag; a lost race is run again."""
+        """Create the laser, or change the one with this asset tag; a lost race is run again.
+
+        Of a laser that is there, what the body does not name stays as it is.
+        """
         tag = calls.tag_of(body)
         for _ in range(5):
             found = self.find(tag)
             try:
                 if found is None:
                     return self.create(body), "created"
-                laser = self.change(found, body)
+                laser = self.change(found, calls.merged(found, body))
             except Stale:
                 continue
             except InConflict:

@@ -11,11 +11,12 @@ from service.contract.result import Model
 from service.register.actor import Actor
 from service.register.audit import Entry, record
 from service.register.database import Database
-from service.register.figures import evaluated
-from service.register.lasers import create_all, update
+from service.register.figures import Kept, evaluated
+from service.register.lasers import IDENTITY, create_all, update
 from service.register.models import LaserIn
 from service.register.problems import Conflict, field_error
 from service.register.schema import lasers
+from service.register.stored import laser_row
 
 __all__ = ["Imported", "import_all", "refusal"]
 
@@ -63,8 +64,11 @@ def import_all(
                 if laser_id is None:
                     new.append((body, kept))
                     continue
+                whole = _completed(connection, laser_id, body)
                 try:
-                    changed = update(connection, actor, laser_id, None, body, kept)
+                    changed = update(
+                        connection, actor, laser_id, None, whole, Kept(whole.asked, kept.figures, None)
+                    )
                 except Conflict as problem:
                     remedy = "Decide on the revision or reinstate the laser first, or leave the row out."
                     name = f"row {row}, asset_tag"
@@ -85,6 +89,12 @@ def import_all(
     except _Undo:
         pass
     return result
+
+
+def _completed(connection: sa.Connection, laser_id: int, body: LaserIn) -> LaserIn:
+    """A change with what it does not name as it is stored: a missing column clears nothing."""
+    row = laser_row(connection, laser_id)
+    return body.model_copy(update={n: row[n] for n in IDENTITY if n not in body.model_fields_set})
 
 
 def _known(connection: sa.Connection, tags: list[str]) -> dict[str, int]:

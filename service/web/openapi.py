@@ -10,6 +10,7 @@ from pydantic.json_schema import models_json_schema
 
 from service.contract.problem import ProblemDocument
 from service.contract.request import EvaluationRequest
+from service.web.register.described import BODIES as REGISTER_BODIES
 
 __all__ = ["describe"]
 
@@ -67,7 +68,12 @@ def describe(app: FastAPI) -> None:
             return app.openapi_schema
         document = get_openapi(title=app.title, version=app.version, routes=app.routes)
         _, definitions = models_json_schema(
-            [(EvaluationRequest, "validation"), (ProblemDocument, "serialization")], ref_template=TEMPLATE
+            [
+                (EvaluationRequest, "validation"),
+                (ProblemDocument, "serialization"),
+                *((model, "validation") for model in dict.fromkeys(REGISTER_BODIES.values())),
+            ],
+            ref_template=TEMPLATE,
         )
         document.setdefault("components", {}).setdefault("schemas", {}).update(definitions["$defs"])
         problem = {
@@ -76,8 +82,11 @@ def describe(app: FastAPI) -> None:
                 "application/problem+json": {"schema": {"$ref": TEMPLATE.format(model="ProblemDocument")}}
             },
         }
+        _describe_register(document, problem)
         for path, operations in document["paths"].items():
             for operation in operations.values():
+                if operation.get("tags") == ["register"]:
+                    continue
                 operation["responses"].pop("422", None)
                 statuses = ("400", "413", "415", "422") if path in BODIES else ("404",) if "{" in path else ()
                 for status in statuses:
@@ -92,3 +101,30 @@ def describe(app: FastAPI) -> None:
         return document
 
     app.openapi = openapi  # type: ignore[method-assign]
+
+
+def _describe_register(document: dict[str, Any], problem: dict[str, Any]) -> None:
+    """Bodies and problems of the register's routes."""
+    for path, operations in document["paths"].items():
+        for method, operation in operations.items():
+            if operation.get("tags") != ["register"]:
+                continue
+            operation["responses"].pop("422", None)
+            statuses = ["401", "403", "422", "503", *(["404"] if "{" in path else [])]
+            if method != "get":
+                statuses += ["400", "409", "412", "413", "415", "428"]
+                operation.setdefault(
+                    "requestBody",
+                    {"required": True, "content": {"application/json": {"schema": _body(method, path)}}},
+                )
+                if method == "delete":
+                    del operation["requestBody"]
+            for status in statuses:
+                operation["responses"][status] = problem
+
+
+def _body(method: str, path: str) -> dict[str, Any]:
+    model = REGISTER_BODIES.get((method, path))
+    if model is None:
+        return {"type": "object", "maxProperties": 0}
+    return {"$ref": TEMPLATE.format(model=model.__name__)}

@@ -53,6 +53,14 @@ def test_a_known_tag_changes_that_laser(web: Web) -> None:
     assert web.ok(web.get(f"{LASERS}?asset_tag=BL-1"))["items"][0]["revision"] == 2
 
 
+def test_what_a_file_does_not_name_stays(web: Web) -> None:
+    web.create(laser("BL-1", owner="A. Example", review_due="2027-01-31", place="Old"))
+    web.ok(send(web, table(ROW.format(n=1).replace("0.1", "0.2"))))
+    found = web.ok(web.get(f"{LASERS}/1"))
+    assert (found["owner"], found["review_due"], found["revision"]) == ("A. Example", "2027-01-31", 2)
+    assert found["place"] == "Room 1"
+
+
 def test_checking_stores_nothing(web: Web) -> None:
     done = web.ok(send(web, table(ROW.format(n=1)), "?check_only=true"))
     assert done == {"checked_only": True, "created": 1, "changed": 0, "unchanged": 0}

@@ -123,8 +123,8 @@ def _laser(number: int, names: list[str], cells: list[str]) -> tuple[list[FieldE
                 _error(number, name, cell[:40], f"at most {MAX_CELL} characters", "the cell is too long")
             )
             row[name] = ""
-    identity = {n: unguarded(row.get(n, "")) for n in IDENTITY}
-    request = _request(number, row, identity["label"], errors)
+    identity = {n: unguarded(row[n]) for n in IDENTITY if n in row}
+    request = _request(number, row, identity.get("label", ""), errors)
     if errors:
         return errors, None
     try:

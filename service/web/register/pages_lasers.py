@@ -305,4 +305,4 @@ def bulk_step(request: Request, actor: Edit, database: Store, fields: FormFields
             done.append(row["asset_tag"])
         except Problem as problem:
             left.append(field_error(f"laser {laser_id}", None, "", problem.detail, ""))
-    return register_page(request, actor, "bulk.html", done=done, left=left, step=step, empty=not ids)
+    return register_page(request, actor, "bulk.html", finished=done, left=left, step=step, empty=not ids)
