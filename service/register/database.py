@@ -161,9 +161,9 @@ def _on_connect(connection: sqlite3.Connection, _: object) -> None:
     """Transactions are begun by us; every commit is on disk before it is acknowledged."""
     connection.isolation_level = None
     for pragma in (
+        f"busy_timeout={BUSY_MS}",
         "journal_mode=WAL",
         "synchronous=FULL",
-        f"busy_timeout={BUSY_MS}",
         "foreign_keys=ON",
     ):
         connection.execute(f"PRAGMA {pragma}")

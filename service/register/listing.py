@@ -18,7 +18,7 @@ from service.register.figures import tables_digest
 from service.register.models import Day, LaserPage, Text
 from service.register.problems import field_error
 from service.register.schema import lasers
-from service.register.stored import summary
+from service.register.stored import MOST, summary
 
 __all__ = ["SORTS", "Filters", "Sort", "overview", "page_of", "stale"]
 
@@ -122,12 +122,20 @@ def _write(value: Any, last: int, filters: Filters) -> str:
     return base64.urlsafe_b64encode(text.encode()).decode().rstrip("=")
 
 
+def _storable(value: Any) -> bool:
+    """Whether a database can hold a value: whole characters without NUL, finite numbers."""
+    if isinstance(value, str):
+        return "\0" not in value and value.encode(errors="replace").decode() == value
+    return bool(abs(value) < 1e308)
+
+
 def _read(cursor: str, filters: Filters) -> tuple[Any, int]:
     try:
         text = base64.b64decode(cursor + "=" * (-len(cursor) % 4), altchars=b"-_", validate=True).decode()
         mark, value, last = json.loads(text)
         kind = str if SORTS[filters.sort].type.python_type is str else (int, float)
-        if mark != _mark(filters) or type(last) is not int or not isinstance(value, kind):
+        fits = isinstance(value, kind) and type(last) is int and 0 <= last <= MOST
+        if mark != _mark(filters) or not fits or not _storable(value):
             raise ValueError
     except (ValueError, TypeError, binascii.Error):
         error = field_error(

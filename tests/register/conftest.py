@@ -9,6 +9,7 @@ from pathlib import Path
 
 import pytest
 
+from service.register import accounts
 from service.register.database import Database, database_url
 from tests.register.postgresql import Server, binaries, running
 from tests.register.web import Web
@@ -38,6 +39,14 @@ def sqlite_made(tmp_path_factory: pytest.TempPathFactory) -> Path:
     made.open()
     made.close()
     return file
+
+
+@pytest.fixture(autouse=True, scope="session")
+def _cheap_passwords() -> Iterator[None]:
+    """Passwords of these checks cost little; what is stored names its cost, so both kinds hold."""
+    with pytest.MonkeyPatch.context() as patched:
+        patched.setattr(accounts, "COST", 10)
+        yield
 
 
 @pytest.fixture(params=["sqlite", "postgresql"])

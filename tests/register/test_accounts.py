@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import base64
 import hashlib
 
 import httpx
@@ -48,6 +49,17 @@ def test_sign_in_and_out(signed: Web) -> None:
     signed.close()
 
 
+def test_a_hash_names_its_cost_and_holds_when_that_changes(monkeypatch: pytest.MonkeyPatch) -> None:
+    """scrypt of RFC 7914 with n = 2^15, r = 8, p = 1, computed here by hashlib."""
+    salt = base64.b64encode(b"s" * 16).decode()
+    digest = hashlib.scrypt(b"correct", salt=b"s" * 16, n=2**15, r=8, p=1, maxmem=2**26, dklen=32)
+    stored = f"scrypt$15${salt}${base64.b64encode(digest).decode()}"
+    monkeypatch.setattr(accounts, "COST", 11)
+    assert accounts.check_password(stored, "correct")
+    assert not accounts.check_password(stored, "Correct")
+    assert not accounts.check_password(None, "correct")
+
+
 def test_nothing_secret_is_stored(signed: Web) -> None:
     sign_in(signed)
     token = signed.ok(signed.post("/api/v1/tokens", {"name": "script", "scope": "write"}), 201)["secret"]
@@ -68,6 +80,15 @@ def test_a_wrong_name_and_a_wrong_password_look_alike(signed: Web) -> None:
     assert (wrong.status_code, unknown.status_code) == (401, 401)
     assert "name or password is wrong" in wrong.text
     assert "name or password is wrong" in unknown.text
+    signed.close()
+
+
+def test_odd_names_and_numbers_are_refused_in_words(signed: Web) -> None:
+    for name in ("a\0b", "İ" * 100, "", " "):
+        assert sign_in(signed, name=name).status_code == 401
+    assert sign_in(signed).status_code == 303
+    for method, url in (("DELETE", "/api/v1/tokens/99999999999"), ("PUT", "/api/v1/users/99999999999")):
+        assert_problem(signed.request(method, url, json={}), 404)
     signed.close()
 
 

@@ -2,6 +2,9 @@
 
 from __future__ import annotations
 
+import base64
+import json
+
 import pytest
 
 from tests.register.web import LASERS, Web, laser
@@ -102,6 +105,17 @@ def test_wrong_parameters_are_refused(filled: Web) -> None:
         ("cursor=zzz", "cursor"),
     ):
         assert_problem(filled.get(f"{LASERS}?{query}"), 422, field)
+    for forged in (
+        ["asset_tag+", "a\0b", 1],
+        ["asset_tag+", "\ud800", 1],
+        ["asset_tag+", "a", 2**70],
+        ["asset_tag+", "a", True],
+        ["asset_tag+", 1, 1],
+        ["asset_tag+"],
+        {"a": 1},
+    ):
+        text = base64.urlsafe_b64encode(json.dumps(forged).encode()).decode().rstrip("=")
+        assert_problem(filled.get(f"{LASERS}?cursor={text}"), 422, "cursor")
     cursor = filled.ok(filled.get(f"{LASERS}?limit=1"))["next"]
     assert_problem(filled.get(f"{LASERS}?sort=distance&cursor={cursor}"), 422, "cursor")
 

@@ -78,7 +78,9 @@ def sign_in(request: Request, database: Store, fields: FormFields) -> Response:
     check_site(request)
     name, password = str(fields.get("name", "")).strip()[:100], str(fields.get("password", ""))
     following = str(fields.get("next", ""))
-    keys = [f"name:{name.lower()}", f"peer:{peer_of(request)}"]
+    if not name.isprintable():
+        name = ""
+    keys = [f"name:{name.lower()}"[:200], f"peer:{peer_of(request)}"[:200]]
     try:
         with database.read() as connection:
             accounts.delay(connection, keys)
