@@ -26,6 +26,7 @@ class Settings:
     `data_dir`: folder of the register (blank: per user). `database`: PostgreSQL address instead.
     `sign_in`: off, password or header. `proxies`: addresses of reverse proxies, parted by commas.
     `user_header`: header in which such a proxy names the user. `import_limit`: largest CSV file [bytes].
+    `four_eyes`: on = who submitted a revision cannot approve it.
     """
 
     host: str = "127.0.0.1"
@@ -37,6 +38,7 @@ class Settings:
     proxies: str = ""
     user_header: str = "x-remote-user"
     import_limit: int = 20_000_000
+    four_eyes: str = "off"
 
     @classmethod
     def from_environment(cls, environment: Mapping[str, str] = os.environ) -> Settings:
@@ -62,6 +64,8 @@ class Settings:
         """Itself. Raises SettingsError where texts do not go together."""
         if self.sign_in not in SIGN_IN:
             raise SettingsError(f"BLINKLINE_SIGN_IN is {self.sign_in!r}, expected {', '.join(SIGN_IN)}")
+        if self.four_eyes not in ("on", "off"):
+            raise SettingsError(f"BLINKLINE_FOUR_EYES is {self.four_eyes!r}, expected on or off")
         for address in self.proxy_addresses:
             try:
                 ip_network(address, strict=False)

@@ -15,7 +15,7 @@ from service.register.clock import now
 from service.register.figures import digest_of, kept, packed, request_from, tables_of, unpacked
 from service.register.lasers import expect_version, new_revision
 from service.register.models import DecisionIn
-from service.register.problems import Conflict, field_error
+from service.register.problems import Conflict, Forbidden, field_error
 from service.register.schema import decisions, lasers, revisions
 from service.register.stored import laser_row, revision_row
 
@@ -76,16 +76,34 @@ def withdraw(
 
 
 def approve(
-    connection: sa.Connection, actor: Actor, laser_id: int, number: int, body: DecisionIn, version: int | None
+    connection: sa.Connection,
+    actor: Actor,
+    laser_id: int,
+    number: int,
+    body: DecisionIn,
+    version: int | None,
+    four_eyes: bool = False,
 ) -> None:
-    """Approve the submitted revision: it is in force and locked. Raises as `submit`."""
+    """Approve the submitted revision: it is in force and locked. Raises as `submit`.
+
+    Raises Forbidden where four eyes are asked for and the actor submitted it.
+    """
     row, revision = _current(connection, laser_id, number, version, ("submitted",))
+    if four_eyes and _submitter(connection, revision["id"]) == actor.name:
+        raise Forbidden("you submitted this revision; here somebody else has to approve it")
     earlier = sa.and_(revisions.c.laser_id == laser_id, revisions.c.state == "approved")
     connection.execute(sa.update(revisions).where(earlier).values(state="superseded"))
     more: dict[str, Any] = {"approved_revision": number}
     if body.review_due is not None:
         more["review_due"] = body.review_due
     _step(connection, actor, row, revision, "approved", "approved", "approved", body.comment, more)
+
+
+def _submitter(connection: sa.Connection, revision_id: int) -> str:
+    """Who submitted a revision last."""
+    same = [decisions.c.revision_id == revision_id, decisions.c.action == "submitted"]
+    query = sa.select(decisions.c.by).where(*same).order_by(decisions.c.id.desc()).limit(1)
+    return str(connection.execute(query).scalar_one())
 
 
 def return_(

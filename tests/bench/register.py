@@ -1,4 +1,4 @@
-"""What the register costs, in one run: ``python -m tests.bench.register``; ratios depend least on the machine."""
+"""What the register costs, in one run, with ratios: ``python -m tests.bench.register``."""
 
 from __future__ import annotations
 

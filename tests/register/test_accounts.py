@@ -161,6 +161,25 @@ def test_tokens(signed: Web) -> None:
     signed.close()
 
 
+def test_four_eyes(address: str) -> None:
+    web = Web(address, base="https://register.test", sign_in="password", four_eyes="on")
+    web.app.state.register.open()
+    with web.app.state.register.write() as connection:
+        for name in ("anna", "bert"):
+            body = UserIn(name=name, role="approver", password=PASSWORD)
+            accounts.add_user(connection, ADMIN, body)
+    sign_in(web, name="anna")
+    found = web.create(laser())
+    web.ok(web.step(found, "submit"))
+    assert "somebody else" in assert_problem(web.step(found, "approve"), 403)["detail"]
+    page = web.form("/lasers/1/revisions/1", {"step": "approve"}, page="/lasers/1")
+    assert page.status_code == 403
+    web.client.cookies.clear()
+    sign_in(web, name="bert")
+    assert web.ok(web.step(found, "approve"))["current"]["decisions"][-1]["by"] == "bert"
+    web.close()
+
+
 def test_a_password_is_changed_by_who_knows_it(signed: Web) -> None:
     sign_in(signed)
     wrong = signed.form("/account", {"step": "password", "old": "no", "new": "another long one"})
@@ -226,6 +245,7 @@ def test_settings_that_do_not_go_together() -> None:
         ("SIGN_IN", "maybe"),
         ("SIGN_IN", "header"),
         ("PROXIES", "everybody"),
+        ("FOUR_EYES", "two"),
         ("DATABASE", "mysql://host/db"),
         ("DATABASE", "nonsense"),
         ("DATABASE", "sqlite://"),

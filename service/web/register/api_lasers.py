@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from functools import partial
 from typing import Any
 
 from fastapi import APIRouter
@@ -276,7 +277,9 @@ def approve(
     request: Request, actor: Approve, database: Store, data: JsonBody, laser_id: int, number: int
 ) -> Response:
     """It is in force and locked; the one before is superseded."""
-    return _step(request, database, actor, data, laser_id, number, flow.approve)
+    four_eyes = request.app.state.settings.four_eyes == "on"
+    approval = partial(flow.approve, four_eyes=four_eyes)
+    return _step(request, database, actor, data, laser_id, number, approval)
 
 
 @router.post(f"{REVISION}/return", response_model=Laser, summary="Return a submitted revision")

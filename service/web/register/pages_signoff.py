@@ -30,7 +30,8 @@ def decide(
         body = parsed(DecisionIn, given)
         with database.write() as connection:
             if step == "approve":
-                flow.approve(connection, actor, laser_id, number, body, version)
+                four_eyes = request.app.state.settings.four_eyes == "on"
+                flow.approve(connection, actor, laser_id, number, body, version, four_eyes)
             elif step == "return":
                 flow.return_(connection, actor, laser_id, number, body, version)
             else:
