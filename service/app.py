@@ -14,7 +14,9 @@ from service.contract.classification import schemes
 from service.contract.problem import NotFound, Problem
 from service.files import DATA
 from service.register.database import Database, database_url
+from service.rules.airspace import airspace_tables
 from service.rules.eyewear import eyewear_tables
+from service.rules.materials import materials
 from service.settings import Settings
 from service.web import api, health, pages, rules_pages, static
 from service.web.headers import Envelope
@@ -45,6 +47,8 @@ def create_app(settings: Settings | None = None) -> FastAPI:
     rule_sets()
     schemes()
     eyewear_tables(DATA)
+    airspace_tables(DATA)
+    materials(DATA)
     app = FastAPI(
         title="Blinkline",
         version=__version__,

@@ -111,8 +111,7 @@ def _against(
         aperture, distance, number = scheme.measured(condition, wavelength, time)
         none = number < 0
         aperture, distance = np.where(none, own[0], aperture), np.where(none, own[1], distance)
-        place = np.maximum(distance, lines.beams.waist_m[line])
-        through = found.dose[e] * beams.fraction(aperture, place)
+        through = found.dose[e] * beams.most_inside(aperture, distance)
         area = np.where(scheme.per_area[row], np.pi / 4.0 * aperture * aperture, 1.0)
         emission[condition] = through / area
         ratio[condition] = emission[condition] / limit

@@ -3,10 +3,12 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from typing import TYPE_CHECKING
 
 import numpy as np
 from numpy.typing import NDArray
 
+from service.assess.aid import Aid
 from service.assess.criteria import Criteria, Exposures, exposures
 from service.assess.distance import falling_root
 from service.assess.groups import Groups
@@ -16,6 +18,9 @@ from service.rules.compiled import CompiledRules
 from service.rules.limits import Conditions
 from service.rules.ruleset import TARGETS
 
+if TYPE_CHECKING:
+    from service.assess.look import Moving
+
 __all__ = ["Evaluation", "Sums", "TargetResult", "evaluate", "optical_density"]
 
 Floats = NDArray[np.float64]
@@ -24,7 +29,7 @@ Ints = NDArray[np.intp]
 
 @dataclass(slots=True)
 class Sums:
-    """Lines that add: one element per laser and additivity class with more than one line.
+    """Lines that add: one element per additivity class of each laser that has several lines or waists.
 
     `members` lists the criteria (by number) of each group; ratios are at the most hazardous place.
     """
@@ -61,7 +66,11 @@ class TargetResult:
 
 @dataclass(slots=True)
 class Evaluation:
-    """The result of one batch under one rule set."""
+    """The result of one batch under one rule set.
+
+    `moving`: the setup of one laser whose limits change with the distance; the lines and limits here are
+    then those of its most hazardous place.
+    """
 
     rules: CompiledRules
     lines: Lines
@@ -69,6 +78,7 @@ class Evaluation:
     exposures: Exposures
     eye: TargetResult
     skin: TargetResult
+    moving: Moving | None = None
 
     def target(self, name: str) -> TargetResult:
         """The result for `eye` or `skin`."""
@@ -84,38 +94,53 @@ def optical_density(ratio: Floats) -> Floats:
         return np.maximum(0.0, np.log10(ratio))
 
 
-def evaluate(lines: Lines, rules: CompiledRules) -> Evaluation:
+def evaluate(lines: Lines, rules: CompiledRules, aid: Aid | None = None) -> Evaluation:
     """Judge every line of every laser by every criterion of the rule set.
 
     Parameters
     ----------
     lines : structure of arrays, a single laser is a batch of one
     rules : a compiled rule set
+    aid : optics in front of the eye; lines from 302.5 to 4000 nm pass it, the others are judged without
     """
+    if aid is not None:
+        lines = aid.seen_through(lines)
     at = rules.conditions(lines.wavelength_nm, lines.subtense_mrad)
     found = exposures(lines, at, rules)
     cell = rules.cells(at, found.line, found.time_s)
-    results = [_target(target, lines, found, cell, at, rules) for target in TARGETS]
-    return Evaluation(rules, lines, at, found, *results)
+    eye, skin = (_target(target, lines, found, cell, at, rules, aid) for target in TARGETS)
+    return Evaluation(rules, lines, at, found, eye, skin)
 
 
 def _target(
-    target: str, lines: Lines, found: Exposures, cell: Ints, at: Conditions, rules: CompiledRules
+    target: str,
+    lines: Lines,
+    found: Exposures,
+    cell: Ints,
+    at: Conditions,
+    rules: CompiledRules,
+    aid: Aid | None,
 ) -> TargetResult:
     criteria = Criteria.of(target, found, cell, at, rules)
+    if aid is not None and target == "eye":
+        aid.collect(criteria, lines)
     laser = lines.laser[criteria.line]
     start = np.flatnonzero(np.r_[True, laser[1:] != laser[:-1]])
-    place_of_line = lines.beams.narrowest_m()
+    place_of_line = lines.beams.last_waist_m()
+    uneven = lines.beams.uneven()
     place = place_of_line[criteria.line]
     ratio = _ratio_at(criteria, lines, place_of_line)
     near, far = _alone(criteria, lines, place, ratio)
+    if uneven.any():
+        _alone_uneven(criteria, lines, np.flatnonzero(uneven[criteria.line]), near, far)
     worst = np.maximum.reduceat(ratio, start)
     lasers_place = place[start]
     lasers_far = np.maximum.reduceat(far, start)
     lasers_near = np.minimum.reduceat(np.where(far > 0.0, near, np.inf), start)
     sums = None
-    if lines.count > lines.lasers:
-        sums = _sums(criteria, lines, rules)
+    grouped = (np.bincount(lines.laser) > 1) | (np.bincount(lines.laser, uneven) > 0)
+    if grouped.any():
+        sums = _sums(criteria, lines, rules, grouped)
     if sums is not None:
         again = np.unique(sums.laser)
         worst[again], lasers_far[again], lasers_near[again] = 0.0, 0.0, np.inf
@@ -139,7 +164,10 @@ def _ratio_at(criteria: Criteria, lines: Lines, place_m: Floats) -> Floats:
     """Ratio of exposure to limit of each criterion, with each line at its own place [m]."""
     x, y = lines.beams.diameters_m(place_m)
     k = criteria.line
-    return criteria.strength * encircled_fraction(criteria.aperture_m, x[k], y[k], lines.beams.tophat[k])
+    ratio = criteria.strength * encircled_fraction(criteria.aperture_m, x[k], y[k], lines.beams.tophat[k])
+    if lines.beams.extinction_per_m.any():
+        ratio *= np.exp(-lines.beams.extinction_per_m * place_m)[k]
+    return ratio
 
 
 def _alone(criteria: Criteria, lines: Lines, place: Floats, ratio: Floats) -> tuple[Floats, Floats]:
@@ -159,13 +187,23 @@ def _alone(criteria: Criteria, lines: Lines, place: Floats, ratio: Floats) -> tu
     return near, far
 
 
-def _sums(criteria: Criteria, lines: Lines, rules: CompiledRules) -> Sums | None:
-    """Groups of criteria that add, for the lasers with several lines."""
-    several = np.bincount(lines.laser, minlength=lines.lasers) > 1
+def _alone_uneven(criteria: Criteria, lines: Lines, which: Ints, near: Floats, far: Floats) -> None:
+    """Zones of single criteria of beams whose axes have different waists, filled in place."""
+    line = criteria.line[which]
+    groups = Groups(
+        np.arange(len(which)),
+        line,
+        criteria.strength[which],
+        criteria.aperture_m[which],
+        lines.beams.take(line),
+    )
+    near[which], far[which] = groups.zones(*groups.peaks())
+
+
+def _sums(criteria: Criteria, lines: Lines, rules: CompiledRules, grouped: NDArray[np.bool_]) -> Sums:
+    """Groups of criteria that add, for lasers with several lines or with different waists."""
     laser = lines.laser[criteria.line]
-    member = np.flatnonzero(several[laser])
-    if not member.size:
-        return None
+    member = np.flatnonzero(grouped[laser])
     kind = rules.additivity[criteria.row[member]]
     order = member[np.lexsort((criteria.line[member], kind, laser[member]))]
     kind = rules.additivity[criteria.row[order]]

@@ -1,8 +1,10 @@
 """Exposures that add: the summed ratio of several lines over distance.
 
 A group is a set of criteria of one laser whose tissue and additivity class agree. Each line enters
-with its worst criterion (stricter than adding like with like), the lines add. Where the lines have different
-waists the sum need not fall from the exit on, so it is sampled up to the last waist.
+with its worst criterion (stricter than adding like with like), the lines add. Where lines or axes
+have different waists the sum need not fall from the exit on, so it is sampled up to the last waist;
+a single criterion of a beam whose axes have different waists, or that converges in hazy air, is a
+group of one.
 """
 
 from __future__ import annotations
@@ -71,7 +73,11 @@ class Groups:
 
     def last_waist_m(self) -> Floats:
         """Distance [m] per group beyond which every member only widens."""
-        return np.maximum.reduceat(self.beams.narrowest_m(), self._start)
+        return np.maximum.reduceat(self.beams.last_waist_m(), self._start)
+
+    def nearest_m(self) -> Floats:
+        """The nearest accessible place [m] of each group."""
+        return np.maximum.reduceat(self.beams.nearest_m, self._start)
 
     def peaks(self) -> tuple[Floats, Floats]:
         """Most hazardous place [m] of each group and the summed ratio there.
@@ -100,17 +106,21 @@ class Groups:
 
     def _several_waists(self) -> Ints:
         """Groups whose members' waists, seen from the exit on, differ."""
-        low = np.minimum.reduceat(self.beams.narrowest_m(), self._start)
-        return np.flatnonzero(low != self.last_waist_m())
+        low = np.minimum.reduceat(self.beams.first_waist_m(), self._start)
+        uneven = np.maximum.reduceat(self.beams.uneven(), self._start)
+        return np.flatnonzero((low != self.last_waist_m()) | uneven)
 
     def _sample(self, index: Ints) -> tuple[Floats, Floats]:
         """Places (k, s) from the exit to the last waist, every waist among them, and the ratios."""
-        last = self.last_waist_m()[index]
-        waist = self.beams.narrowest_m()
-        waists = np.zeros((len(index), int(self._size[index].max())))
+        last, nearest = self.last_waist_m()[index], self.nearest_m()[index]
+        widest = int(self._size[index].max())
+        waists = np.zeros((len(index), 2 * widest))
         for n, g in enumerate(index):
-            waists[n, : self._size[g]] = waist[self._start[g] : self._start[g] + self._size[g]]
-        even = last[:, None] * np.linspace(0.0, 1.0, SAMPLES)
+            member = slice(self._start[g], self._start[g] + self._size[g])
+            waists[n, : self._size[g]] = self.beams.waist_x_m[member]
+            waists[n, widest : widest + self._size[g]] = self.beams.waist_y_m[member]
+        waists = np.maximum(nearest[:, None], waists)
+        even = nearest[:, None] + (last - nearest)[:, None] * np.linspace(0.0, 1.0, SAMPLES)
         places = np.sort(np.concatenate([even, waists], axis=1), axis=1)
         values = np.stack([self.ratio(index, places[:, k]) for k in range(places.shape[1])], axis=1)
         return places, values
@@ -127,7 +137,7 @@ class Groups:
         last = self.last_waist_m()
         at_last = self.ratio(over, last[over])
         low, high = np.where(at_last > 1.0, last[over], place_m[over]), last[over].copy()
-        near_low, near_high = np.zeros(len(over)), place_m[over].copy()
+        near_low, near_high = self.nearest_m()[over], place_m[over].copy()
         several = np.isin(over, self._several_waists())
         if several.any():
             places, values = self._sample(over[several])
@@ -150,8 +160,8 @@ class Groups:
         if beyond.any():
             low[beyond], high[beyond] = self._beyond(over[beyond])
         far[over] = falling_root(lambda k, z: self._excess(over[k], z), low, high)
-        safe_at_exit = self.ratio(over, np.zeros(len(over))) <= 1.0
-        k = np.flatnonzero(safe_at_exit)
+        nearest = self.nearest_m()[over]
+        k = np.flatnonzero(self.ratio(over, nearest) <= 1.0)
         if k.size:
             start, width = near_high[k], near_high[k] - near_low[k]
             near[over[k]] = start - falling_root(

@@ -113,7 +113,7 @@ class _Level:
         time = float(self.found.aperture_s[self.e])
         aperture = limit_expression(measured.coefficient_mm, measured.time_power, "", number(time))
         diameter = measured.coefficient_mm * time**measured.time_power
-        waist = float(self.result.lines.beams.waist_m[self.line])
+        waist = float(self.result.lines.beams.last_waist_m()[self.line])
         place = max(measured.distance_m, waist)
         text = f"condition {measured.condition}: aperture {aperture} mm at {number(place)} m from the exit"
         if waist > measured.distance_m:

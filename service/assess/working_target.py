@@ -8,6 +8,7 @@ import numpy as np
 
 from service.assess.criteria import AVERAGE, RULES, TRAIN_RULE
 from service.assess.evaluate import Evaluation, optical_density
+from service.assess.lines import CW
 from service.assess.steps import Step, limit_expression, number
 from service.rules.grid import SMALL_SOURCE_MRAD
 from service.rules.tables import LimitRow
@@ -192,6 +193,25 @@ def _verdict(evaluation: Evaluation, target: str, laser: int, members: list[int]
     yield Step("OD", f"log10({number(worst)}), not below 0", density, "1", target=target)
 
 
+def _moving_distance(evaluation: Evaluation, target: str, far: float, near: float) -> Iterator[Step]:
+    """How spot or sweep look from the hazard distance, and the distance."""
+    assert evaluation.moving is not None
+    setup, there = evaluation.moving.setup, evaluation.moving.at(far).lines
+    for k in range(there.count):
+        if setup.spots is not None:
+            text = f"the spot of line {k + 1} seen from {number(far)} m"
+            yield Step("alpha(z)", text, float(there.subtense_mrad[k]), "mrad", line=k, target=target)
+        elif setup.lines.mode[k] == CW:
+            text = (
+                f"one pass of line {k + 1} at {number(far)} m, {number(float(there.rate_hz[k]))} each second"
+            )
+            yield Step("t_p(z)", text, float(there.pulse_s[k]), "s", line=k, target=target)
+    if near > 0.0:
+        yield Step("z_near", "nearest distance at which a limit is exceeded", near, "m", target=target)
+    text = "largest distance at which a limit is exceeded, solved with the limits that hold there"
+    yield Step("z", text, far, "m", target=target)
+
+
 def _distance(
     evaluation: Evaluation, target: str, laser: int, members: list[int], first_line: int
 ) -> Iterator[Step]:
@@ -203,6 +223,9 @@ def _distance(
         return
     if np.isinf(far):
         yield Step("z", "the beam never spreads below its limit", None, "m", target=target)
+        return
+    if evaluation.moving is not None:
+        yield from _moving_distance(evaluation, target, far, near)
         return
     reaching = max(members, key=lambda k: float(result.distance_m[k]))
     line = int(result.criteria.line[reaching])
@@ -216,7 +239,7 @@ def _distance(
         yield Step("z_near", text, near, "m", target=target)
     text = "largest distance at which a limit is exceeded, solved by bracketing"
     if x == y and result.sums is None and not beams.tophat[line]:
-        d0, phi, z0 = (float(a[line]) for a in (beams.diameter_x_m, beams.divergence_x_rad, beams.waist_m))
+        d0, phi, z0 = (float(a[line]) for a in beams.axes()[0])
         whole = number(float(result.criteria.strength[reaching]))
         aperture = number(float(result.criteria.aperture_m[reaching]) * 1e3)
         text += (

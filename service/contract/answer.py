@@ -9,20 +9,33 @@ from typing import Any, cast
 import numpy as np
 
 from service import __version__
+from service.assess.aid import Aid
 from service.assess.criteria import AVERAGE, EXPOSURE, RULES, TRAIN_RULE
 from service.assess.evaluate import Evaluation, TargetResult, evaluate, optical_density
-from service.assess.lines import PULSE
+from service.assess.lines import PULSE, Lines
+from service.assess.look import look
 from service.assess.scales import spot_area_m2
 from service.assess.steps import Step
-from service.assess.viewing import ratios_at, sum_of_lines
+from service.assess.viewing import over_distances
 from service.assess.working import working
+from service.contract.airspace import airspace_of
+from service.contract.bench import bench_steps, setup_of
 from service.contract.classification import hazard_classes
-from service.contract.convert import lines_of
+from service.contract.convert import behind_bench, lines_of
 from service.contract.evaluation import Comparison, EvaluationResult
 from service.contract.measures import measures_for
+from service.contract.moving import (
+    ScanAnswer,
+    diffuse_answer,
+    moving_notices,
+    standing_still,
+    swept_lines,
+)
 from service.contract.notices import notices_of
+from service.contract.over_distance import over_distance_of
 from service.contract.problem import FieldError, InvalidRequest
 from service.contract.protection import protection_of
+from service.contract.request import Aid as ViewingAid
 from service.contract.request import EvaluationRequest
 from service.contract.result import (
     AtDistance,
@@ -34,7 +47,7 @@ from service.contract.result import (
     TargetAnswer,
     step_model,
 )
-from service.contract.second_look import second_looks
+from service.contract.second_look import LONGER_SKIN, second_looks
 from service.files import DATA
 from service.rules.compiled import CompiledRules, compiled_rules
 from service.rules.eyewear import eyewear_tables
@@ -77,8 +90,11 @@ def answer(request: EvaluationRequest) -> EvaluationResult:
     rules = rule_set(request.rules)
     lines, duration_rows = lines_of([request], rules)
     with np.errstate(over="ignore", under="ignore"):
-        evaluation = evaluate(lines, rules)
-        return _result(request, evaluation, duration_rows.tolist())
+        behind = behind_bench([request], lines)
+        evaluation = _evaluate(request, behind, rules)
+        aid = request.viewing.aid
+        aided = None if aid is None else _evaluate(request, behind, rules, _aid(aid))
+        return _result(request, lines, evaluation, aided, duration_rows.tolist())
 
 
 def compare(request: EvaluationRequest) -> Comparison:
@@ -87,8 +103,39 @@ def compare(request: EvaluationRequest) -> Comparison:
     return Comparison(results=[answer(request.model_copy(update={"rules": key})) for key in rule_sets()])
 
 
-def _result(request: EvaluationRequest, evaluation: Evaluation, duration_rows: list[int]) -> EvaluationResult:
-    published = evaluation.rules.rules
+def _evaluate(
+    request: EvaluationRequest, lines: Lines, rules: CompiledRules, aid: Aid | None = None
+) -> Evaluation:
+    """One laser's lines behind its bench, with the limits as they change over distance where they do."""
+    setup = setup_of(request.bench, lines)
+    return evaluate(lines, rules, aid) if setup is None else look(setup, rules, aid)
+
+
+def _scan(request: EvaluationRequest, evaluation: Evaluation) -> ScanAnswer | None:
+    """The sweep, and the case that it stops."""
+    if evaluation.moving is None or evaluation.moving.setup.scan is None:
+        return None
+    still = evaluation.moving.still
+    return ScanAnswer(
+        lines=swept_lines(evaluation),
+        failure_eye=_target(request, still, "eye"),
+        failure_skin=_target(request, still, "skin"),
+    )
+
+
+def _aid(aid: ViewingAid) -> Aid:
+    return Aid(aid.objective_mm * 1e-3, aid.magnification, aid.transmittance)
+
+
+def _result(
+    request: EvaluationRequest,
+    lines: Lines,
+    evaluation: Evaluation,
+    aided: Evaluation | None,
+    duration_rows: list[int],
+) -> EvaluationResult:
+    rules = evaluation.rules
+    published, standing = rules.rules, standing_still(evaluation)
     exposure = evaluation.lines.exposure_s
     durations = [_duration(evaluation, k, row) for k, row in enumerate(duration_rows)]
     same = float(exposure[0]) if (exposure == exposure[0]).all() else None
@@ -96,7 +143,8 @@ def _result(request: EvaluationRequest, evaluation: Evaluation, duration_rows: l
     inputs.setdefault("exposure_s", None)
     canonical = json.dumps(inputs, sort_keys=True, separators=(",", ":"), allow_nan=False)
     first = [Step("T", d.basis, d.exposure_s, "s", d.source, d.known, d.line) for d in durations]
-    classes = hazard_classes(evaluation.lines)
+    classes = hazard_classes(lines)
+    steps = bench_steps(request.bench, lines.beams, lines.wavelength_nm)
     return EvaluationResult(
         rules=RulesInfo(
             id=published.id,
@@ -105,17 +153,26 @@ def _result(request: EvaluationRequest, evaluation: Evaluation, duration_rows: l
             standing_text=published.standing_text,
             digest=published.digest,
         ),
-        eye=_target(request, evaluation, evaluation.eye),
-        skin=_target(request, evaluation, evaluation.skin),
+        eye=_target(request, evaluation, "eye"),
+        skin=_target(request, evaluation, "skin"),
         inputs=inputs,
         durations=durations,
-        working=[step_model(s) for s in working(evaluation, 0, first)],
+        eye_aided=None if aided is None else _target(request, aided, "eye"),
+        diffuse=diffuse_answer(evaluation, rules),
+        scan=_scan(request, evaluation),
+        airspace=airspace_of(standing) if request.viewing.outdoors else None,
+        over_distance=over_distance_of(request, evaluation),
+        working=[step_model(s) for s in [*steps, *working(evaluation, 0, first)]],
         classification=classes,
-        protection=protection_of(request, evaluation),
+        protection=protection_of(request, standing),
         measures=measures_for(
-            classes[0].hazard_class, evaluation.lines.wavelength_nm.tolist(), _irradiance(evaluation)
+            classes[0].hazard_class, evaluation.lines.wavelength_nm.tolist(), _irradiance(standing)
         ),
-        notices=[*second_looks(evaluation), *notices_of(request, evaluation, 0)],
+        notices=[
+            *(n for n in second_looks(standing) if evaluation.moving is None or n.code == LONGER_SKIN),
+            *moving_notices(evaluation),
+            *notices_of(request, evaluation, 0),
+        ],
         cautions=CAUTIONS,
         provenance=Provenance(
             service_version=__version__,
@@ -156,7 +213,8 @@ def _finite(x: float) -> float | None:
     return float(x) if np.isfinite(x) else None
 
 
-def _target(request: EvaluationRequest, evaluation: Evaluation, result: TargetResult) -> TargetAnswer:
+def _target(request: EvaluationRequest, evaluation: Evaluation, target: str) -> TargetAnswer:
+    result = evaluation.target(target)
     far = _finite(result.far_m[0])
     worst = float(result.worst_ratio[0])
     sums = result.sums
@@ -181,25 +239,24 @@ def _target(request: EvaluationRequest, evaluation: Evaluation, result: TargetRe
                 hazard_distance_m=_finite(sums.far_m[n]),
             )
             for n, members in enumerate(sums.members)
+            if len({int(result.criteria.line[k]) for k in members}) > 1
         ],
-        at_distance=_at_distance(request, evaluation, result),
+        at_distance=_at_distance(request, evaluation, target),
     )
 
 
-def _at_distance(
-    request: EvaluationRequest, evaluation: Evaluation, result: TargetResult
-) -> AtDistance | None:
+def _at_distance(request: EvaluationRequest, evaluation: Evaluation, target: str) -> AtDistance | None:
     distance = request.viewing.distance_m
     if distance is None:
         return None
-    each = ratios_at(evaluation, result, np.full(evaluation.lines.count, distance))
-    worst = sum_of_lines(evaluation, result, each)
+    _, each, sums = over_distances(evaluation, target, np.array([distance]))
+    worst = float(sums[0])
     return AtDistance(
         distance_m=distance,
         hazard_ratio=worst,
-        optical_density=float(optical_density(np.array(worst))),
+        optical_density=float(optical_density(sums)[0]),
         exceeded=worst > 1.0,
-        criteria_hazard_ratio=each.tolist(),
+        criteria_hazard_ratio=each[0].tolist(),
     )
 
 

@@ -8,7 +8,8 @@ import numpy as np
 
 from service.assess.evaluate import Evaluation
 from service.assess.steps import number_up
-from service.contract.request import Beam, Cw, EvaluationRequest, Line, Pulse, Train
+from service.contract.beam import Beam
+from service.contract.request import Cw, EvaluationRequest, Line, Pulse, Train
 from service.contract.result import Notice
 from service.optics.beams import SQRT2
 from service.rules.ruleset import TARGETS
@@ -31,6 +32,8 @@ def notices_of(request: EvaluationRequest, evaluation: Evaluation, laser: int) -
     found: list[Notice] = []
     for number, (line, k) in enumerate(zip(request.lines, members, strict=True)):
         found += _line_notices(f"lines.{number}", line, float(evaluation.lines.exposure_s[k]))
+    if request.bench:
+        found += _focus(evaluation, members)
     found += _result_notices(evaluation, laser, members)
     return found
 
@@ -90,6 +93,8 @@ def _train_notices(path: str, emission: Train, energy_j: float, exposure_s: floa
 
 def _beam_notices(path: str, line: Line) -> Iterator[Notice]:
     beam = line.beam
+    if not isinstance(beam, Beam):
+        return
     narrower = 1.0 if beam.profile == "tophat" or beam.level == "1/e2" else SQRT2
     for diameter, divergence in {*zip(beam.waist_diameters_mm(), beam.divergence_mrad, strict=True)}:
         least = 4e-3 * line.wavelength_nm / (np.pi * diameter * narrower) / narrower
@@ -160,6 +165,22 @@ def _result_notices(evaluation: Evaluation, laser: int, members: np.ndarray) -> 
                     text = f"{rules.title}, row {uncertain.row}: {uncertain.note}."
                     yield Notice(code="uncertain-value", field=f"lines.{line}", text=text)
     yield from _large_area(evaluation, laser)
+
+
+def _focus(evaluation: Evaluation, members: np.ndarray) -> Iterator[Notice]:
+    """A focus behind the last element of the bench: where, and how small."""
+    beams = evaluation.lines.beams.take(members)
+    for number, waists in enumerate(zip(*(axis[2] for axis in beams.axes()), strict=True)):
+        if max(waists) > 0.0:
+            sizes = sorted({f"{float(axis[0][number]) * 1e3:.3g} mm" for axis in beams.axes()})
+            places = sorted({f"{max(0.0, float(z)):.4g} m" for z in waists})
+            yield Notice(
+                code="external-focus",
+                field=f"lines.{number}.beam",
+                text=f"The beam comes to a focus at {' and '.join(places)} behind the last element, "
+                f"{' and '.join(sizes)} wide (1/e). It is most hazardous there; both ends of the zone are "
+                "told.",
+            )
 
 
 def _large_area(evaluation: Evaluation, laser: int) -> Iterator[Notice]:

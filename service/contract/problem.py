@@ -17,6 +17,8 @@ from typing import Any
 
 from pydantic import BaseModel, Field, ValidationError
 
+from service.contract.beam import KINDS as BEAM_KINDS
+from service.contract.bench import ELEMENTS
 from service.contract.request import EvaluationRequest
 
 __all__ = [
@@ -32,7 +34,19 @@ __all__ = [
 ]
 
 MODES = ("cw", "pulse", "train")
-UNITS = {"nm": "nm", "w": "W", "j": "J", "s": "s", "hz": "Hz", "mm": "mm", "mrad": "mrad", "m": "m"}
+UNITS = {
+    "nm": "nm",
+    "w": "W",
+    "j": "J",
+    "s": "s",
+    "hz": "Hz",
+    "mm": "mm",
+    "mrad": "mrad",
+    "m": "m",
+    "um": "um",
+    "km": "km",
+    "deg": "degrees",
+}
 SHOWN = 120
 #: A document lists at most this many errors; the detail counts them all.
 LISTED = 20
@@ -136,19 +150,40 @@ HINTS = {
     "wavelength_nm": "Check the unit: nanometres, so 1.064 µm is 1064.",
     "pulse_s": "Check the unit: seconds, so 10 ns is 1e-8. Limits are published from 1e-13 s (100 fs) on.",
     "exposure_s": "Leave it out for the conventional duration. Limits are published from 1e-13 s to 3e4 s.",
-    "bench": "Send an empty list: elements in the beam are not evaluated by this version.",
-    "profile": "Fibre ends are not evaluated by this version; enter the beam as it leaves the last optic.",
 }
 
 
 @cache
-def _properties() -> dict[str, dict[str, Any]]:
-    """JSON schema of every field of the request by name."""
-    schema = EvaluationRequest.model_json_schema()
-    found = dict(schema["properties"])
-    for definition in schema["$defs"].values():
-        found.update(definition.get("properties", {}))
-    return found
+def _request_schema() -> dict[str, Any]:
+    """JSON schema of the request."""
+    return EvaluationRequest.model_json_schema()
+
+
+def _step(node: dict[str, Any], part: str) -> dict[str, Any] | None:
+    """Schema of one part of a path: a field, the kind of a union, or an item of a list."""
+    definitions = _request_schema()["$defs"]
+    kinds = node.get("oneOf") or node.get("anyOf") or [node]
+    if part in BEAM_KINDS and any(k.get("$ref", "").endswith(BEAM_KINDS[part]) for k in kinds):
+        return dict(definitions[BEAM_KINDS[part]])
+    tagged = node.get("discriminator", {}).get("mapping", {}).get(part)
+    if tagged is not None:
+        return dict(definitions[tagged.rpartition("/")[2]])
+    for kind in kinds:
+        named = definitions[kind["$ref"].rpartition("/")[2]] if "$ref" in kind else kind
+        found = named.get("items") if part.isdigit() else named.get("properties", {}).get(part)
+        if found is not None:
+            return dict(found)
+    return node if part.isdigit() else None
+
+
+def _schema_at(loc: list[str]) -> dict[str, Any] | None:
+    """JSON schema of the field at a path, kinds of unions among its parts; None where there is none."""
+    node: dict[str, Any] | None = _request_schema()
+    for part in loc:
+        if node is None:
+            return None
+        node = _step(node, part)
+    return node
 
 
 def _numbers(schema: dict[str, Any]) -> str:
@@ -157,35 +192,38 @@ def _numbers(schema: dict[str, Any]) -> str:
     return f"{more}{low:g} to {schema['maximum']:g}"
 
 
-def _allowed(path: list[str]) -> str:
-    """What the field at `path` may hold, in words."""
+def _allowed(path: list[str], loc: list[str]) -> str:
+    """What the field at `path` may hold, in words; `loc` is the path with the kinds of the unions."""
     name = next((p for p in reversed(path) if not p.isdigit()), "")
     if name == "mode":
         return ", ".join(MODES)
+    if name == "element":
+        return ", ".join(ELEMENTS)
+    if name == "profile":
+        return ", ".join(["gaussian", "tophat", *list(BEAM_KINDS)[1:]])
     if name == "emission":
         return "an object with mode cw, pulse or train"
     if not name:
         return "an object"
-    schema = _properties().get(name)
+    schema = _schema_at(loc)
     if schema is None:
         return "no such field"
     if "anyOf" in schema:
         kinds = [s for s in schema["anyOf"] if s.get("type") != "null"]
         schema = next((s for s in kinds if s.get("type") == "number"), kinds[0])
-    if schema.get("type") == "number":
+    if schema.get("type") in ("number", "integer"):
         unit = UNITS.get(name.rsplit("_", 1)[-1], "")
         pair = ", or a list of two" if name in PAIRS else ""
-        return f"a number, {_numbers(schema)} {unit}".rstrip() + pair
+        kind = "a number" if schema["type"] == "number" else "a whole number"
+        return f"{kind}, {_numbers(schema)} {unit}".rstrip() + pair
     if "enum" in schema:
         return ", ".join(map(str, schema["enum"]))
-    if path[-1].isdigit() and "$ref" in schema.get("items", {}):
-        return "an object"
     if schema.get("type") == "array":
         low, high = schema.get("minItems", 0), schema["maxItems"]
-        return f"a list of {low} to {high} items" if high else "an empty list"
+        return f"a list of {low} to {high} items"
     if schema.get("type") == "string":
         return f"text of at most {schema['maxLength']} characters"
-    return "an object"
+    return "true or false" if schema.get("type") == "boolean" else "an object"
 
 
 def shown(value: Any) -> Any:
@@ -203,9 +241,19 @@ def shown(value: Any) -> Any:
 
 
 def _path(loc: tuple[int | str, ...]) -> list[str]:
-    """Path of a field as the sender knows it: without the tag of the emission mode."""
+    """Path of a field as the sender knows it: without the tags of the unions."""
     parts = [str(p) for p in loc]
-    return [p for k, p in enumerate(parts) if not (k and parts[k - 1] == "emission" and p in MODES)]
+    path = []
+    for k, part in enumerate(parts):
+        before, earlier = parts[k - 1] if k else "", parts[k - 2] if k > 1 else ""
+        tagged = (
+            (before == "emission" and part in MODES)
+            or (before == "beam" and part in BEAM_KINDS)
+            or (earlier == "bench" and part in ELEMENTS)
+        )
+        if not tagged:
+            path.append(part)
+    return path
 
 
 def _own_words(message: str) -> str:
@@ -232,18 +280,19 @@ def invalid_request(error: ValidationError) -> InvalidRequest:
     """The problem for a request that failed validation."""
     errors = []
     for item in error.errors(include_url=False)[: 4 * LISTED]:
-        kind, path = item["type"], _path(item["loc"])
+        kind, path, loc = item["type"], _path(item["loc"]), [str(p) for p in item["loc"]]
         if kind in ("union_tag_invalid", "union_tag_not_found"):
-            path.append("mode")
+            path.append("element" if path[:1] == ["bench"] else "mode")
         if kind == "value_error" and path[-1:] == ["beam"]:
             path.append("diameter_mm")
+            loc.append("diameter_mm")
         name = next((p for p in reversed(path) if not p.isdigit()), "")
         given = item["input"]
         if kind in ("missing", "union_tag_not_found"):
             value, message = None, "this field is missing"
         elif kind == "union_tag_invalid":
-            value = given.get("mode") if isinstance(given, dict) else given
-            message = "unknown mode"
+            value = given.get(path[-1]) if isinstance(given, dict) else given
+            message = f"unknown {path[-1]}"
         elif kind == "extra_forbidden":
             value, message = given, "unknown field"
         elif kind in ("model_type", "model_attributes_type", "dict_type", "union_tag_not_found"):
@@ -265,7 +314,7 @@ def invalid_request(error: ValidationError) -> InvalidRequest:
             FieldError(
                 field=(".".join(path) or "body")[:SHOWN],
                 value=shown(value),
-                allowed="no such field" if kind == "extra_forbidden" else _allowed(path),
+                allowed="no such field" if kind == "extra_forbidden" else _allowed(path, loc),
                 message=message,
                 remedy=remedy,
             )

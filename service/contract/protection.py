@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import numpy as np
+from numpy.typing import NDArray
 from pydantic import Field
 
 from service.assess.evaluate import Evaluation, optical_density
@@ -19,12 +20,13 @@ from service.assess.protection import (
 from service.assess.scales import SLACK
 from service.assess.screens import screen_load
 from service.assess.steps import number_up
-from service.assess.viewing import ratios_at, sum_of_lines
+from service.assess.viewing import ratios_at, ratios_from, seen_from, sum_of_lines
 from service.assess.working_protection import protection_steps
 from service.contract.request import EvaluationRequest, Eyewear, Window
 from service.contract.result import Known, Model, WorkingStep, step_model
 from service.files import DATA
 from service.rules.eyewear import EyewearTables, eyewear_tables
+from service.rules.ruleset import TARGETS
 
 __all__ = ["LineProtection", "Protection", "protection_of"]
 
@@ -177,14 +179,15 @@ def protection_of(request: EvaluationRequest, evaluation: Evaluation) -> Protect
     """Needs of every line, verdict on every pair and window of one laser."""
     tables = eyewear_tables(DATA)
     narrowest = evaluation.lines.beams.narrowest_m()
-    ratio = ratios_at(evaluation, evaluation.eye, narrowest)
+    ratio = ratios_from(evaluation, evaluation.eye, evaluation.lines.beams.nearest_m)
     worst = line_needs(evaluation, ratio, narrowest, tables, onward=True)
     there: list[LineNeed] | None = None
     ratio_there = ratio
     if request.viewing.distance_m is not None:
         places = np.full(narrowest.shape, request.viewing.distance_m)
-        ratio_there = ratios_at(evaluation, evaluation.eye, places)
-        there = line_needs(evaluation, ratio_there, places, tables, onward=False)
+        seen = seen_from(evaluation, request.viewing.distance_m)
+        ratio_there = ratios_at(seen, seen.eye, places)
+        there = line_needs(seen, ratio_there, places, tables, onward=False)
     pairs = [_pair(p) for p in request.eyewear]
     verdicts = [judge(p, evaluation, ratio, worst) for p in pairs]
     at_distance = [judge(p, evaluation, ratio_there, there).sufficient for p in pairs] if there else None
@@ -311,11 +314,18 @@ def _pair_check(
     )
 
 
+def _ratio_behind(evaluation: Evaluation, target: str, places: NDArray[np.float64]) -> float:
+    """Worst ratio at or behind the place [m] of each line."""
+    if evaluation.moving is not None:
+        return evaluation.moving.worst_from(target, float(places.min()))
+    result = evaluation.target(target)
+    return sum_of_lines(evaluation, result, ratios_from(evaluation, result, places))
+
+
 def _window(window: Window, evaluation: Evaluation, tables: EyewearTables) -> WindowCheck:
     """A window: density from the rule set's limits, strength from the scale of screens."""
-    places = np.maximum(window.distance_m, evaluation.lines.beams.narrowest_m())
-    targets = (evaluation.eye, evaluation.skin)
-    ratio = max(sum_of_lines(evaluation, t, ratios_at(evaluation, t, places)) for t in targets)
+    places = np.maximum(window.distance_m, evaluation.lines.beams.nearest_m)
+    ratio = max(_ratio_behind(evaluation, target, places) for target in TARGETS)
     load = screen_load(evaluation.lines, window.distance_m, tables)
     remaining = None if window.optical_density is None else ratio * 10.0**-window.optical_density
     use = tables.use

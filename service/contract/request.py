@@ -2,26 +2,24 @@
 
 from __future__ import annotations
 
-import math
-from typing import Annotated, Any, Literal
+from typing import Annotated, Literal
 
 from pydantic import (
     AfterValidator,
-    BaseModel,
-    BeforeValidator,
     ConfigDict,
     Field,
-    PlainSerializer,
-    WithJsonSchema,
     field_validator,
     model_validator,
 )
 
 from service.assess.marking import parse_marking
+from service.contract.beam import AnyBeam
+from service.contract.bench import Element, last_is_last
+from service.contract.strict import Strict
 
 __all__ = [
     "MAX_LINES",
-    "Beam",
+    "Aid",
     "Emission",
     "EvaluationRequest",
     "Eyewear",
@@ -34,34 +32,7 @@ __all__ = [
 MAX_LINES = 16
 MAX_LABEL = 200
 MAX_PAIRS = 20
-#: Smallest divergence other than none [mrad]; no source of light spreads less.
-LEAST_MRAD = 1e-6
-#: Smallest beam diameter [mm].
-LEAST_MM = 1e-4
-
-
-class Strict(BaseModel):
-    """Refuses unknown fields, text for numbers, NaN and infinity; cannot be changed afterwards."""
-
-    model_config = ConfigDict(extra="forbid", strict=True, frozen=True, allow_inf_nan=False)
-
-
-def _pair(value: Any) -> Any:
-    """A number stands for both axes."""
-    if isinstance(value, list):
-        return tuple(value)
-    return value if isinstance(value, tuple) else (value, value)
-
-
-def _unpair(value: tuple[float, float]) -> float | list[float]:
-    return value[0] if value[0] == value[1] else list(value)
-
-
-def _pair_schema(minimum: dict[str, float], maximum: float) -> WithJsonSchema:
-    number = {"type": "number", **minimum, "maximum": maximum}
-    return WithJsonSchema(
-        {"anyOf": [number, {"type": "array", "items": number, "minItems": 2, "maxItems": 2}]}
-    )
+MAX_ELEMENTS = 32
 
 
 Wavelength = Annotated[
@@ -76,29 +47,6 @@ PulseDuration = Annotated[
 ]
 Rate = Annotated[
     float, Field(ge=1e-6, le=1e13, description="Pulse repetition rate in hertz.", examples=[1000])
-]
-
-
-def _not_tiny(value: float) -> float:
-    if 0.0 < value < LEAST_MRAD:
-        raise ValueError(f"an angle below {LEAST_MRAD:g} mrad; use 0 for a beam without spread")
-    return value
-
-
-Angle = Annotated[float, Field(ge=0, le=3141), AfterValidator(_not_tiny)]
-Diameter = Annotated[
-    tuple[Annotated[float, Field(ge=LEAST_MM, le=1e5)], Annotated[float, Field(ge=LEAST_MM, le=1e5)]],
-    BeforeValidator(_pair),
-    PlainSerializer(_unpair),
-    _pair_schema({"minimum": LEAST_MM}, 1e5),
-    Field(description="Beam diameter in millimetres; a number, or [x, y] for an elliptical beam."),
-]
-Divergence = Annotated[
-    tuple[Angle, Angle],
-    BeforeValidator(_pair),
-    PlainSerializer(_unpair),
-    _pair_schema({"minimum": 0}, 3141),
-    Field(description="Full-angle divergence in milliradians; a number, or [x, y]."),
 ]
 
 
@@ -146,50 +94,18 @@ class Train(Strict):
 Emission = Annotated[Cw | Pulse | Train, Field(discriminator="mode")]
 
 
-class Beam(Strict):
-    """A beam by its waist and far-field divergence, both at the level named."""
-
-    profile: Literal["gaussian", "tophat"] = Field(
-        "gaussian", description="Gaussian, or uniform (top hat, for which the level does not matter)."
-    )
-    diameter_mm: Diameter
-    divergence_mrad: Divergence
-    level: Literal["1/e", "1/e2"] = Field(
-        "1/e2", description="Level at which diameter and divergence are given: 1/e or 1/e2 of the peak."
-    )
-    diameter_at: Literal["waist", "exit"] = Field(
-        "waist", description="Where the diameter is given; without waist_m both are the same place."
-    )
-    waist_m: float = Field(
-        0.0,
-        ge=-1e6,
-        le=1e6,
-        description="Position of the waist in metres, positive downstream of the exit.",
-    )
-
-    def waist_diameters_mm(self) -> tuple[float, float]:
-        """Diameters at the waist [mm]: d0^2 = d^2 - (divergence x waist)^2 where given at the exit."""
-        if self.diameter_at == "waist":
-            return self.diameter_mm
-        axes = zip(self.diameter_mm, self.divergence_mrad, strict=True)
-        x, y = (d * d - (phi * self.waist_m) ** 2 for d, phi in axes)
-        return math.sqrt(max(x, 0.0)), math.sqrt(max(y, 0.0))
-
-    @model_validator(mode="after")
-    def _waist_is_possible(self) -> Beam:
-        if min(self.waist_diameters_mm()) < LEAST_MM:
-            raise ValueError(
-                "the beam is narrower at the exit than the divergence and the way to the waist make it there"
-            )
-        return self
-
-
 class Line(Strict):
     """One emission line."""
 
     wavelength_nm: Wavelength
     emission: Emission
-    beam: Beam
+    output_mirror_reflectance: float | None = Field(
+        None,
+        ge=0,
+        le=0.999999,
+        description="Resonator open: the beam is the one-way circulating one, emission / (1 - this).",
+    )
+    beam: AnyBeam
     subtense_mrad: float = Field(
         1.5,
         ge=0,
@@ -198,12 +114,45 @@ class Line(Strict):
     )
 
 
+class Aid(Strict):
+    """Optics in front of the eye; they count from 302.5 to 4000 nm."""
+
+    objective_mm: float = Field(ge=1, le=10000)
+    magnification: float = Field(ge=1, le=1000)
+    transmittance: float = Field(1.0, gt=0, le=1, description="1 is the strictest.")
+
+
+class OverDistance(Strict):
+    """Places for results over distance, evenly spread over the powers of ten."""
+
+    from_m: float = Field(gt=1e-6, le=1e9)
+    to_m: float = Field(gt=1e-6, le=1e9)
+    points: int = Field(50, ge=2, le=1000)
+
+    @model_validator(mode="after")
+    def _ascending(self) -> OverDistance:
+        if self.to_m <= self.from_m:
+            raise ValueError("to_m must lie beyond from_m")
+        return self
+
+
 class Viewing(Strict):
     """Who looks, from where."""
 
     distance_m: float | None = Field(
         None, ge=0, le=1e9, description="Evaluate at this distance in metres from the last element too."
     )
+    visibility_km: float | None = Field(
+        None,
+        ge=0.05,
+        le=1000,
+        description="Visibility; without it the air is clear (stricter).",
+    )
+    aid: Aid | None = Field(None, description="Binoculars, a telescope or a loupe between beam and eye.")
+    outdoors: bool | None = Field(
+        None, description="Ask how far the beam disturbs pilots (visual interference with aircraft)."
+    )
+    over_distance: OverDistance | None = Field(None, description="Ask for exposure and ratio over distance.")
 
 
 class EyewearRange(Strict):
@@ -293,8 +242,10 @@ class EvaluationRequest(Strict):
         "conventional duration for an unintended exposure at its wavelength.",
     )
     lines: list[Line] = Field(min_length=1, max_length=MAX_LINES, description="1 to 16 emission lines.")
-    bench: list[Any] = Field(
-        default_factory=list, max_length=0, description="Elements in the beam. Empty: the direct beam."
+    bench: Annotated[list[Element], AfterValidator(last_is_last)] = Field(
+        default_factory=list,
+        max_length=MAX_ELEMENTS,
+        description="What the light meets, in order. Distances are measured from the last element.",
     )
     viewing: Viewing = Field(default_factory=Viewing)
     eyewear: list[Eyewear] = Field(

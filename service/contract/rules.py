@@ -7,14 +7,18 @@ from typing import Any
 
 from pydantic import BaseModel, Field
 
+from service.files import DATA
 from service.rules.classes import ClassScheme
 from service.rules.limit_set import LimitSet
+from service.rules.materials import materials
 from service.rules.ruleset import RuleSet
 
 __all__ = [
+    "MaterialSummary",
     "RuleSetDocument",
     "RuleSetSummary",
     "SchemeDocument",
+    "material_list",
     "rule_set_document",
     "rule_set_summary",
     "scheme_document",
@@ -90,6 +94,25 @@ def scheme_document(scheme: ClassScheme) -> SchemeDocument:
         time_bases=_rows(scheme.time_bases),
         repetition=_rows(scheme.repetition),
     )
+
+
+class MaterialSummary(BaseModel):
+    """One material at one wavelength."""
+
+    material: str
+    wavelength_nm: float
+    refractive_index: float | None
+    reflectance: float | None
+    source: str
+    known: str
+    note: str
+
+
+def material_list() -> list[MaterialSummary]:
+    """Every row of the table of materials."""
+    names = MaterialSummary.model_fields
+    rows = [row for rows in materials(DATA).values() for row in rows]
+    return [MaterialSummary(**{n: getattr(row, n) for n in names}) for row in rows]
 
 
 def _rows(rows: tuple[Any, ...]) -> list[dict[str, Any]]:

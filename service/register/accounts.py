@@ -17,8 +17,8 @@ import sqlalchemy as sa
 from pydantic import Field
 
 from service.contract.problem import InvalidRequest, NotFound
-from service.contract.request import Strict
 from service.contract.result import Model
+from service.contract.strict import Strict
 from service.register.actor import SCOPES, Actor, Role
 from service.register.audit import Entry, record
 from service.register.clock import in_future, now, seconds_since

@@ -11,7 +11,7 @@ from service.register.models import Figures
 __all__ = ["Change", "differences", "figures_changed", "figures_differences"]
 
 #: Figures whose change an LSO has to see.
-WATCHED = ("hazard_classes", "eye_hazard_distance_m", "skin_hazard_distance_m", "optical_density")
+WATCHED = ("hazard_classes", "eye_hazard_distance_m", "skin_hazard_distance_m", "optical_density", "aided")
 #: Distances and densities that differ by less than this share are the same.
 SLACK = 1e-9
 MISSING = object()

@@ -27,7 +27,7 @@ from service.contract.evaluation import EvaluationResult
 from service.contract.problem import invalid_request
 from service.contract.request import EvaluationRequest
 from service.files import DATA
-from service.register.models import Figures
+from service.register.models import AidedFigures, Figures
 from service.rules.compiled import CompiledRules
 from service.rules.eyewear import eyewear_tables
 
@@ -186,6 +186,13 @@ def _figures(request: EvaluationRequest, result: EvaluationResult) -> Figures:
         optical_density=result.eye.optical_density,
         eye_governing=f"{eye.rule}, {eye.tissue} {eye.effect}",
         skin_governing=f"{skin.rule}, {skin.tissue} {skin.effect}",
+        aided=None
+        if result.eye_aided is None
+        else AidedFigures(
+            hazard_distance_m=result.eye_aided.hazard_distance_m,
+            hazard_ratio=result.eye_aided.hazard_ratio,
+            optical_density=result.eye_aided.optical_density,
+        ),
     )
 
 

@@ -217,9 +217,9 @@ def _figures(kept: Kept) -> Row:
         "tables_digest": tables_digest(figures.rules),
         "hazard_class": figures.hazard_class,
         "class_rank": class_rank(figures.hazard_class),
-        "eye_distance_m": figures.eye_hazard_distance_m,
+        "eye_distance_m": figures.worst_eye_distance_m,
         "skin_distance_m": figures.skin_hazard_distance_m,
-        "optical_density": figures.optical_density,
+        "optical_density": figures.worst_density,
         "wavelengths_nm": waves,
     }
 

@@ -12,7 +12,7 @@ from pydantic import Field
 
 from service.contract.answer import rule_sets
 from service.contract.problem import InvalidRequest
-from service.contract.request import Strict
+from service.contract.strict import Strict
 from service.register.clock import today
 from service.register.figures import tables_digest
 from service.register.models import Day, LaserPage, Text

@@ -8,10 +8,12 @@ from typing import Annotated, Any, Literal
 
 from pydantic import AfterValidator, BeforeValidator, Field
 
-from service.contract.request import EvaluationRequest, Eyewear, Strict
+from service.contract.request import EvaluationRequest, Eyewear
 from service.contract.result import Model
+from service.contract.strict import Strict
 
 __all__ = [
+    "AidedFigures",
     "Decision",
     "DecisionIn",
     "Event",
@@ -115,6 +117,14 @@ class ReviewIn(Strict):
     review_due: Day = Field(description="Next review, YYYY-MM-DD; null = none.")
 
 
+class AidedFigures(Model):
+    """The key figures of the eye behind the optical aid of the request."""
+
+    hazard_distance_m: float | None = Field(description="0 = nothing exceeded; null = unbounded.")
+    hazard_ratio: float
+    optical_density: float
+
+
 class Figures(Model):
     """The key figures of a result."""
 
@@ -128,6 +138,20 @@ class Figures(Model):
     optical_density: float = Field(description="For the eye, at the most hazardous place.")
     eye_governing: str
     skin_governing: str
+    aided: AidedFigures | None = Field(None, description="Null where the request names no optical aid.")
+
+    @property
+    def worst_eye_distance_m(self) -> float | None:
+        """The longer of the hazard distances with and without the aid [m]; None = unbounded."""
+        if self.aided is None:
+            return self.eye_hazard_distance_m
+        ends = (self.eye_hazard_distance_m, self.aided.hazard_distance_m)
+        return None if None in ends else max(e for e in ends if e is not None)
+
+    @property
+    def worst_density(self) -> float:
+        """The larger of the densities with and without the aid."""
+        return max(self.optical_density, self.aided.optical_density if self.aided else 0.0)
 
     @property
     def hazard_class(self) -> str:

@@ -13,9 +13,11 @@ from service.contract.evaluation import Comparison, EvaluationResult
 from service.contract.problem import NotFound
 from service.contract.request import EvaluationRequest
 from service.contract.rules import (
+    MaterialSummary,
     RuleSetDocument,
     RuleSetSummary,
     SchemeDocument,
+    material_list,
     rule_set_document,
     rule_set_summary,
     scheme_document,
@@ -75,3 +77,9 @@ async def get_scheme(scheme_id: str) -> SchemeDocument:
     if found is None:
         raise NotFound(f"there is no scheme {scheme_id[:100]!r}; there are {', '.join(schemes())}")
     return scheme_document(found.scheme)
+
+
+@router.get("/materials", tags=["rules"], summary="Materials of reflectors")
+async def get_materials() -> list[MaterialSummary]:
+    """Refractive index or reflectance of common materials, with source."""
+    return material_list()

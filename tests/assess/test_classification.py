@@ -41,7 +41,7 @@ def lines(*several: dict[str, Any]) -> Lines:
         rate_hz=column("rate_hz"),
         exposure_s=np.ones(len(every)),
         subtense_mrad=column("alpha"),
-        beams=Beams(
+        beams=Beams.with_waist(
             np.array([line["profile"] == "tophat" for line in every]),
             *(width, width, angle, angle, column("waist_m")),
         ),

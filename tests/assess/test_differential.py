@@ -77,7 +77,11 @@ def arrays(lines: list[dict]) -> Lines:
         rate_hz=np.where(mode == 2, column("rate_hz"), 1.0),
         exposure_s=column("exposure_s"),
         subtense_mrad=column("subtense_mrad"),
-        beams=Beams(np.array([x["profile"] == "tophat" for x in lines]), *axes, column("waist_m")),
+        beams=Beams.with_waist(
+            np.array([x["profile"] == "tophat" for x in lines]),
+            *axes,
+            column("waist_m"),
+        ),
     )
 
 

@@ -16,7 +16,6 @@ from service.assess.evaluate import evaluate
 from service.assess.lines import Lines
 from service.contract.answer import answer, rule_sets
 from service.contract.request import EvaluationRequest
-from service.optics.beams import Beams
 from tests.assess.test_differential import arrays, draw
 from tests.reference import plain
 
@@ -47,8 +46,6 @@ def main() -> None:
     drawn = draw(PLAIN_LINES, seed=5, elliptical=False)
     sample = arrays(drawn)
     rng = np.random.default_rng(7)
-    beams: Beams = sample.beams
-    assert len(beams.waist_m) == PLAIN_LINES
     chunks = [
         take(sample, rng.integers(PLAIN_LINES, size=min(CHUNK, LINES - start)))
         for start in range(0, LINES, CHUNK)

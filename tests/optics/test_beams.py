@@ -14,7 +14,7 @@ def beams(
     d: tuple[float, float], phi: tuple[float, float], waist: float = 0.0, tophat: bool = False
 ) -> Beams:
     columns = [np.array([v]) for v in (*d, *phi, waist)]
-    return Beams(np.array([tophat]), *columns)
+    return Beams.with_waist(np.array([tophat]), *columns)
 
 
 def test_diameter_is_the_hyperbola() -> None:

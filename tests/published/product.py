@@ -97,7 +97,7 @@ def factor(rules: str, name: str, x: float) -> float:
 def beams(diameter_m: float, divergence_rad: float, waist_m: float = 0.0, tophat: bool = False) -> Beams:
     """One round beam; diameter and divergence at 1/e, or of a top hat."""
     columns = [np.array([x]) for x in (diameter_m, diameter_m, divergence_rad, divergence_rad, waist_m)]
-    return Beams(np.array([tophat]), *columns)
+    return Beams.with_waist(np.array([tophat]), *columns)
 
 
 def reach_m(

@@ -155,6 +155,29 @@ def test_figures_of_a_batch_are_those_of_the_single_answer() -> None:
         assert one.figures.hazard_classes == {c.scheme: c.hazard_class for c in result.classification}
 
 
+def test_the_longer_distance_counts_where_an_aid_is_used(web: Web) -> None:
+    """Binoculars gather more of a wide beam; the list shows the farther end of both."""
+    body = laser("AIDED")
+    body["request"]["viewing"] = {"aid": {"objective_mm": 50, "magnification": 7}}
+    found = web.create(body)
+    answer = web.ok(web.get(f"{LASERS}/1/evaluation"))
+    ends = [answer[k]["hazard_distance_m"] for k in ("eye", "eye_aided")]
+    assert ends[1] > ends[0]
+    assert found["eye_hazard_distance_m"] == ends[1]
+    assert found["current"]["figures"]["eye_hazard_distance_m"] == ends[0]
+    assert found["current"]["figures"]["aided"]["hazard_distance_m"] == ends[1]
+    assert found["optical_density"] == max(answer[k]["optical_density"] for k in ("eye", "eye_aided"))
+    assert "Through the optical aid" in web.get("/lasers/1", headers={"accept": "text/html"}).text
+
+
+def test_what_has_no_batch_path_is_answered_singly() -> None:
+    body = laser("BENCH")["request"]
+    body["bench"] = [{"element": "lens", "focal_mm": 50}, {"element": "window", "transmittance": 0.5}]
+    request = EvaluationRequest.model_validate(body)
+    alone = kept(request)
+    assert evaluated([request]) == [dataclasses.replace(alone, result=None)]
+
+
 def test_differences_name_every_field() -> None:
     old = {"a": 1, "lines": [{"w": 1, "d": [1, 2]}], "gone": {"x": 1}, "same": [1, 2]}
     new = {"a": 2, "lines": [{"w": 1, "d": [1, 3]}, {"w": 5}], "same": [1, 2], "more": True}

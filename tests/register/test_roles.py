@@ -21,6 +21,7 @@ OPEN = {
     ("GET", "/"),
     ("GET", "/api/v1/classes"),
     ("GET", "/api/v1/classes/{scheme_id}"),
+    ("GET", "/api/v1/materials"),
     ("GET", "/api/v1/openapi.json"),
     ("GET", "/api/v1/rules"),
     ("GET", "/api/v1/rules/{rules_id}"),

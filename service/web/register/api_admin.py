@@ -9,8 +9,8 @@ from pydantic import Field
 from starlette.requests import Request
 from starlette.responses import Response, StreamingResponse
 
-from service.contract.request import Strict
 from service.contract.result import Model
+from service.contract.strict import Strict
 from service.register import accounts, audit
 from service.register.accounts import TokenIn, TokenInfo, User, UserIn
 from service.register.actor import Role

@@ -9,8 +9,8 @@ from starlette.requests import Request
 from starlette.responses import Response, StreamingResponse
 
 from service.contract.problem import UnsupportedMedia
-from service.contract.request import Strict
 from service.contract.result import Model
+from service.contract.strict import Strict
 from service.register.importing import Imported, import_all
 from service.register.listing import Filters
 from service.web.body import read_limited

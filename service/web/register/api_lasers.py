@@ -12,8 +12,8 @@ from starlette.requests import Request
 from starlette.responses import Response
 
 from service.contract.evaluation import EvaluationResult
-from service.contract.request import Strict
 from service.contract.result import Model
+from service.contract.strict import Strict
 from service.register import flow, lasers, matching, stored
 from service.register.database import Database
 from service.register.difference import Change, differences, figures_differences

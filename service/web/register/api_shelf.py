@@ -7,8 +7,8 @@ from pydantic import Field
 from starlette.requests import Request
 from starlette.responses import Response
 
-from service.contract.request import Strict
 from service.contract.result import Model
+from service.contract.strict import Strict
 from service.register import matching, reevaluate, shelf
 from service.register.database import Database
 from service.register.figures import canonical
