@@ -13,6 +13,7 @@ from service.contract.answer import rule_sets
 from service.contract.classification import schemes
 from service.contract.problem import NotFound, Problem
 from service.files import DATA
+from service.register.database import Database, database_url
 from service.rules.airspace import airspace_tables
 from service.rules.eyewear import eyewear_tables
 from service.rules.materials import materials
@@ -22,8 +23,25 @@ from service.web import api, bulk, exports, health, metrics, pages, report, rule
 from service.web.headers import Envelope
 from service.web.openapi import describe
 from service.web.problems import PlainProblem, problem_response
+from service.web.register import (
+    api_admin,
+    api_csv,
+    api_lasers,
+    api_shelf,
+    pages_accounts,
+    pages_csv,
+    pages_lasers,
+    pages_shelf,
+    pages_signoff,
+    paper,
+)
 
 __all__ = ["create_app"]
+
+REGISTER = (
+    *(api_csv, api_lasers, api_shelf, api_admin, paper),
+    *(pages_csv, pages_lasers, pages_signoff, pages_shelf, pages_accounts),
+)
 
 
 def create_app(settings: Settings | None = None) -> FastAPI:
@@ -42,6 +60,7 @@ def create_app(settings: Settings | None = None) -> FastAPI:
         redoc_url=None,
     )
     app.state.settings = settings or Settings()
+    app.state.register = Database(database_url(app.state.settings.database, app.state.settings.data_dir))
     for router in (
         api.router,
         bulk.router,
@@ -56,11 +75,13 @@ def create_app(settings: Settings | None = None) -> FastAPI:
         sweep.router,
     ):
         app.include_router(router)
+    for module in REGISTER:
+        app.include_router(module.router)
     describe(app)
 
     async def on_problem(request: Request, error: Exception) -> Response:
         assert isinstance(error, Problem)
-        return problem_response(request, error)
+        return problem_response(request, error, getattr(error, "headers", None))
 
     async def on_http(request: Request, error: Exception) -> Response:
         assert isinstance(error, HTTPException)

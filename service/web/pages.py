@@ -15,6 +15,7 @@ from service.contract.answer import answer, cautions, rule_sets
 from service.contract.evaluation import EvaluationResult
 from service.contract.problem import FieldError, InvalidRequest, NotFound
 from service.files import DATA
+from service.register.problems import TEXTS as REGISTER_PROBLEMS
 from service.rules.materials import materials
 from service.rules.tables import read_toml
 from service.web import present
@@ -44,6 +45,7 @@ PROBLEMS = {
     "not-found": "There is nothing at this address.",
     "bad-address": "The address of a page has a parameter that the form does not know, or comes from "
     "an older form. Nothing is filled in silently, because a changed value could hide a hazard.",
+    **REGISTER_PROBLEMS,
     "http": "The request cannot be answered; the status and the detail say why.",
 }
 
