@@ -170,6 +170,23 @@ def test_the_longer_distance_counts_where_an_aid_is_used(web: Web) -> None:
     assert "Through the optical aid" in web.get("/lasers/1", headers={"accept": "text/html"}).text
 
 
+def test_a_sweep_that_stops_counts(web: Web) -> None:
+    """Eyewear and distances of a sweeping beam are those of the beam that stands still."""
+    body = laser("SWEEP")
+    body["request"]["bench"] = [{"element": "scanner", "angle_deg": 20, "sweeps_hz": 50}]
+    found = web.create(body)
+    answer = web.ok(web.get(f"{LASERS}/1/evaluation"))
+    stopped = answer["scan"]["failure_eye"]
+    assert stopped["hazard_distance_m"] > answer["eye"]["hazard_distance_m"]
+    assert found["eye_hazard_distance_m"] == stopped["hazard_distance_m"]
+    assert found["optical_density"] == stopped["optical_density"]
+    assert found["skin_hazard_distance_m"] == max(
+        answer["skin"]["hazard_distance_m"], answer["scan"]["failure_skin"]["hazard_distance_m"]
+    )
+    assert found["current"]["figures"]["eye_hazard_distance_m"] == answer["eye"]["hazard_distance_m"]
+    assert "When the sweep stops" in web.get("/lasers/1", headers={"accept": "text/html"}).text
+
+
 def test_what_has_no_batch_path_is_answered_singly() -> None:
     body = laser("BENCH")["request"]
     body["bench"] = [{"element": "lens", "focal_mm": 50}, {"element": "window", "transmittance": 0.5}]
