@@ -26,6 +26,7 @@ from service.contract.result import TargetAnswer
 from service.files import DATA
 from service.register.models import EyeFigures, Figures
 from service.rules.eyewear import eyewear_tables
+from service.rules.tables import digest_of as files_digest
 
 __all__ = [
     "CHUNK",
@@ -89,7 +90,10 @@ def tables_of(rules_id: str) -> dict[str, str]:
     """Digest of every table that a result under a rule set rests on."""
     found = {f"rules/{rules_id}": rule_sets()[rules_id].rules.digest}
     found |= {f"classes/{key}": s.scheme.digest for key, s in schemes().items()}
-    return found | {"eyewear": eyewear_tables(DATA).digest}
+    return found | {
+        "eyewear": eyewear_tables(DATA).digest,
+        "materials": files_digest([DATA / "materials.csv"]),
+    }
 
 
 @cache
