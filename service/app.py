@@ -13,6 +13,7 @@ from service.contract.answer import rule_sets
 from service.contract.classification import schemes
 from service.contract.problem import NotFound, Problem
 from service.files import DATA
+from service.register.database import Database, database_url
 from service.rules.airspace import airspace_tables
 from service.rules.eyewear import eyewear_tables
 from service.rules.materials import materials
@@ -39,8 +40,25 @@ from service.web.guard import Guard
 from service.web.headers import Envelope
 from service.web.openapi import describe
 from service.web.problems import PlainProblem, problem_response
+from service.web.register import (
+    api_admin,
+    api_csv,
+    api_lasers,
+    api_shelf,
+    pages_accounts,
+    pages_csv,
+    pages_lasers,
+    pages_shelf,
+    pages_signoff,
+    paper,
+)
 
 __all__ = ["create_app"]
+
+REGISTER = (
+    *(api_csv, api_lasers, api_shelf, api_admin, paper),
+    *(pages_csv, pages_lasers, pages_signoff, pages_shelf, pages_accounts),
+)
 
 
 def create_app(settings: Settings | None = None) -> FastAPI:
@@ -59,6 +77,7 @@ def create_app(settings: Settings | None = None) -> FastAPI:
         redoc_url=None,
     )
     app.state.settings = settings or Settings()
+    app.state.register = Database(database_url(app.state.settings.database, app.state.settings.data_dir))
     for module in (
         api,
         bulk,
@@ -75,13 +94,14 @@ def create_app(settings: Settings | None = None) -> FastAPI:
         sweep,
         trust_api,
         trust_pages,
+        *REGISTER,
     ):
         app.include_router(module.router)
     describe(app)
 
     async def on_problem(request: Request, error: Exception) -> Response:
         assert isinstance(error, Problem)
-        return problem_response(request, error)
+        return problem_response(request, error, getattr(error, "headers", None))
 
     async def on_http(request: Request, error: Exception) -> Response:
         assert isinstance(error, HTTPException)

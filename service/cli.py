@@ -5,7 +5,7 @@ from __future__ import annotations
 import argparse
 import sys
 
-from service import __version__, serve
+from service import __version__, register_commands, serve
 from service.bulk import command as evaluate
 from service.contract.answer import rule_sets
 from service.contract.classification import schemes
@@ -22,8 +22,11 @@ def main(arguments: list[str] | None = None) -> int:
     commands = parser.add_subparsers(dest="command", required=True)
     serve.add_command(commands)
     evaluate.add_command(commands)
+    register_commands.add_commands(commands)
     chosen = parser.parse_args(arguments)
-    return serve.run(chosen) if chosen.command == "serve" else _evaluate(chosen)
+    if chosen.command == "serve":
+        return serve.run(chosen)
+    return _evaluate(chosen) if chosen.command == "evaluate" else register_commands.run(chosen)
 
 
 def _evaluate(chosen: argparse.Namespace) -> int:

@@ -16,8 +16,10 @@ from uvicorn.supervisors import Multiprocess
 
 from service import __version__
 from service.app import create_app
+from service.contract.problem import Problem
 from service.garbage import settle
 from service.logs import configure
+from service.register.database import shown_url
 from service.rules.tables import TableError
 from service.settings import Settings, SettingsError
 from service.web.metrics import SHARED
@@ -66,17 +68,21 @@ def run(chosen: argparse.Namespace) -> int:
     except (OSError, OverflowError) as error:
         print(f"blinkline: cannot listen on {host} port {port}: {error}", file=sys.stderr)
         return 2
+    _open_register(app)
     print(f"Blinkline {__version__} on http://{host}:{listener.getsockname()[1]}", flush=True)
     options: dict[str, Any] = {
         "log_config": None,
         "access_log": False,
         "server_header": False,
+        # What a proxy forwards is read by the register itself, from the proxies named in the settings.
+        "proxy_headers": False,
         "timeout_graceful_shutdown": PATIENCE_S,
         "http": Patient,
     }
     if chosen.workers == 1:
         uvicorn.Server(uvicorn.Config(app, **options)).run(sockets=[listener])
         return 0
+    app.state.register.close()
     shared = os.environ[SHARED] = tempfile.mkdtemp(prefix="blinkline-")
     try:
         config = uvicorn.Config("service.serve:application", factory=True, workers=chosen.workers, **options)
@@ -84,6 +90,18 @@ def run(chosen: argparse.Namespace) -> int:
     finally:
         shutil.rmtree(shared, ignore_errors=True)
     return 0
+
+
+def _open_register(app: FastAPI) -> None:
+    """Bring the register's tables up to date, or tell why it stays closed: evaluations work without.
+
+    Workers start afterwards and find the tables as they are to be.
+    """
+    try:
+        app.state.register.open()
+    except Problem as problem:
+        place = shown_url(app.state.register.url)
+        print(f"blinkline: no register at {place}: {problem.detail}", file=sys.stderr, flush=True)
 
 
 def _listen(host: str, port: int) -> socket.socket:

@@ -6,8 +6,10 @@ import os
 import re
 from collections.abc import Mapping
 from dataclasses import dataclass, fields
+from ipaddress import ip_network
 
 from service.logs import FORMS
+from service.register.database import database_url
 
 __all__ = ["Settings", "SettingsError"]
 
@@ -22,6 +24,9 @@ TEXTS = {
     "sign_policy": (re.compile(r"standard|strict"), "standard or strict"),
     "lso_name": (re.compile(r"[^\n\t]{0,80}"), "one line of at most 80 characters"),
     "lso_phone": (re.compile(r"[^\n\t]{0,40}"), "one line of at most 40 characters"),
+    "sign_in": (re.compile(r"off|password|header"), "off, password or header"),
+    "four_eyes": (re.compile(r"on|off"), "on or off"),
+    "user_header": (re.compile(r"[!#$%&'*+.^_`|~0-9A-Za-z-]+"), "the name of a header"),
 }
 
 
@@ -41,6 +46,10 @@ class Settings:
     `allowed_hosts`: host names served, separated by commas; blank = any. `request_time`: longest time for
     head and body to arrive, and for a part of an answer to be taken [s]. `running_limit`: most requests
     computed at a time, `rate_limit`: most requests of one address a minute (0 = any); both per process.
+    For the register: `data_dir`: its folder (blank: per user). `database`: PostgreSQL address instead.
+    `sign_in`: off, password or header. `proxies`: addresses of reverse proxies, parted by commas.
+    `user_header`: header in which such a proxy names the user. `import_limit`: largest CSV file [bytes].
+    `four_eyes`: on = who submitted a revision cannot approve it.
     """
 
     host: str = "127.0.0.1"
@@ -56,6 +65,13 @@ class Settings:
     request_time: int = 30
     running_limit: int = 100
     rate_limit: int = 0
+    data_dir: str = ""
+    database: str = ""
+    sign_in: str = "off"
+    proxies: str = ""
+    user_header: str = "x-remote-user"
+    import_limit: int = 20_000_000
+    four_eyes: str = "off"
 
     @classmethod
     def from_environment(cls, environment: Mapping[str, str] = os.environ) -> Settings:
@@ -79,4 +95,24 @@ class Settings:
             if not text.isdecimal() or not least <= int(text) <= top:
                 raise SettingsError(f"{name} is {text!r}, expected a whole number from {least} to {top}")
             values[field.name] = int(text)
-        return cls(**values)  # type: ignore[arg-type]
+        return cls(**values)._checked()  # type: ignore[arg-type]
+
+    def _checked(self) -> Settings:
+        """Itself. Raises SettingsError where texts do not go together."""
+        for address in self.proxy_addresses:
+            try:
+                ip_network(address, strict=False)
+            except ValueError:
+                raise SettingsError(f"BLINKLINE_PROXIES holds {address!r}, which is no address") from None
+        if self.sign_in == "header" and not self.proxies:
+            raise SettingsError("BLINKLINE_SIGN_IN is 'header', so BLINKLINE_PROXIES must name the proxy")
+        try:
+            database_url(self.database, self.data_dir)
+        except ValueError as error:
+            raise SettingsError(f"BLINKLINE_DATABASE cannot be used: {error}") from None
+        return self
+
+    @property
+    def proxy_addresses(self) -> list[str]:
+        """Addresses or networks of the reverse proxies."""
+        return [a.strip() for a in self.proxies.split(",") if a.strip()]

@@ -19,7 +19,16 @@ from service.contract.result import Model, RulesInfo, TargetAnswer
 from service.contract.second_look import second_look
 from service.rules.ruleset import TARGETS
 
-__all__ = ["Closing", "Governing", "ProblemRecord", "Summary", "TargetSummary", "summaries", "summary_of"]
+__all__ = [
+    "Closing",
+    "Governing",
+    "ProblemRecord",
+    "Summary",
+    "TargetSummary",
+    "batched",
+    "summaries",
+    "summary_of",
+]
 
 
 class Governing(Model):

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from typing import TypeVar
+from typing import Any, TypeVar
 
 from pydantic import BaseModel
 from starlette.requests import Request
@@ -11,17 +11,13 @@ from service.contract.problem import BodyTooLarge, UnsupportedMedia
 from service.contract.reading import model_of, read_json
 from service.contract.request import EvaluationRequest
 
-__all__ = ["read_model", "read_request"]
+__all__ = ["read_data", "read_limited", "read_model", "read_request"]
 
 Read = TypeVar("Read", bound=BaseModel)
 
 
-async def _read_body(request: Request) -> bytes:
-    """The body. Raises BodyTooLarge beyond the service's limit, UnsupportedMedia for other types."""
-    media = request.headers.get("content-type", "").partition(";")[0].strip().lower()
-    if media != "application/json" and not media.endswith("+json"):
-        raise UnsupportedMedia(f"content-type is {media[:100]!r}; send application/json")
-    limit = request.app.state.settings.body_limit
+async def read_limited(request: Request, limit: int) -> bytes:
+    """The body. Raises BodyTooLarge beyond a limit [bytes]."""
     parts, size = [], 0
     async for chunk in request.stream():
         size += len(chunk)
@@ -38,4 +34,12 @@ async def read_request(request: Request) -> EvaluationRequest:
 
 async def read_model(request: Request, model: type[Read]) -> Read:
     """The request of some kind in the body. Raises a Problem that names what is wrong."""
-    return model_of(model, read_json(await _read_body(request)))
+    return model_of(model, await read_data(request))
+
+
+async def read_data(request: Request) -> Any:
+    """The JSON value in the body. Raises a Problem that names what is wrong."""
+    media = request.headers.get("content-type", "").partition(";")[0].strip().lower()
+    if media != "application/json" and not media.endswith("+json"):
+        raise UnsupportedMedia(f"content-type is {media[:100]!r}; send application/json")
+    return read_json(await read_limited(request, request.app.state.settings.body_limit))

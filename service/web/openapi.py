@@ -17,6 +17,7 @@ from service.contract.request import EvaluationRequest
 from service.contract.sweep import SweepRequest
 from service.sign.request import SignRequest
 from service.web.bulk import NDJSON
+from service.web.register.described import BODIES as REGISTER_BODIES
 
 __all__ = ["describe"]
 
@@ -134,7 +135,7 @@ def describe(app: FastAPI) -> None:
         answered: list[type[BaseModel]] = [ProblemDocument, *RECORDS]
         _, definitions = models_json_schema(
             [
-                *((m, "validation") for m in dict.fromkeys(BODIES.values())),
+                *((m, "validation") for m in dict.fromkeys((*BODIES.values(), *REGISTER_BODIES.values()))),
                 *((model, "validation") for model, _ in ENCLOSING.values()),
                 *((model, "serialization") for model in answered),
             ],
@@ -147,8 +148,11 @@ def describe(app: FastAPI) -> None:
                 "application/problem+json": {"schema": {"$ref": TEMPLATE.format(model="ProblemDocument")}}
             },
         }
+        _describe_register(document, problem)
         for path, operations in document["paths"].items():
             for operation in operations.values():
+                if operation.get("tags") == ["register"]:
+                    continue
                 operation["responses"].pop("422", None)
                 bodied = path in BODIES or path in ENCLOSING
                 statuses = ("400", "413", "415", "422") if bodied else ("404",) if "{" in path else ()
@@ -174,3 +178,30 @@ def describe(app: FastAPI) -> None:
         return document
 
     app.openapi = openapi  # type: ignore[method-assign]
+
+
+def _describe_register(document: dict[str, Any], problem: dict[str, Any]) -> None:
+    """Bodies and problems of the register's routes."""
+    for path, operations in document["paths"].items():
+        for method, operation in operations.items():
+            if operation.get("tags") != ["register"]:
+                continue
+            operation["responses"].pop("422", None)
+            statuses = ["401", "403", "422", "503", *(["404"] if "{" in path else [])]
+            if method != "get":
+                statuses += ["400", "409", "412", "413", "415", "428"]
+                operation.setdefault(
+                    "requestBody",
+                    {"required": True, "content": {"application/json": {"schema": _body(method, path)}}},
+                )
+                if method == "delete":
+                    del operation["requestBody"]
+            for status in statuses:
+                operation["responses"][status] = problem
+
+
+def _body(method: str, path: str) -> dict[str, Any]:
+    model = REGISTER_BODIES.get((method, path))
+    if model is None:
+        return {"type": "object", "maxProperties": 0}
+    return {"$ref": TEMPLATE.format(model=model.__name__)}

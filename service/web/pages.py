@@ -15,6 +15,7 @@ from service.contract.answer import answer, cautions, rule_sets
 from service.contract.evaluation import EvaluationResult
 from service.contract.problem import FieldError, InvalidRequest, NotFound
 from service.files import DATA
+from service.register.problems import TEXTS as REGISTER_PROBLEMS
 from service.rules.materials import materials
 from service.rules.tables import read_toml
 from service.web import present
@@ -50,6 +51,7 @@ PROBLEMS = {
     "overloaded": "More requests are being computed than the operator allows, so this one was refused "
     "before anything was computed. The header retry-after says when to ask again.",
     "body-too-slow": "The body of the request did not arrive in the time that the operator allows.",
+    **REGISTER_PROBLEMS,
     "http": "The request cannot be answered; the status and the detail say why.",
 }
 

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import json
 import re
-from collections.abc import Callable
+from collections.abc import Sequence
 from dataclasses import replace
 from datetime import UTC, date, datetime
 from typing import Annotated, Any
@@ -32,7 +32,7 @@ from service.web.templates import environment
 from service.web.typeset import MEDIA, pdf
 from service.web.understood import understood
 
-__all__ = ["report_data", "report_pdf", "router"]
+__all__ = ["own_parameters", "report_data", "report_file", "report_pdf", "router", "unknown_parameters"]
 
 router = APIRouter()
 
@@ -62,7 +62,9 @@ def _body(inputs: dict[str, Any]) -> str:
     return "{\n" + ",\n".join(rows) + "\n}"
 
 
-def report_data(request: ReportRequest, day: date, given: Parts | None = None) -> dict[str, Any]:
+def report_data(
+    request: ReportRequest, day: date, given: Parts | None = None, facts: Sequence[tuple[str, str]] = ()
+) -> dict[str, Any]:
     """Everything the template needs, as JSON. Raises InvalidRequest.
 
     Parameters
@@ -70,6 +72,7 @@ def report_data(request: ReportRequest, day: date, given: Parts | None = None) -
     request : laser, paper, place and who asks
     day : day of the report
     given : the setup as it was typed, part by part, where a form was filled
+    facts : names and values of what else is known of this laser
     """
     result = answer(request.evaluation)
     chart = chart_of(result)
@@ -85,12 +88,16 @@ def report_data(request: ReportRequest, day: date, given: Parts | None = None) -
         *answer_blocks(result, replace(chart, plot=plot), svg),
     ]
     label = request.evaluation.label or "Laser, not named"
-    facts = [("Place", request.place), ("Asked by", request.asked_by), ("Rule set", result.rules.title)]
-    facts += [("Date", day.isoformat()), ("Made by", f"Blinkline {__version__}")]
+    told = [*facts, ("Place", request.place), ("Asked by", request.asked_by)]
+    told += [
+        ("Rule set", result.rules.title),
+        ("Date", day.isoformat()),
+        ("Made by", f"Blinkline {__version__}"),
+    ]
     data: dict[str, Any] = {
         "paper": request.paper,
         "title": printable(label),
-        "facts": [[name, printable(value)] for name, value in facts if value],
+        "facts": [[name, printable(value)] for name, value in told if value],
         "cautions": [_first_sentence(text) for text in result.cautions],
         "digest": result.provenance.request_digest,
         "parts": [[*first, {"kind": "signature"}], working_blocks(result, printable(_body(result.inputs)))],
@@ -100,16 +107,22 @@ def report_data(request: ReportRequest, day: date, given: Parts | None = None) -
     return data
 
 
-def report_pdf(request: ReportRequest, day: date, given: Parts | None = None) -> bytes:
+def report_pdf(
+    request: ReportRequest, day: date, given: Parts | None = None, facts: Sequence[tuple[str, str]] = ()
+) -> bytes:
     """The report. Takes a good part of a second: call it off the event loop. Raises InvalidRequest."""
-    return pdf(TEMPLATE, report_data(request, day, given), day)
+    return pdf(TEMPLATE, report_data(request, day, given, facts), day)
 
 
-async def _file(label: str, make: Callable[[], bytes]) -> Response:
-    slug = SLUG.sub("-", label.lower())[:60].strip("-")
+async def report_file(
+    request: ReportRequest, day: date, given: Parts | None = None, facts: Sequence[tuple[str, str]] = ()
+) -> Response:
+    """The report as a file, made off the event loop. Raises InvalidRequest."""
+    slug = SLUG.sub("-", request.evaluation.label.lower())[:60].strip("-")
     name = f"laser-evaluation{f'-{slug}' if slug else ''}.pdf"
+    body = await run_in_threadpool(report_pdf, request, day, given, facts)
     headers = {"content-disposition": f'inline; filename="{name}"', "cache-control": "no-store"}
-    return Response(await run_in_threadpool(make), media_type=MEDIA["pdf"], headers=headers)
+    return Response(body, media_type=MEDIA["pdf"], headers=headers)
 
 
 async def read_report(request: Request) -> ReportRequest:
@@ -127,24 +140,31 @@ async def read_report(request: Request) -> ReportRequest:
 async def post_report(body: Annotated[ReportRequest, Depends(read_report)]) -> Response:
     """Inputs, results, chart, working, sources as tagged PDF; the same bytes for the same request and day."""
     day = _today() if body.date is None else day_of(body.date)
-    return await _file(body.evaluation.label, lambda: report_pdf(body, day))
+    return await report_file(body, day)
 
 
-def _own(items: list[tuple[str, str]]) -> tuple[list[tuple[str, str]], dict[str, str]]:
-    """Parameters of the evaluation, and those of the report. Raises BadAddress."""
+def own_parameters(items: list[tuple[str, str]]) -> tuple[list[tuple[str, str]], dict[str, str]]:
+    """Other parameters, and those of the report, filled in. Raises BadAddress."""
     own: dict[str, str] = {}
     for name, value in items:
         if name in OWN:
             if name in own:
                 raise _bad(name, value, "one value", "this parameter stands twice")
             own[name] = value
-    if own.get("paper", PAPERS[0]) not in PAPERS:
+    own = {"paper": PAPERS[0], "date": _today().isoformat(), **own}
+    if own["paper"] not in PAPERS:
         raise _bad("paper", own["paper"], ", ".join(PAPERS), "unknown paper")
     try:
-        day_of(own.get("date", _today().isoformat()))
+        day_of(own["date"])
     except ValueError as error:
         raise _bad("date", own["date"], "a day such as 2026-12-01", str(error)) from None
     return [(n, v) for n, v in items if n not in OWN], own
+
+
+def unknown_parameters(items: list[tuple[str, str]]) -> BadAddress:
+    """The problem of an address with parameters that a report does not take."""
+    name, value = items[0]
+    return _bad(name[:100], value, ", ".join(OWN), "unknown parameter")
 
 
 def _bad(name: str, value: str, allowed: str, message: str) -> BadAddress:
@@ -157,11 +177,10 @@ def _bad(name: str, value: str, allowed: str, message: str) -> BadAddress:
 async def report_page(request: Request) -> Response:
     """The report of the evaluation at this address; one address holds the day and the paper too."""
     items = address_items(request.url.query)
-    rest, own = _own(items)
+    rest, own = own_parameters(items)
     if not rest:
         return RedirectResponse("/", 303)
     form = Form.read(rest)
-    own = {"paper": own.get("paper", PAPERS[0]), "date": own.get("date", _today().isoformat())}
     canonical = "&".join([form.query(), *(f"{name}={quote(own[name])}" for name in OWN)])
     if canonical != request.url.query:
         return RedirectResponse(f"/report?{canonical}", 303)
@@ -170,6 +189,6 @@ async def report_page(request: Request) -> Response:
         rules = {c.rules.id: c.rules.title for c in rule_sets().values()}
         asked = ReportRequest.model_validate({"evaluation": laser, **own})
         given = setup_given(form, rules)
-        return await _file(laser.label, lambda: report_pdf(asked, day_of(own["date"]), given))
+        return await report_file(asked, day_of(own["date"]), given)
     except InvalidRequest:
         return RedirectResponse(f"/evaluate?{form.query()}", 303)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from datetime import UTC, date, datetime
 from typing import Annotated, Any
 from urllib.parse import parse_qsl
@@ -27,7 +28,7 @@ from service.web.sign_sheet import SetSign, sign_on_sheet
 from service.web.templates import page
 from service.web.typeset import MEDIA
 
-__all__ = ["SignAnswer", "make_sign", "router", "sign_answer"]
+__all__ = ["SignAnswer", "base_address", "make_sign", "router", "sign_answer"]
 
 router = APIRouter()
 #: Media types that a client may ask for, by what they make.
@@ -58,10 +59,10 @@ async def read_sign_request(request: Request) -> SignRequest:
     return await read_model(request, SignRequest)
 
 
-def _format(request: Request) -> str:
-    """pdf, svg, png or json: by `?format=`, otherwise by `Accept`."""
+def _format(request: Request, asked: Sequence[tuple[str, str]]) -> str:
+    """pdf, svg, png or json: by the parameter `format`, otherwise by `Accept`."""
     allowed = ", ".join(sorted(FORMATS.values()))
-    for name, value in request.query_params.multi_items():
+    for name, value in asked:
         if name == "format" and value in FORMATS.values():
             return value
         error = FieldError(
@@ -97,9 +98,14 @@ def _today() -> date:
     return datetime.now(UTC).date()
 
 
-async def sign_answer(request: Request, evaluation: EvaluationRequest, options: SignOptions) -> Response:
-    """The sign in the form that the client asks for."""
-    form = _format(request)
+async def sign_answer(
+    request: Request,
+    asked: Sequence[tuple[str, str]],
+    evaluation: EvaluationRequest,
+    options: SignOptions,
+) -> Response:
+    """The sign in the form that the client asks for; `asked` are parameters: `format` or none."""
+    form = _format(request, asked)
     result, sign = make_sign(evaluation, options, _site(request), _today())
     if form == "json":
         facts = Facts(**await run_sync(sign.facts))
@@ -126,7 +132,8 @@ async def _file(sign: SetSign, form: str) -> Response:
 )
 async def post_sign(request: Request, body: Annotated[SignRequest, Depends(read_sign_request)]) -> Response:
     """PDF, SVG or PNG, or what the sign says as JSON: by `Accept` or `?format=pdf|svg|png|json`."""
-    return await sign_answer(request, body.evaluation, body.sign)
+    asked = request.query_params.multi_items()
+    return await sign_answer(request, asked, body.evaluation, body.sign)
 
 
 def _forms(request: Request) -> tuple[Form, SignForm]:
@@ -138,15 +145,19 @@ def _forms(request: Request) -> tuple[Form, SignForm]:
     return Form.read(own), SignForm.read(sign)
 
 
+def base_address(request: Request) -> str:
+    """The address of this service as people reach it, without a last slash."""
+    return request.app.state.settings.public_address or str(request.base_url).rstrip("/")
+
+
 def _made(request: Request, form: Form, sign_form: SignForm) -> SetSign:
     """The sign of an address. Raises InvalidRequest with the names of the forms' fields."""
-    base = request.app.state.settings.public_address or str(request.base_url).rstrip("/")
     try:
         evaluation = form.request()
     except InvalidRequest:
         problem = "the evaluation has values that cannot be used; mend them on its page"
         raise InvalidRequest(problem, [_no_evaluation(problem)]) from None
-    options = sign_form.options(f"{base}/evaluate?{form.query()}")
+    options = sign_form.options(f"{base_address(request)}/evaluate?{form.query()}")
     try:
         return make_sign(evaluation, options, _site(request), _today())[1]
     except InvalidRequest as error:

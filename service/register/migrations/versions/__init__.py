@@ -1,0 +1,1 @@
+"""How the register's tables came to be, one step after the other."""

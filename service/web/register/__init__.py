@@ -1,0 +1,1 @@
+"""The register on the web: who may do what, its API and its pages."""
