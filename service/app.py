@@ -101,7 +101,7 @@ def create_app(settings: Settings | None = None) -> FastAPI:
 
     async def on_problem(request: Request, error: Exception) -> Response:
         assert isinstance(error, Problem)
-        return problem_response(request, error, getattr(error, "headers", None))
+        return problem_response(request, error, error.headers)
 
     async def on_http(request: Request, error: Exception) -> Response:
         assert isinstance(error, HTTPException)

@@ -5,6 +5,7 @@ Lists of settings, addresses, fields and columns come from the code; `data/guide
 
 from __future__ import annotations
 
+import re
 from collections.abc import Iterable, Iterator
 from dataclasses import dataclass, fields
 from functools import cache
@@ -89,7 +90,7 @@ def settings_table() -> list[Setting]:
 
 
 def paths_of(app: FastAPI) -> list[str]:
-    """Every address of the application, those of routers included."""
+    """Every address of the application, those of routers included; {names} without what they may hold."""
 
     def walk(routes: Iterable[Any]) -> Iterator[str]:
         for route in routes:
@@ -97,7 +98,7 @@ def paths_of(app: FastAPI) -> list[str]:
             if inner is not None:
                 yield from walk(inner.routes)
             elif hasattr(route, "path"):
-                yield route.path
+                yield re.sub(r":\w+}", "}", route.path)
 
     return sorted(set(walk(app.routes)))
 

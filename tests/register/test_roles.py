@@ -19,6 +19,14 @@ PASSWORD = "correct horse battery"
 #: Routes that answer everybody: they store nothing.
 OPEN = {
     ("GET", "/"),
+    ("GET", "/api/v1/changes"),
+    ("GET", "/api/v1/checks"),
+    ("GET", "/api/v1/differences"),
+    ("GET", "/changes"),
+    ("GET", "/checks"),
+    ("GET", "/differences"),
+    ("GET", "/guide"),
+    ("GET", "/guide/{topic}"),
     ("GET", "/api/v1/classes"),
     ("GET", "/api/v1/classes/{scheme_id}"),
     ("GET", "/api/v1/materials"),

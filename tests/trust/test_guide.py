@@ -74,7 +74,9 @@ def test_links_of_the_guide_lead_somewhere(client: Client) -> None:
         tree = page(client, f"/guide/{topic}".rstrip("/"))
         for link in tree.all("a"):
             if (to := link.attributes["href"]).startswith("/"):
-                assert client.get(to, headers=HTML).status_code in (200, 303), to
+                # Without sign-in the register answers this machine alone, which the test client is not.
+                found = client.get(to, headers=HTML).status_code
+                assert found in (200, 303) or (to == "/lasers" and found == 403), to
 
 
 def test_no_such_page(client: Client) -> None:
