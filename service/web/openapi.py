@@ -187,7 +187,9 @@ def _describe_register(document: dict[str, Any], problem: dict[str, Any]) -> Non
             if operation.get("tags") != ["register"]:
                 continue
             operation["responses"].pop("422", None)
-            statuses = ["401", "403", "422", "503", *(["404"] if "{" in path else [])]
+            statuses = ["401", "403", "422", "503", *(["404", "409"] if "{" in path else [])]
+            if path.endswith(("/sign", "/report")):
+                statuses += ["400", "406"] if path.endswith("/sign") else ["400"]
             if method != "get":
                 statuses += ["400", "409", "412", "413", "415", "428"]
                 operation.setdefault(

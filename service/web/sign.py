@@ -28,7 +28,7 @@ from service.web.sign_sheet import SetSign, sign_on_sheet
 from service.web.templates import page
 from service.web.typeset import MEDIA
 
-__all__ = ["SignAnswer", "base_address", "make_sign", "router", "sign_answer"]
+__all__ = ["FORMATS", "SignAnswer", "base_address", "make_sign", "router", "sign_answer"]
 
 router = APIRouter()
 #: Media types that a client may ask for, by what they make.

@@ -101,6 +101,21 @@ def test_the_day_of_the_laser_safety_officer(desk: Page, tmp_path: Path) -> None
     desk.get_by_role("button", name="Approve").click()
     expect(desk.get_by_role("status")).to_contain_text("in force and locked")
 
+    # Sign and report of the revision in force: the file at once, or how it looks chosen first.
+    for name in ("Sign", "Report, A4", "Report, Letter"):
+        href = desk.get_by_role("link", name=name, exact=True).get_attribute("href")
+        assert href is not None
+        made = desk.request.get(href)
+        assert made.ok, made.text()
+        assert made.headers["content-type"] == "application/pdf"
+        assert made.headers["blinkline-revision"] == "2; approved"
+        assert made.body().startswith(b"%PDF-")
+    laser = desk.url
+    desk.get_by_role("link", name="Choose how the sign looks").click()
+    expect(desk.get_by_label("Room", exact=True)).to_have_value("Building 1")
+    expect(desk.get_by_role("link", name="PDF", exact=True).first).to_be_visible()
+    desk.goto(laser)
+
     # What differs, and the overdue list.
     desk.get_by_role("link", name="Revision 2").click()
     row = desk.get_by_role("row", name="line 1 emission power_w")

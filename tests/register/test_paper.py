@@ -63,7 +63,7 @@ def test_the_approved_revision_stays_in_force_beside_a_draft(web: Web) -> None:
     told = words(pdf.content)
     assert "BL-001, revision 1, approved 2" in told
     assert "2026-12-01" in told
-    assert "of revision 1 in force" in web.get("/lasers/1", headers=HTML).text
+    assert "of revision 1, which is in force" in web.get("/lasers/1", headers=HTML).text
 
 
 def test_how_the_sign_looks_is_asked_for_as_on_its_page(web: Web) -> None:

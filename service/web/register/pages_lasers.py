@@ -22,6 +22,7 @@ from service.register.figures import kept, request_from
 from service.register.listing import Filters, page_of
 from service.register.models import DecisionIn, LaserIn
 from service.register.problems import field_error
+from service.web.form import read_address
 from service.web.register.access import Edit, Store, View
 from service.web.register.address import evaluate_address, request_of_query
 from service.web.register.bodies import FormFields, parsed, queried
@@ -81,7 +82,7 @@ def new_laser(request: Request, actor: Edit, database: Store) -> Response:
     if not query:
         return see("/")
     setup = request_of_query(query)
-    values = {"label": setup.label}
+    values = {"label": setup.label, "place": read_address(query).get("place")}
     return _save_page(request, actor, database, query, values)
 
 

@@ -2,12 +2,15 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+from typing import Any
+
 from fastapi import APIRouter
 from starlette.concurrency import run_in_threadpool
 from starlette.requests import Request
 from starlette.responses import Response
 
-from service.contract.report import ReportRequest, day_of
+from service.contract.report import PAPERS, ReportRequest, day_of
 from service.register.database import Database
 from service.register.in_force import InForce, check_holds, in_force
 from service.register.problems import Conflict
@@ -16,8 +19,8 @@ from service.web.form import address_items
 from service.web.register.access import Store, View
 from service.web.register.render import see
 from service.web.report import own_parameters, report_file, unknown_parameters
-from service.web.sign import SignAnswer, base_address, sign_answer
-from service.web.sign_form import SignForm, split
+from service.web.sign import FORMATS, SignAnswer, base_address, sign_answer
+from service.web.sign_form import LABELS, PREFIX, SIGN_VERSION, SignForm, choices, split
 from service.web.typeset import MEDIA
 
 __all__ = ["router"]
@@ -26,6 +29,22 @@ router = APIRouter()
 #: Longest place that a sign takes as its room.
 ROOM = 80
 SIGN_MEDIA = {media: {"schema": {"type": "string"}} for media in MEDIA.values()}
+
+
+def _parameter(name: str, text: str, offered: Sequence[str] = ()) -> dict[str, Any]:
+    """One parameter for the OpenAPI document."""
+    schema = {"type": "string", **({"enum": list(offered)} if offered else {})}
+    return {"name": name, "in": "query", "schema": schema, **({"description": text} if text else {})}
+
+
+SIGN_PARAMETERS = [
+    _parameter("format", "Without it the form is chosen by Accept.", sorted(FORMATS.values())),
+    _parameter(f"{PREFIX}v", "Version of the form; needed where one of the others is given.", [SIGN_VERSION]),
+    *(
+        _parameter(PREFIX + name, label, [key for key, _ in choices().get(name, ()) if key])
+        for name, label in LABELS.items()
+    ),
+]
 
 
 def _found(database: Database, laser_id: int) -> InForce:
@@ -53,6 +72,7 @@ def _sign_form(found: InForce, given: SignForm) -> SignForm:
     summary="The sign of a laser",
     response_model=SignAnswer,
     responses={200: {"content": SIGN_MEDIA}},
+    openapi_extra={"parameters": SIGN_PARAMETERS},
 )
 async def get_sign(request: Request, actor: View, database: Store, laser_id: int) -> Response:
     """Of the revision in force, else of the newest, and then the sign says that it is not approved.
@@ -87,12 +107,15 @@ def choose_look(request: Request, actor: View, database: Store, laser_id: int) -
     summary="The report of a laser",
     response_class=Response,
     responses={200: {"content": {MEDIA["pdf"]: {}}, "description": "The report (PDF/UA-1)"}},
+    openapi_extra={
+        "parameters": [
+            _parameter("paper", "", list(PAPERS)),
+            _parameter("date", "Day of the report, as 2026-12-01; without it the present day (UTC)."),
+        ]
+    },
 )
 async def get_report(request: Request, actor: View, database: Store, laser_id: int) -> Response:
-    """Of the revision in force, else of the newest; the report says which. 409 as for the sign.
-
-    Parameters `paper` (a4, letter) and `date` (2026-12-01; without it the present day, UTC).
-    """
+    """Of the revision in force, else of the newest; the report says which. 409 as for the sign."""
     beside, own = own_parameters(address_items(request.url.query))
     if beside:
         raise unknown_parameters(beside)
