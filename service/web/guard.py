@@ -12,6 +12,7 @@ from starlette.types import ASGIApp, Message, Receive, Scope, Send
 
 from service.contract.problem import Problem
 from service.settings import Settings
+from service.web.peers import peer_of
 
 __all__ = ["BodyTooSlow", "Guard", "Overloaded", "TooManyRequests", "UnknownHost"]
 
@@ -100,7 +101,7 @@ class Guard:
         settings: Settings,
         refuse: Callable[[Request, Problem], Response],
     ) -> None:
-        self.app, self.refuse = app, refuse
+        self.app, self.refuse, self.settings = app, refuse, settings
         self.hosts = {h.strip().lower() for h in settings.allowed_hosts.split(",") if h.strip()}
         self.patience_s, self.room = float(settings.request_time), settings.running_limit
         self.rates = _Rates(settings.rate_limit) if settings.rate_limit else None
@@ -131,7 +132,7 @@ class Guard:
         if self.hosts and (name if colon and port.isdigit() else host) not in self.hosts:
             raise UnknownHost(f"the host {host[:100]!r} is not one that this service serves")
         if self.rates is not None:
-            wait = self.rates.wait_s(request.client.host if request.client else "", time.monotonic())
+            wait = self.rates.wait_s(peer_of(request, self.settings), time.monotonic())
             if wait:
                 raise TooManyRequests(int(wait) + 1)
         if self.running >= self.room:

@@ -10,7 +10,7 @@ from __future__ import annotations
 import hashlib
 import hmac
 import secrets
-from ipaddress import ip_address, ip_network
+from ipaddress import ip_address
 from typing import Annotated, Any
 from urllib.parse import quote
 
@@ -23,6 +23,7 @@ from service.register.actor import Actor, Permission
 from service.register.database import Database
 from service.register.problems import Forbidden, SignInNeeded
 from service.settings import Settings
+from service.web.peers import over_tls, through_proxy
 from service.web.problems import wants_page
 
 __all__ = [
@@ -40,8 +41,6 @@ __all__ = [
     "check_site",
     "drop_cookie",
     "form_token",
-    "over_tls",
-    "peer_of",
     "set_cookie",
     "store_of",
 ]
@@ -62,30 +61,6 @@ def store_of(request: Request) -> Database:
     database: Database = request.app.state.register
     database.open()
     return database
-
-
-def peer_of(request: Request) -> str:
-    """Address of who is connected; behind a named proxy, of the last one that the proxy saw."""
-    peer = request.client.host if request.client else ""
-    if _is_proxy(peer, request.app.state.settings):
-        seen = request.headers.get("x-forwarded-for", "").rpartition(",")[2].strip()
-        return seen or peer
-    return peer
-
-
-def over_tls(request: Request) -> bool:
-    """Whether the client speaks TLS, to us or to a named proxy."""
-    peer = request.client.host if request.client else ""
-    proxied = _is_proxy(peer, request.app.state.settings)
-    return request.url.scheme == "https" or (proxied and request.headers.get("x-forwarded-proto") == "https")
-
-
-def _is_proxy(peer: str, settings: Settings) -> bool:
-    try:
-        address = ip_address(peer)
-    except ValueError:
-        return False
-    return any(address in ip_network(n, strict=False) for n in settings.proxy_addresses)
 
 
 def _is_local(request: Request) -> bool:
@@ -113,9 +88,8 @@ def actor_of(request: Request) -> Actor | None:
             )
         return found
     if settings.sign_in == "header":
-        peer = request.client.host if request.client else ""
         names = request.headers.getlist(settings.user_header)
-        if not _is_proxy(peer, settings) or len(names) != 1:
+        if not through_proxy(request, settings) or len(names) != 1:
             return None
         with store_of(request).read() as connection:
             return accounts.actor_of_user(connection, names[0], "header")
@@ -195,14 +169,16 @@ def set_cookie(request: Request, response: Response, name: str, value: str, seco
         max_age=None if seconds is None else int(seconds),
         httponly=True,
         samesite="lax" if name == SESSION_COOKIE else "strict",
-        secure=over_tls(request),
+        secure=over_tls(request, request.app.state.settings),
         path="/",
     )
 
 
 def drop_cookie(request: Request, response: Response, name: str) -> None:
     """Take a cookie back."""
-    response.delete_cookie(name, path="/", httponly=True, secure=over_tls(request), samesite="lax")
+    response.delete_cookie(
+        name, path="/", httponly=True, secure=over_tls(request, request.app.state.settings), samesite="lax"
+    )
 
 
 View = Annotated[Actor, Depends(Guard("view"))]

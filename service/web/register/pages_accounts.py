@@ -14,6 +14,7 @@ from service.register.accounts import SESSION_S, TokenIn, UserIn
 from service.register.actor import ROLES, SCOPES, Actor
 from service.register.database import Database
 from service.register.problems import RegisterProblem, SignInNeeded, field_error
+from service.web.peers import peer_of
 from service.web.register.access import (
     SESSION_COOKIE,
     Admin,
@@ -22,7 +23,6 @@ from service.web.register.access import (
     Visitor,
     check_site,
     drop_cookie,
-    peer_of,
     set_cookie,
 )
 from service.web.register.api_admin import UserChange, export_audit
@@ -80,7 +80,7 @@ def sign_in(request: Request, database: Store, fields: FormFields) -> Response:
     following = str(fields.get("next", ""))
     if not name.isprintable():
         name = ""
-    keys = [f"name:{name.lower()}"[:200], f"peer:{peer_of(request)}"[:200]]
+    keys = [f"name:{name.lower()}"[:200], f"peer:{peer_of(request, request.app.state.settings)}"[:200]]
     try:
         with database.read() as connection:
             accounts.delay(connection, keys)
