@@ -14,8 +14,9 @@ from service.contract.classification import schemes
 from service.contract.problem import NotFound, Problem
 from service.files import DATA
 from service.rules.eyewear import eyewear_tables
+from service.rules.gain_media import gain_media
 from service.settings import Settings
-from service.web import api, health, pages, rules_pages, static
+from service.web import api, bounds_api, bounds_pages, health, pages, rules_pages, static
 from service.web.headers import Envelope
 from service.web.openapi import describe
 from service.web.problems import PlainProblem, problem_response
@@ -28,6 +29,7 @@ def create_app(settings: Settings | None = None) -> FastAPI:
     rule_sets()
     schemes()
     eyewear_tables(DATA)
+    gain_media(DATA)
     app = FastAPI(
         title="Blinkline",
         version=__version__,
@@ -36,8 +38,8 @@ def create_app(settings: Settings | None = None) -> FastAPI:
         redoc_url=None,
     )
     app.state.settings = settings or Settings()
-    for router in (api.router, health.router, pages.router, rules_pages.router, static.router):
-        app.include_router(router)
+    for module in (api, bounds_api, bounds_pages, health, pages, rules_pages, static):
+        app.include_router(module.router)
     describe(app)
 
     async def on_problem(request: Request, error: Exception) -> Response:

@@ -29,6 +29,15 @@ def notices_of(request: EvaluationRequest, evaluation: Evaluation, laser: int) -
     """Every notice for one laser of an evaluation, in the order of its fields."""
     members = np.flatnonzero(evaluation.lines.laser == laser)
     found: list[Notice] = []
+    if request.basis == "bound":
+        found.append(
+            Notice(
+                code="bound-not-measured",
+                field="basis",
+                text="Bound, not measured: the figures entered are upper bounds of what the laser can emit. "
+                "Measure it before anything is relaxed because of them.",
+            )
+        )
     for number, (line, k) in enumerate(zip(request.lines, members, strict=True)):
         found += _line_notices(f"lines.{number}", line, float(evaluation.lines.exposure_s[k]))
     found += _result_notices(evaluation, laser, members)

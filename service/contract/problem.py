@@ -33,6 +33,7 @@ __all__ = [
 
 MODES = ("cw", "pulse", "train")
 UNITS = {"nm": "nm", "w": "W", "j": "J", "s": "s", "hz": "Hz", "mm": "mm", "mrad": "mrad", "m": "m"}
+UNITS |= {"cm2": "cm2", "cm3": "per cm3", "um": "um", "percent": "%"}
 SHOWN = 120
 #: A document lists at most this many errors; the detail counts them all.
 LISTED = 20
@@ -142,11 +143,11 @@ HINTS = {
 
 
 @cache
-def _properties() -> dict[str, dict[str, Any]]:
-    """JSON schema of every field of the request by name."""
-    schema = EvaluationRequest.model_json_schema()
+def _properties(model: type[BaseModel]) -> dict[str, dict[str, Any]]:
+    """JSON schema of every field of a request by name."""
+    schema = model.model_json_schema()
     found = dict(schema["properties"])
-    for definition in schema["$defs"].values():
+    for definition in schema.get("$defs", {}).values():
         found.update(definition.get("properties", {}))
     return found
 
@@ -157,7 +158,7 @@ def _numbers(schema: dict[str, Any]) -> str:
     return f"{more}{low:g} to {schema['maximum']:g}"
 
 
-def _allowed(path: list[str]) -> str:
+def _allowed(path: list[str], model: type[BaseModel]) -> str:
     """What the field at `path` may hold, in words."""
     name = next((p for p in reversed(path) if not p.isdigit()), "")
     if name == "mode":
@@ -166,7 +167,7 @@ def _allowed(path: list[str]) -> str:
         return "an object with mode cw, pulse or train"
     if not name:
         return "an object"
-    schema = _properties().get(name)
+    schema = _properties(model).get(name)
     if schema is None:
         return "no such field"
     if "anyOf" in schema:
@@ -228,8 +229,8 @@ def _one_for_both_axes(errors: list[FieldError]) -> list[FieldError]:
     return kept
 
 
-def invalid_request(error: ValidationError) -> InvalidRequest:
-    """The problem for a request that failed validation."""
+def invalid_request(error: ValidationError, model: type[BaseModel] = EvaluationRequest) -> InvalidRequest:
+    """The problem for a request that failed validation as `model`."""
     errors = []
     for item in error.errors(include_url=False)[: 4 * LISTED]:
         kind, path = item["type"], _path(item["loc"])
@@ -265,7 +266,7 @@ def invalid_request(error: ValidationError) -> InvalidRequest:
             FieldError(
                 field=(".".join(path) or "body")[:SHOWN],
                 value=shown(value),
-                allowed="no such field" if kind == "extra_forbidden" else _allowed(path),
+                allowed="no such field" if kind == "extra_forbidden" else _allowed(path, model),
                 message=message,
                 remedy=remedy,
             )

@@ -4,9 +4,9 @@ from __future__ import annotations
 
 import json
 import math
-from typing import Any
+from typing import Any, TypeVar
 
-from pydantic import ValidationError
+from pydantic import BaseModel, ValidationError
 from starlette.requests import Request
 
 from service.contract.problem import (
@@ -19,7 +19,9 @@ from service.contract.problem import (
 )
 from service.contract.request import EvaluationRequest
 
-__all__ = ["read_request"]
+__all__ = ["read_model", "read_request"]
+
+M = TypeVar("M", bound=BaseModel)
 
 #: Integers with more digits than any double holds are read as infinite, and refused by their field.
 MAX_DIGITS = 400
@@ -92,6 +94,11 @@ async def _read_body(request: Request) -> bytes:
 
 async def read_request(request: Request) -> EvaluationRequest:
     """The evaluation request in the body. Raises a Problem that names what is wrong."""
+    return await read_model(request, EvaluationRequest)
+
+
+async def read_model(request: Request, model: type[M]) -> M:
+    """The body as a request of this model. Raises a Problem that names what is wrong."""
     body = await _read_body(request)
     try:
         data = json.loads(body.decode(), object_pairs_hook=_object, parse_int=_integer)
@@ -103,6 +110,6 @@ async def read_request(request: Request) -> EvaluationRequest:
     except RecursionError:
         raise MalformedBody("the body is nested too deeply") from None
     try:
-        return EvaluationRequest.model_validate(data)
+        return model.model_validate(data)
     except ValidationError as error:
-        raise invalid_request(error) from None
+        raise invalid_request(error, model) from None

@@ -11,6 +11,7 @@ __all__ = [
     "CHOICES",
     "EMISSION",
     "EMISSION_NUMBERS",
+    "LINE_FIELDS",
     "MODE_NAMES",
     "PARTS",
     "TOP_NUMBERS",
@@ -21,7 +22,7 @@ __all__ = [
 
 ADDRESS_VERSION = "1"
 
-TOP_TEXT = ("label", "rules")
+TOP_TEXT = ("label", "rules", "basis")
 TOP_NUMBERS = ("exposure_s", "distance_m")
 CHOICES = {
     "mode": ("cw", "pulse", "train"),
@@ -68,6 +69,7 @@ CHANGES = {
 LABELS = {
     "label": "Name of this laser",
     "rules": "Rule set",
+    "basis": "Where the figures come from",
     "exposure_s": "Exposure duration",
     "distance_m": "Viewing distance",
     "wavelength_nm": "Wavelength",

@@ -161,10 +161,7 @@ class Form:
         """The request. Raises InvalidRequest with the names of the form's fields."""
         errors: list[FieldError] = []
         body: dict[str, Any] = {"lines": [self._line(k + 1, errors) for k in range(self.lines)]}
-        if "label" in self.values:
-            body["label"] = self.values["label"]
-        if "rules" in self.values:
-            body["rules"] = self.values["rules"]
+        body |= {name: self.values[name] for name in TOP_TEXT if name in self.values}
         exposure, distance = (self._number(n, errors) for n in TOP_NUMBERS)
         if exposure is not None:
             body["exposure_s"] = exposure

@@ -11,6 +11,10 @@ from service.web.shelf import shelf
 __all__ = ["setup_given"]
 
 WORDS = {
+    "basis": (
+        "Figures",
+        {"measured": "measured", "data_sheet": "data sheet", "bound": "bound, not measured"},
+    ),
     "mode": ("Emission", {"cw": "continuous", "pulse": "single pulse", "train": "pulse train"}),
     "profile": ("Profile", {"gaussian": "Gaussian", "tophat": "top hat"}),
     "level": ("Diameter and divergence at", {"1/e2": "1/e² of the peak", "1/e": "1/e of the peak"}),
@@ -29,6 +33,8 @@ def setup_given(form: Form, titles: dict[str, str]) -> list[tuple[str, list[tupl
     """
     rules = form.get("rules", next(iter(titles)))
     parts = [("Laser", [("Name", form.get("label", "not named")), ("Rule set", titles.get(rules, rules))])]
+    if form.get("basis"):
+        parts[0][1].append((WORDS["basis"][0], _value("basis", form.get("basis"))))
     for k in range(form.lines):
         name = f"Line {k + 1}" if form.lines > 1 else "Emission and beam"
         parts.append((name, _filled(form, LINE_FIELDS, k + 1)))

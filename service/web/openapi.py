@@ -6,15 +6,21 @@ from typing import Any
 
 from fastapi import FastAPI
 from fastapi.openapi.utils import get_openapi
+from pydantic import BaseModel
 from pydantic.json_schema import models_json_schema
 
 from service.contract.problem import ProblemDocument
 from service.contract.request import EvaluationRequest
+from service.web.bounds_api import BODIES as LATER
 
 __all__ = ["describe"]
 
 TEMPLATE = "#/components/schemas/{model}"
-BODIES = ("/api/v1/evaluate", "/api/v1/compare")
+BODIES: dict[str, type[BaseModel]] = {
+    "/api/v1/evaluate": EvaluationRequest,
+    "/api/v1/compare": EvaluationRequest,
+    **LATER,
+}
 EXAMPLES: dict[str, dict[str, Any]] = {
     "continuous": {
         "summary": "A green alignment beam, continuous wave",
@@ -67,7 +73,11 @@ def describe(app: FastAPI) -> None:
             return app.openapi_schema
         document = get_openapi(title=app.title, version=app.version, routes=app.routes)
         _, definitions = models_json_schema(
-            [(EvaluationRequest, "validation"), (ProblemDocument, "serialization")], ref_template=TEMPLATE
+            [
+                *((m, "validation") for m in dict.fromkeys(BODIES.values())),
+                (ProblemDocument, "serialization"),
+            ],
+            ref_template=TEMPLATE,
         )
         document.setdefault("components", {}).setdefault("schemas", {}).update(definitions["$defs"])
         problem = {
@@ -83,11 +93,11 @@ def describe(app: FastAPI) -> None:
                 for status in statuses:
                     operation["responses"][status] = problem
                 if path in BODIES:
-                    schema = {"$ref": TEMPLATE.format(model="EvaluationRequest")}
-                    operation["requestBody"] = {
-                        "required": True,
-                        "content": {"application/json": {"schema": schema, "examples": EXAMPLES}},
-                    }
+                    model = BODIES[path]
+                    content: dict[str, Any] = {"schema": {"$ref": TEMPLATE.format(model=model.__name__)}}
+                    if model is EvaluationRequest:
+                        content["examples"] = EXAMPLES
+                    operation["requestBody"] = {"required": True, "content": {"application/json": content}}
         app.openapi_schema = document
         return document
 

@@ -1,0 +1,45 @@
+"""Bounds, tolerances, measured values, profiles and structured sources as JSON."""
+
+from __future__ import annotations
+
+from typing import Annotated, Any
+
+from fastapi import APIRouter, Depends
+from pydantic import BaseModel
+from starlette.requests import Request
+from starlette.responses import Response
+
+from service.contract.bounds import BoundsRequest
+from service.contract.bounds_answer import bounds
+from service.contract.bounds_medium import media_documents
+from service.contract.bounds_result import BoundsResult, GainMediumDocument
+from service.web.body import read_model
+
+__all__ = ["BODIES", "router"]
+
+router = APIRouter(prefix="/api/v1", tags=["bounds and measurements"])
+
+#: Request of every call with a body.
+BODIES: dict[str, type[BaseModel]] = {
+    "/api/v1/bounds": BoundsRequest,
+}
+
+
+def _json(model: Any) -> Response:
+    return Response(model.model_dump_json(), media_type="application/json")
+
+
+async def _bounds_body(request: Request) -> BoundsRequest:
+    return await read_model(request, BoundsRequest)
+
+
+@router.get("/gain-media", summary="Gain media")
+async def get_gain_media() -> list[GainMediumDocument]:
+    """Every gain medium with its figures, their sources and how each is known."""
+    return media_documents()
+
+
+@router.post("/bounds", response_model=BoundsResult, summary="Bounds for an unmeasured laser")
+def post_bounds(body: Annotated[BoundsRequest, Depends(_bounds_body)]) -> Response:
+    """Upper bounds from pump, medium and resonator, and evaluations of them."""
+    return _json(bounds(body))
