@@ -12,7 +12,7 @@ from service.contract.answer import answer, cautions, rule_set
 from service.contract.bounds import BoundsRequest
 from service.contract.bounds_curves import opened, stored_ions, switched_on
 from service.contract.bounds_figures import bound_figures, computed_figures
-from service.contract.bounds_medium import medium_of
+from service.contract.bounds_medium import is_discharge, medium_of
 from service.contract.bounds_result import BoundsResult, Outcome, Scenario
 from service.contract.request import MAX_LABEL, EvaluationRequest
 from service.contract.result import Notice
@@ -144,7 +144,10 @@ def _scenarios(
         ),
     ]
     if rate is not None and (switch is not None or pump.mode == "pulse"):
-        text = "Q-switched pulses at the given rate, which share the pump."
+        text = (
+            "Q-switched pulses at the given rate, which share the pump; one after a pause can be as large "
+            "as the first."
+        )
         ways.append(("pulse_train", "Q-switched train", text, _repeated(regular, shortest, rate)))
     scenarios = []
     for key, title, text, emission in ways:
@@ -202,7 +205,7 @@ def _background(request: BoundsRequest, value: dict[str, Any], found: GainBounds
     lines.append((value["wavelength_nm"], float(found.power_w[0]) * share, own))
     whole = pump.power_w if pump.power_w is not None else (pump.energy_j or 0.0) / (pump.pulse_s or 1.0)
     leaving = whole * pump.leak_fraction
-    if value["pump_wavelength_nm"] >= 180.0:
+    if not is_discharge(request, value["pump_wavelength_nm"]):
         across = beam["diameter_mm"]
         spread = request.beam.pump_divergence_mrad or _limit_mrad(value["pump_wavelength_nm"], across)
         leak = {"diameter_mm": across, "divergence_mrad": spread}
@@ -258,7 +261,7 @@ def _notices(request: BoundsRequest, value: dict[str, Any], found: GainBounds, l
                 "farther.",
             )
         )
-    if value["pump_wavelength_nm"] < 180.0:
+    if is_discharge(request, value["pump_wavelength_nm"]):
         notices.append(
             Notice(
                 code="pump-is-no-light",

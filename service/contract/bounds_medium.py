@@ -8,7 +8,7 @@ from service.contract.problem import FieldError, InvalidRequest
 from service.files import DATA
 from service.rules.gain_media import QUANTITIES, GainMedium, gain_media
 
-__all__ = ["media_documents", "medium_of"]
+__all__ = ["is_discharge", "media_documents", "medium_of", "refuse"]
 
 WORDS = {
     "levels": "number of levels",
@@ -42,6 +42,13 @@ def media_documents() -> list[GainMediumDocument]:
         )
         for m in gain_media(DATA).media.values()
     ]
+
+
+def is_discharge(request: BoundsRequest, pump_wavelength_nm: float) -> bool:
+    """Whether the pump is no beam: shorter than any beam judged here, or that of a gas in the table."""
+    medium = gain_media(DATA).media.get(request.medium or "")
+    of_table = request.pump_wavelength_nm is None and medium is not None and medium.host == "gas"
+    return of_table or pump_wavelength_nm < 180.0
 
 
 def _from_table(medium: GainMedium, quantity: str) -> MediumFigure:

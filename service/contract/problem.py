@@ -155,7 +155,8 @@ def _properties(model: type[BaseModel]) -> dict[str, dict[str, Any]]:
 def _numbers(schema: dict[str, Any]) -> str:
     low = schema.get("minimum", schema.get("exclusiveMinimum"))
     more = "above " if "exclusiveMinimum" in schema else ""
-    return f"{more}{low:g} to {schema['maximum']:g}"
+    high = schema["maximum"] if "maximum" in schema else f"below {schema['exclusiveMaximum']:g}"
+    return f"{more}{low:g} to {high if isinstance(high, str) else f'{high:g}'}"
 
 
 def _allowed(path: list[str], model: type[BaseModel]) -> str:

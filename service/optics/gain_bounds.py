@@ -64,7 +64,7 @@ class GainBounds:
     """Upper bounds (lower ones for durations); all arrays (n,).
 
     `power_w`: laser light while the pump is on. `stored_j`: energy in the upper level. `pulse_j`: one
-    Q-switched (or first) pulse; `regular_pulse_j`: one of a regular train. `shortest_s`: shortest full
+    Q-switched (or first) pulse; `regular_pulse_j`: mean of a train. `shortest_s`: shortest full
     width at half maximum of a Q-switched pulse; `round_trip_s`: shortest way to empty the resonator at
     once. `peak_w`: highest peak power outside. `inside_w`, `inside_peak_w`: one-way power inside,
     continuous and at the peak. `rear_share`: most of the power that can leave through the rear mirror.

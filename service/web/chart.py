@@ -9,7 +9,7 @@ from dataclasses import dataclass
 __all__ = ["Axis", "Bar", "Chart", "Series", "bars", "chart", "ticks"]
 
 WIDTH, HEIGHT = 640.0, 260.0
-LEFT, RIGHT, TOP, BOTTOM = 64.0, 12.0, 12.0, 40.0
+LEFT, RIGHT, TOP, BOTTOM = 78.0, 12.0, 12.0, 40.0
 PREFIXES = {-15: "f", -12: "p", -9: "n", -6: "µ", -3: "m", 0: "", 3: "k", 6: "M", 9: "G", 12: "T"}
 
 
@@ -81,7 +81,7 @@ def _axis(name: str, unit: str, low: float, high: float, start: float, end: floa
     factor, shown = _prefix(max(abs(low), abs(high)), unit)
     low, high = low * factor, high * factor
     scale = (end - start) / (high - low) if high > low else 0.0
-    marks = [(round(start + (v - low) * scale, 2), f"{v:.6g}") for v in ticks(low, high)]
+    marks = [(round(start + (v - low) * scale, 2), f"{v:.6g}".replace("e+", "e")) for v in ticks(low, high)]
     return Axis(f"{name} [{shown}]" if shown else name, marks), factor
 
 
