@@ -13,6 +13,8 @@ from service.contract.bounds import BoundsRequest
 from service.contract.bounds_answer import bounds
 from service.contract.bounds_medium import media_documents
 from service.contract.bounds_result import BoundsResult, GainMediumDocument
+from service.contract.tolerance import ToleranceRequest, ToleranceResult
+from service.contract.tolerance_answer import tolerance
 from service.web.body import read_model
 
 __all__ = ["BODIES", "router"]
@@ -22,6 +24,7 @@ router = APIRouter(prefix="/api/v1", tags=["bounds and measurements"])
 #: Request of every call with a body.
 BODIES: dict[str, type[BaseModel]] = {
     "/api/v1/bounds": BoundsRequest,
+    "/api/v1/tolerance": ToleranceRequest,
 }
 
 
@@ -31,6 +34,10 @@ def _json(model: Any) -> Response:
 
 async def _bounds_body(request: Request) -> BoundsRequest:
     return await read_model(request, BoundsRequest)
+
+
+async def _tolerance_body(request: Request) -> ToleranceRequest:
+    return await read_model(request, ToleranceRequest)
 
 
 @router.get("/gain-media", summary="Gain media")
@@ -43,3 +50,9 @@ async def get_gain_media() -> list[GainMediumDocument]:
 def post_bounds(body: Annotated[BoundsRequest, Depends(_bounds_body)]) -> Response:
     """Upper bounds from pump, medium and resonator, and evaluations of them."""
     return _json(bounds(body))
+
+
+@router.post("/tolerance", response_model=ToleranceResult, summary="An evaluation with tolerances")
+def post_tolerance(body: Annotated[ToleranceRequest, Depends(_tolerance_body)]) -> Response:
+    """Nominal, worst case and distribution of an evaluation whose figures carry tolerances."""
+    return _json(tolerance(body))

@@ -1,0 +1,223 @@
+"""Which figures of an evaluation may carry a tolerance, and the box they span."""
+
+from __future__ import annotations
+
+import copy
+from dataclasses import dataclass
+from typing import Any
+
+from pydantic import ValidationError
+
+from service.assess.spread import Knob, Nominal
+from service.contract.bounds_medium import refuse
+from service.contract.problem import InvalidRequest, invalid_request
+from service.contract.request import LEAST_MM, EvaluationRequest, Train
+from service.contract.tolerance import Tolerance, ToleranceRequest
+
+__all__ = ["Spread", "nominal_lines", "set_field", "spreads"]
+
+#: A normal tolerance covers two standard deviations and is judged out to three.
+COVERED, JUDGED = 2.0, 3.0
+EMISSIONS = {"power_w": "emitted", "energy_j": "emitted", "average_power_w": "average_power_w"}
+PLAIN = ("pulse_s", "rate_hz")
+ALLOWED = (
+    "exposure_s, or of a line wavelength_nm, subtense_mrad, emission.power_w, emission.energy_j, "
+    "emission.average_power_w, emission.pulse_s, emission.rate_hz, beam.diameter_mm, beam.divergence_mrad "
+    "(also one axis: beam.diameter_mm.0), beam.waist_m"
+)
+
+
+@dataclass(frozen=True, slots=True)
+class Spread:
+    """One toleranced field: the figures it turns, its value, and the box that is judged.
+
+    `scale` of each figure: a field that stands for both axes turns them in proportion.
+    `deviation` is the standard deviation of a normal meaning, 0 for a uniform one.
+    """
+
+    field: str
+    knobs: tuple[tuple[Knob, float], ...]
+    value: float
+    low: float
+    high: float
+    deviation: float
+    centre: float
+
+
+def _knobs(evaluation: EvaluationRequest, field: str) -> tuple[tuple[tuple[Knob, float], ...], float] | None:
+    """The figures behind a field and its value; None where the field carries no tolerance."""
+    parts = field.split(".")
+    if field == "exposure_s":
+        return None if evaluation.exposure_s is None else (((Knob(-1, field), 1.0),), evaluation.exposure_s)
+    if len(parts) < 3 or parts[0] != "lines" or not parts[1].isdecimal():
+        return None
+    number = int(parts[1][:6])
+    if number >= len(evaluation.lines):
+        return None
+    line, rest = evaluation.lines[number], parts[2:]
+    if rest in (["wavelength_nm"], ["subtense_mrad"]):
+        return ((Knob(number, rest[0]), 1.0),), getattr(line, rest[0])
+    if rest[0] == "emission" and len(rest) == 2 and rest[1] in (*EMISSIONS, *PLAIN):
+        value = getattr(line.emission, rest[1], None)
+        return None if value is None else (((Knob(number, EMISSIONS.get(rest[1], rest[1])), 1.0),), value)
+    if rest == ["beam", "waist_m"]:
+        return ((Knob(number, "waist_m"), 1.0),), line.beam.waist_m
+    if rest[0] != "beam" or len(rest) < 2 or rest[1] not in ("diameter_mm", "divergence_mrad"):
+        return None
+    pair, stem = getattr(line.beam, rest[1]), rest[1].partition("_")[0]
+    if len(rest) == 3 and rest[2] in ("0", "1"):
+        k = int(rest[2])
+        return ((Knob(number, f"{stem}_{'xy'[k]}"), 1.0),), pair[k]
+    if len(rest) != 2:
+        return None
+    ratio = pair[1] / pair[0] if pair[0] else 1.0
+    return ((Knob(number, f"{stem}_x"), 1.0), (Knob(number, f"{stem}_y"), ratio)), pair[0]
+
+
+def _box(tolerance: Tolerance, value: float) -> tuple[float, float, float, float]:
+    """Low and high end judged, standard deviation (0: uniform) and centre."""
+    if tolerance.plus_minus_percent is not None:
+        half = abs(value) * tolerance.plus_minus_percent / 100.0
+        low, high = value - half, value + half
+    elif tolerance.plus_minus is not None:
+        low, high = value - tolerance.plus_minus, value + tolerance.plus_minus
+    else:
+        assert tolerance.low is not None
+        assert tolerance.high is not None
+        low, high = tolerance.low, tolerance.high
+    centre, half = 0.5 * (low + high), 0.5 * (high - low)
+    if tolerance.meaning == "uniform":
+        return low, high, 0.0, centre
+    deviation = half / COVERED
+    return centre - JUDGED * deviation, centre + JUDGED * deviation, deviation, centre
+
+
+def spreads(request: ToleranceRequest) -> list[Spread]:
+    """Every tolerance as a box. Raises InvalidRequest naming the tolerance that cannot be used."""
+    found: list[Spread] = []
+    taken: set[Knob] = set()
+    for k, tolerance in enumerate(request.tolerances):
+        path = f"tolerances.{k}.field"
+        known = _knobs(request.evaluation, tolerance.field)
+        if known is None:
+            raise refuse(
+                path,
+                tolerance.field,
+                ALLOWED,
+                "there is no such figure in this evaluation that can carry a tolerance",
+                "Name a figure that the evaluation gives.",
+            )
+        knobs, value = known
+        if taken & {knob for knob, _ in knobs}:
+            raise refuse(
+                path, tolerance.field, "one tolerance for each figure", "this figure has a tolerance already",
+                "Remove one of the two.",
+            )  # fmt: skip
+        low, high, deviation, centre = _box(tolerance, value)
+        if not low <= value <= high:
+            raise refuse(
+                f"tolerances.{k}.low",
+                tolerance.low,
+                "a range that holds the value",
+                f"the value {value:g} lies outside the range that is judged",
+                "Widen the range, or correct the value.",
+            )
+        if request.evaluation.bench and knobs[0][0].figure not in ("emitted", "average_power_w"):
+            raise refuse(
+                path,
+                tolerance.field,
+                "with elements in the beam: power and energy",
+                "behind elements in the beam only power and energy may carry a tolerance",
+                "Evaluate the laser without the bench, or enter the beam as it leaves the last element.",
+            )
+        taken |= {knob for knob, _ in knobs}
+        found.append(Spread(tolerance.field, knobs, value, low, high, deviation, centre))
+    _check_ends(request, found)
+    return found
+
+
+def set_field(body: dict[str, Any], field: str, value: float) -> None:
+    """Set a figure of an evaluation's body, in place; a pair keeps its proportion."""
+    *way, last = field.split(".")
+    place: Any = body
+    for step in way:
+        inner = place[int(step)] if isinstance(place, list) else place[step]
+        if isinstance(inner, int | float):
+            inner = place[step] = [inner, inner]
+        place = inner
+    if isinstance(place, list):
+        place[int(last)] = value
+    elif isinstance(place.get(last), list | tuple):
+        x, y = place[last]
+        place[last] = [value, value * (y / x if x else 1.0)]
+    else:
+        place[last] = value
+
+
+def _check_ends(request: ToleranceRequest, found: list[Spread]) -> None:
+    """Refuse boxes whose ends an evaluation would refuse."""
+    body = request.evaluation.model_dump(mode="json", exclude_none=True)
+    for k, spread in enumerate(found):
+        for end in (spread.low, spread.high):
+            changed = copy.deepcopy(body)
+            set_field(changed, spread.field, end)
+            try:
+                EvaluationRequest.model_validate(changed)
+            except ValidationError as error:
+                first = invalid_request(error).errors[0]
+                raise refuse(
+                    f"tolerances.{k}.field",
+                    spread.field,
+                    first.allowed,
+                    f"with its tolerance this figure reaches {end:.6g}: {first.message}",
+                    "Give a smaller tolerance, or a range with its ends.",
+                ) from None
+    _check_waists(request, found)
+
+
+def _check_waists(request: ToleranceRequest, found: list[Spread]) -> None:
+    """Refuse combinations in which the beam would be narrower at the exit than it can be."""
+    ends = {knob: (s.low * ratio, s.high * ratio) for s in found for knob, ratio in s.knobs}
+    for number, line in enumerate(request.evaluation.lines):
+        if line.beam.diameter_at != "exit":
+            continue
+        waist = max(map(abs, ends.get(Knob(number, "waist_m"), (line.beam.waist_m,) * 2)))
+        for k, axis in enumerate("xy"):
+            least = ends.get(Knob(number, f"diameter_{axis}"), (line.beam.diameter_mm[k],) * 2)[0]
+            most = ends.get(Knob(number, f"divergence_{axis}"), (line.beam.divergence_mrad[k],) * 2)[1]
+            squared = least**2 - (most * waist) ** 2
+            if squared < LEAST_MM**2:
+                raise _impossible(number)
+
+
+def _impossible(number: int) -> InvalidRequest:
+    return refuse(
+        f"evaluation.lines.{number}.beam",
+        None,
+        "a beam that is possible at every corner",
+        "at a corner of the tolerances the beam is narrower at the exit than divergence and way to the "
+        "waist make it there",
+        "Give the diameter at the waist, or smaller tolerances.",
+    )
+
+
+def nominal_lines(evaluation: EvaluationRequest) -> list[Nominal]:
+    """The lines as given."""
+    lines = []
+    for line in evaluation.lines:
+        emission, average = line.emission, None
+        if isinstance(emission, Train):
+            emitted, average = emission.pulse_energy_j, emission.average_power_w
+        else:
+            emitted = emission.power_w if emission.mode == "cw" else emission.energy_j
+        lines.append(
+            Nominal(
+                emitted,
+                average,
+                line.beam.diameter_mm,
+                line.beam.divergence_mrad,
+                line.beam.waist_m,
+                line.beam.diameter_at == "exit",
+            )
+        )
+    return lines
