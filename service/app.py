@@ -16,7 +16,17 @@ from service.files import DATA
 from service.rules.eyewear import eyewear_tables
 from service.rules.gain_media import gain_media
 from service.settings import Settings
-from service.web import api, bounds_api, bounds_pages, health, pages, rules_pages, static, tolerance_pages
+from service.web import (
+    api,
+    bounds_api,
+    bounds_pages,
+    health,
+    measured_pages,
+    pages,
+    rules_pages,
+    static,
+    tolerance_pages,
+)
 from service.web.headers import Envelope
 from service.web.openapi import describe
 from service.web.problems import PlainProblem, problem_response
@@ -38,7 +48,17 @@ def create_app(settings: Settings | None = None) -> FastAPI:
         redoc_url=None,
     )
     app.state.settings = settings or Settings()
-    for module in (api, bounds_api, bounds_pages, health, pages, rules_pages, static, tolerance_pages):
+    for module in (
+        api,
+        bounds_api,
+        bounds_pages,
+        health,
+        measured_pages,
+        pages,
+        rules_pages,
+        static,
+        tolerance_pages,
+    ):
         app.include_router(module.router)
     describe(app)
 

@@ -13,6 +13,8 @@ from service.contract.bounds import BoundsRequest
 from service.contract.bounds_answer import bounds
 from service.contract.bounds_medium import media_documents
 from service.contract.bounds_result import BoundsResult, GainMediumDocument
+from service.contract.measured import MeasuredRequest, MeasuredResult
+from service.contract.measured_answer import measured
 from service.contract.tolerance import ToleranceRequest, ToleranceResult
 from service.contract.tolerance_answer import tolerance
 from service.web.body import read_model
@@ -25,6 +27,7 @@ router = APIRouter(prefix="/api/v1", tags=["bounds and measurements"])
 BODIES: dict[str, type[BaseModel]] = {
     "/api/v1/bounds": BoundsRequest,
     "/api/v1/tolerance": ToleranceRequest,
+    "/api/v1/measured": MeasuredRequest,
 }
 
 
@@ -38,6 +41,10 @@ async def _bounds_body(request: Request) -> BoundsRequest:
 
 async def _tolerance_body(request: Request) -> ToleranceRequest:
     return await read_model(request, ToleranceRequest)
+
+
+async def _measured_body(request: Request) -> MeasuredRequest:
+    return await read_model(request, MeasuredRequest)
 
 
 @router.get("/gain-media", summary="Gain media")
@@ -56,3 +63,9 @@ def post_bounds(body: Annotated[BoundsRequest, Depends(_bounds_body)]) -> Respon
 def post_tolerance(body: Annotated[ToleranceRequest, Depends(_tolerance_body)]) -> Response:
     """Nominal, worst case and distribution of an evaluation whose figures carry tolerances."""
     return _json(tolerance(body))
+
+
+@router.post("/measured", response_model=MeasuredResult, summary="Measured values as an evaluation")
+def post_measured(body: Annotated[MeasuredRequest, Depends(_measured_body)]) -> Response:
+    """Fit the beam, reckon the whole from a reading behind an aperture, and evaluate both."""
+    return _json(measured(body))

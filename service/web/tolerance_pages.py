@@ -5,6 +5,7 @@ from __future__ import annotations
 import re
 from functools import cache
 from typing import Any
+from urllib.parse import quote, urlencode
 
 from fastapi import APIRouter
 from starlette.requests import Request
@@ -21,11 +22,11 @@ from service.web.chart import Chart, bars
 from service.web.entries import Entry, Group, Sheet, read_items
 from service.web.fields import LABELS
 from service.web.form import Form
-from service.web.links import evaluation_address
+from service.web.links import evaluation_address, form_of
 from service.web.numbers import NotANumber, parse_number, plain
 from service.web.templates import page
 
-__all__ = ["router"]
+__all__ = ["router", "tolerance_address"]
 
 router = APIRouter(include_in_schema=False)
 
@@ -213,3 +214,13 @@ def tolerance_page(request: Request) -> Response:
         worst_address=evaluation_address(result.worst_case.evaluation) if result else "",
         cautions=cautions(),
     )
+
+
+def tolerance_address(request: dict[str, Any]) -> str:
+    """Address of this page for a request (a body as JSON), each tolerance in per cent or an amount."""
+    items = []
+    for t in request["tolerances"]:
+        share, amount = t.get("plus_minus_percent"), t.get("plus_minus")
+        items.append((AMOUNT + t["field"], f"{plain(amount)}" if share is None else f"{plain(share)} %"))
+        items.append((MEANING + t["field"], t["meaning"]))
+    return f"/tolerance?{form_of(request['evaluation']).query()}&{urlencode(items, quote_via=quote)}"
