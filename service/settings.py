@@ -17,12 +17,14 @@ class SettingsError(ValueError):
 class Settings:
     """What an operator may set.
 
-    `host`, `port`: where `blinkline serve` listens. `body_limit`: largest request body read [bytes].
+    `host`, `port`: where `blinkline serve` listens. `body_limit`: largest request body read [bytes],
+    `image_limit`: the same for calls and forms that carry an image.
     """
 
     host: str = "127.0.0.1"
     port: int = 8321
     body_limit: int = 1_000_000
+    image_limit: int = 32_000_000
 
     @classmethod
     def from_environment(cls, environment: Mapping[str, str] = os.environ) -> Settings:

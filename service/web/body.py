@@ -77,12 +77,11 @@ def _check(data: Any) -> None:
                 raise MalformedBody("the body holds half of a character (a lone surrogate)") from None
 
 
-async def _read_body(request: Request) -> bytes:
-    """The body. Raises BodyTooLarge beyond the service's limit, UnsupportedMedia for other types."""
+async def _read_body(request: Request, limit: int) -> bytes:
+    """The body. Raises BodyTooLarge beyond the limit [bytes], UnsupportedMedia for other types."""
     media = request.headers.get("content-type", "").partition(";")[0].strip().lower()
     if media != "application/json" and not media.endswith("+json"):
         raise UnsupportedMedia(f"content-type is {media[:100]!r}; send application/json")
-    limit = request.app.state.settings.body_limit
     parts, size = [], 0
     async for chunk in request.stream():
         size += len(chunk)
@@ -97,9 +96,10 @@ async def read_request(request: Request) -> EvaluationRequest:
     return await read_model(request, EvaluationRequest)
 
 
-async def read_model(request: Request, model: type[M]) -> M:
-    """The body as a request of this model. Raises a Problem that names what is wrong."""
-    body = await _read_body(request)
+async def read_model(request: Request, model: type[M], image: bool = False) -> M:
+    """The body as a request of this model, which may carry an image. Raises a Problem."""
+    settings = request.app.state.settings
+    body = await _read_body(request, settings.image_limit if image else settings.body_limit)
     try:
         data = json.loads(body.decode(), object_pairs_hook=_object, parse_int=_integer)
         _check(data)

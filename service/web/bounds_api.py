@@ -15,6 +15,8 @@ from service.contract.bounds_medium import media_documents
 from service.contract.bounds_result import BoundsResult, GainMediumDocument
 from service.contract.measured import MeasuredRequest, MeasuredResult
 from service.contract.measured_answer import measured
+from service.contract.profile import ProfileRequest, ProfileResult
+from service.contract.profile_answer import profile
 from service.contract.tolerance import ToleranceRequest, ToleranceResult
 from service.contract.tolerance_answer import tolerance
 from service.web.body import read_model
@@ -28,6 +30,7 @@ BODIES: dict[str, type[BaseModel]] = {
     "/api/v1/bounds": BoundsRequest,
     "/api/v1/tolerance": ToleranceRequest,
     "/api/v1/measured": MeasuredRequest,
+    "/api/v1/profile": ProfileRequest,
 }
 
 
@@ -45,6 +48,10 @@ async def _tolerance_body(request: Request) -> ToleranceRequest:
 
 async def _measured_body(request: Request) -> MeasuredRequest:
     return await read_model(request, MeasuredRequest)
+
+
+async def _profile_body(request: Request) -> ProfileRequest:
+    return await read_model(request, ProfileRequest, image=True)
 
 
 @router.get("/gain-media", summary="Gain media")
@@ -69,3 +76,9 @@ def post_tolerance(body: Annotated[ToleranceRequest, Depends(_tolerance_body)]) 
 def post_measured(body: Annotated[MeasuredRequest, Depends(_measured_body)]) -> Response:
     """Fit the beam, reckon the whole from a reading behind an aperture, and evaluate both."""
     return _json(measured(body))
+
+
+@router.post("/profile", response_model=ProfileResult, summary="A camera image of the beam")
+def post_profile(body: Annotated[ProfileRequest, Depends(_profile_body)]) -> Response:
+    """Second moments, the worst share in each aperture, and the exposure in the plane of the image."""
+    return _json(profile(body))
