@@ -15,6 +15,8 @@ from service.contract.bounds_medium import media_documents
 from service.contract.bounds_result import BoundsResult, GainMediumDocument
 from service.contract.measured import MeasuredRequest, MeasuredResult
 from service.contract.measured_answer import measured
+from service.contract.partial_source import PartialSourceRequest, PartialSourceResult
+from service.contract.partial_source_answer import partial_source
 from service.contract.profile import ProfileRequest, ProfileResult
 from service.contract.profile_answer import profile
 from service.contract.tolerance import ToleranceRequest, ToleranceResult
@@ -31,6 +33,7 @@ BODIES: dict[str, type[BaseModel]] = {
     "/api/v1/tolerance": ToleranceRequest,
     "/api/v1/measured": MeasuredRequest,
     "/api/v1/profile": ProfileRequest,
+    "/api/v1/partial-source": PartialSourceRequest,
 }
 
 
@@ -52,6 +55,10 @@ async def _measured_body(request: Request) -> MeasuredRequest:
 
 async def _profile_body(request: Request) -> ProfileRequest:
     return await read_model(request, ProfileRequest, image=True)
+
+
+async def _source_body(request: Request) -> PartialSourceRequest:
+    return await read_model(request, PartialSourceRequest, image=True)
 
 
 @router.get("/gain-media", summary="Gain media")
@@ -82,3 +89,11 @@ def post_measured(body: Annotated[MeasuredRequest, Depends(_measured_body)]) -> 
 def post_profile(body: Annotated[ProfileRequest, Depends(_profile_body)]) -> Response:
     """Second moments, the worst share in each aperture, and the exposure in the plane of the image."""
     return _json(profile(body))
+
+
+@router.post(
+    "/partial-source", response_model=PartialSourceResult, summary="The worst part of a structured source"
+)
+def post_partial_source(body: Annotated[PartialSourceRequest, Depends(_source_body)]) -> Response:
+    """The most restrictive part of an array of emitters or of an image of a source."""
+    return _json(partial_source(body))

@@ -58,6 +58,9 @@ async def form_parts(request: Request) -> tuple[dict[str, str], str, bytes]:
     except (MultiPartException, HTTPException) as error:
         detail = getattr(error, "message", None) or getattr(error, "detail", "")
         raise MalformedBody(f"the form cannot be read: {detail}") from None
+    if not texts.get("image", "-"):
+        # A form without a chosen file sends a blank field in its place.
+        del texts["image"]
     return texts, name, content
 
 
