@@ -81,8 +81,9 @@ def corner_values(
     nominal: Sequence[Nominal],
     printed: Mapping[str, Floats],
     seed: int,
-) -> tuple[dict[Knob, Floats], bool]:
-    """Values of every figure at the corners to judge, and whether all of them are there.
+    most: int = CORNERS,
+) -> dict[Knob, Floats]:
+    """Values of every figure at the corners to judge.
 
     Parameters
     ----------
@@ -90,6 +91,7 @@ def corner_values(
     nominal : the lines as given
     printed : boundaries by variable, see `breaks`
     seed : for the random choice among too many corners
+    most : most corners; where there are more, the ends of every figure come first
     """
     choices = []
     for knob, (low, middle, high) in boxes.items():
@@ -98,10 +100,12 @@ def corner_values(
             choices.append(np.array([high if way > 0 else low]))
         else:
             choices.append(_candidates(knob, low, high, middle, printed))
-    total = int(np.prod([len(c) for c in choices], dtype=float))
-    if total <= CORNERS:
+    total = float(np.prod([len(c) for c in choices], dtype=float))
+    if total <= most:
         grid = np.array(list(product(*choices)))
     else:
         draw = np.random.default_rng(seed)
-        grid = np.stack([draw.choice(c, CORNERS) for c in choices], axis=1)
-    return {knob: grid[:, k] for k, knob in enumerate(boxes)}, total <= CORNERS
+        grid = np.stack([draw.choice(c, most) for c in choices], axis=1)
+        ends = np.stack([draw.choice([c[0], c[-1]], most // 2) for c in choices], axis=1)
+        grid[: len(ends)] = ends
+    return {knob: grid[:, k] for k, knob in enumerate(boxes)}

@@ -85,7 +85,13 @@ class ToleranceRequest(Strict):
     tolerances: list[Tolerance] = Field(
         min_length=1, max_length=MAX_TOLERANCES, description="One for each figure that is not exact."
     )
-    draws: int = Field(100_000, ge=100, le=MAX_DRAWS, description="Number of draws.")
+    draws: int | None = Field(
+        None,
+        ge=100,
+        le=MAX_DRAWS,
+        description="Number of draws; left out: 100,000, fewer where each takes long (elliptical beams, "
+        "several waists).",
+    )
     seed: int = Field(1, ge=0, le=2**53, description="Start of the random numbers: same seed, same answer.")
 
 

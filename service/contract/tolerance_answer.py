@@ -9,7 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from service import __version__
-from service.assess.corners import breaks, corner_values, direction
+from service.assess.corners import CORNERS, breaks, corner_values, direction
 from service.assess.lines import Lines
 from service.assess.spread import Knob, Nominal, Outcomes, outcomes
 from service.contract.answer import cautions, rule_set
@@ -26,7 +26,14 @@ from service.contract.tolerance import (
     ToleranceResult,
     WorstCase,
 )
-from service.contract.tolerance_fields import Spread, nominal_lines, set_field, spreads
+from service.contract.tolerance_fields import (
+    Spread,
+    corners_at_most,
+    draws_of,
+    nominal_lines,
+    set_field,
+    spreads,
+)
 from service.rules.compiled import CompiledRules
 
 __all__ = ["draw_values", "tolerance"]
@@ -105,7 +112,8 @@ def tolerance(request: ToleranceRequest) -> ToleranceResult:
     judge = _Judge(request)
     found = spreads(request)
     nominal = judge(_turn(found, {s.field: np.array([s.value]) for s in found}))
-    values = draw_values(found, request.draws, request.seed)
+    request = request.model_copy(update={"draws": draws_of(request)})
+    values = draw_values(found, draws_of(request), request.seed)
     drawn = judge(_turn(found, values))
     ranked_by = "eye_hazard_distance_m" if np.ptp(_ordered(drawn.eye_distance_m)) else "eye_hazard_ratio"
     return ToleranceResult(
@@ -139,7 +147,8 @@ def _corners(
     boxes = {knob: (s.low * r, s.value * r, s.high * r) for s in found for knob, r in s.knobs[:1]}
     sets = [judge.rules.rules, *(c.scheme for c in judge.schemes.values())]
     printed = {v: breaks(sets, v) for v in ("wavelength_nm", "time_s", "subtense_mrad")}
-    turned, _ = corner_values(boxes, judge.nominal, printed, request.seed)
+    most = corners_at_most(request, CORNERS)
+    turned = corner_values(boxes, judge.nominal, printed, request.seed, most)
     values = {s.field: turned[s.knobs[0][0]] for s in found}
     return values, judge(_turn(found, values))
 

@@ -14,12 +14,17 @@ from service.contract.problem import InvalidRequest, invalid_request
 from service.contract.request import LEAST_MM, EvaluationRequest, Train
 from service.contract.tolerance import Tolerance, ToleranceRequest
 
-__all__ = ["Spread", "nominal_lines", "set_field", "spreads"]
+__all__ = ["Spread", "corners_at_most", "draws_of", "nominal_lines", "set_field", "spreads"]
 
 #: A normal tolerance covers two standard deviations and is judged out to three.
 COVERED, JUDGED = 2.0, 3.0
 EMISSIONS = {"power_w": "emitted", "energy_j": "emitted", "average_power_w": "average_power_w"}
 PLAIN = ("pulse_s", "rate_hz")
+#: Processor time of one line by shape [us], and how much longer several waists take; measured.
+ROUND_US, ELLIPTICAL_US, WAISTS = 5.0, 300.0, 8.0
+#: Time for draws nobody asked for, for those somebody did, and for corners [us].
+USUAL_US, MOST_US, CORNERS_US = 1e7, 6e7, 5e6
+USUAL_DRAWS = 100_000
 ALLOWED = (
     "exposure_s, or of a line wavelength_nm, subtense_mrad, emission.power_w, emission.energy_j, "
     "emission.average_power_w, emission.pulse_s, emission.rate_hz, beam.diameter_mm, beam.divergence_mrad "
@@ -199,6 +204,45 @@ def _impossible(number: int) -> InvalidRequest:
         "waist make it there",
         "Give the diameter at the waist, or smaller tolerances.",
     )
+
+
+def _cost_us(request: ToleranceRequest) -> float:
+    """About how long one laser takes to judge [us]: elliptical beams and several waists take longer."""
+    lines = request.evaluation.lines
+    turned = {t.field for t in request.tolerances}
+    cost = 0.0
+    for k, line in enumerate(lines):
+        beam = line.beam
+        uneven = (
+            beam.diameter_mm[0] != beam.diameter_mm[1] or beam.divergence_mrad[0] != beam.divergence_mrad[1]
+        )
+        own = any(f.startswith(f"lines.{k}.beam.") and f[-2:] in (".0", ".1") for f in turned)
+        cost += ELLIPTICAL_US if uneven or own else ROUND_US
+    waists = {max(0.0, line.beam.waist_m) for line in lines}
+    moving = any(f.endswith(".waist_m") for f in turned)
+    return cost * (WAISTS if len(lines) > 1 and (len(waists) > 1 or moving) else 1.0)
+
+
+def draws_of(request: ToleranceRequest) -> int:
+    """How many draws to take. Raises InvalidRequest where more are asked for than a request may take."""
+    cost = _cost_us(request)
+    if request.draws is None:
+        return int(min(USUAL_DRAWS, USUAL_US / cost))
+    most = int(MOST_US / cost)
+    if request.draws > most:
+        raise refuse(
+            "draws",
+            request.draws,
+            f"100 to {most} for this laser",
+            "so many draws of elliptical beams or several waists take too long for one request",
+            "Ask for fewer draws, or leave the number out.",
+        )
+    return request.draws
+
+
+def corners_at_most(request: ToleranceRequest, most: int) -> int:
+    """How many corners to judge, `most` where they are quick."""
+    return int(min(most, CORNERS_US / _cost_us(request)))
 
 
 def nominal_lines(evaluation: EvaluationRequest) -> list[Nominal]:

@@ -33,8 +33,6 @@ router = APIRouter(include_in_schema=False)
 AMOUNT, MEANING = "t.", "m."
 RANGE = re.compile(r"(?P<low>.+?)\s*(?:to|\.\.|…)\s*(?P<high>.+)")
 MEANINGS = (("uniform", "never outside"), ("normal", "95 % within"))
-#: Draws on the page; the call takes others.
-DRAWS = "100000"
 TITLES = {
     "eye_hazard_distance_m": ("Eye hazard distance", "m"),
     "eye_hazard_ratio": ("Eye: exposure over limit", ""),
@@ -93,7 +91,13 @@ def _groups(evaluation: EvaluationRequest | None) -> tuple[Group, ...]:
             tuple(entries),
             "5 % is five per cent; 0.2 an amount in the unit; 0.9 to 1.2 a range.",
         ),
-        Group("Draws", (Entry("draws", "Number of draws", "#"), Entry("seed", "Seed", "#"))),
+        Group(
+            "Draws",
+            (
+                Entry("draws", "Number of draws", "#", "Blank: 100,000, fewer if slow."),
+                Entry("seed", "Seed", "#", "Same seed, same draws."),
+            ),
+        ),
     )
 
 
@@ -130,8 +134,10 @@ def _request(evaluation: EvaluationRequest, sheet: Sheet, errors: list[FieldErro
                 )
             )
     body: dict[str, Any] = {"tolerances": given}
-    for name, default in (("draws", DRAWS), ("seed", "1")):
-        text = sheet.get(name, default)
+    for name in ("draws", "seed"):
+        text = sheet.get(name)
+        if not text:
+            continue
         body[name] = int(text) if text.isascii() and text.isdecimal() and len(text) < 17 else text
     body["evaluation"] = evaluation.model_dump(mode="json", exclude_unset=True)
     try:

@@ -192,3 +192,16 @@ def test_extended_source_in_the_page(client: Client) -> None:
     form = {**GREEN, "subtense_mrad-1": "4", "t.lines.0.subtense_mrad": "1", "draws": "200"}
     root = page(client, address(form).replace("/evaluate", "/tolerance"))
     assert "Source subtense" in root.one("main").text
+
+
+def test_slow_lasers_take_fewer_draws_and_say_how_many_they_may(client: Client) -> None:
+    """Elliptical lines with several waists: fewer draws by default, and a limit in the refusal."""
+    uneven = {"diameter_mm": [1.0, 2.0], "divergence_mrad": [1.0, 3.0]}
+    lines = [{**LASER, "beam": uneven}, {**LASER, "beam": {**uneven, "waist_m": 0.5}}]
+    body = {"evaluation": {"lines": lines}, "tolerances": [{"field": POWER, "plus_minus_percent": 5}]}
+    problem = assert_problem(client.post(CALL, json={**body, "draws": 100_000}), 422, "draws")
+    assert problem["errors"][0]["allowed"] == "100 to 12500 for this laser"
+    answer = strict_json(client.post(CALL, json={**body, "draws": 100}).text)
+    assert answer["inputs"]["draws"] == 100
+    plain = judged([{"field": POWER, "plus_minus_percent": 5}])
+    assert plain.inputs["draws"] == 100_000
