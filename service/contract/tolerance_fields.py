@@ -23,7 +23,7 @@ PLAIN = ("pulse_s", "rate_hz")
 #: Processor time of one line by shape [us], and how much longer several waists take; measured.
 ROUND_US, ELLIPTICAL_US, WAISTS = 5.0, 300.0, 8.0
 #: Time for draws nobody asked for, for those somebody did, and for corners [us].
-USUAL_US, MOST_US, CORNERS_US = 1e7, 6e7, 5e6
+USUAL_US, MOST_US, CORNERS_US = 1e7, 6e7, 2e6
 USUAL_DRAWS = 100_000
 ALLOWED = (
     "exposure_s, or of a line wavelength_nm, subtense_mrad, emission.power_w, emission.energy_j, "
