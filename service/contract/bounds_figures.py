@@ -54,7 +54,7 @@ def _bounds(
         f"Laser power{during}",
         found.power_w[0],
         "W",
-        "pump photons per second x quantum yield x h c / lambda",
+        "pump photons per second x quantum yield x h c / λ",
         COUNTED,
     )
     yield (
@@ -62,7 +62,7 @@ def _bounds(
         "Energy stored in the upper level",
         found.stored_j[0],
         "J",
-        "R tau h c / lambda, for pulsed pumps all photons of a pulse and what earlier ones left; never more "
+        "R τ h c / λ, for pulsed pumps all photons of a pulse and what earlier ones left; never more "
         "than all ions excited",
         COUNTED,
     )
@@ -92,7 +92,7 @@ def _bounds(
         "Shortest Q-switched pulse (full width at half maximum)",
         found.shortest_s[0],
         "s",
-        "tau_c ln 2: after its peak a pulse falls no faster than an empty resonator",
+        "τ_c ln 2: after its peak a pulse falls no faster than an empty resonator",
         SVELTO,
     )
     yield (
@@ -103,7 +103,7 @@ def _bounds(
         "round trip 2 L / c",
         SIEGMAN,
     )
-    yield "P_peak", "Peak power outside", found.peak_w[0], "W", "Q / tau_c", SVELTO
+    yield "P_peak", "Peak power outside", found.peak_w[0], "W", "Q / τ_c", SVELTO
     yield (
         "P_in",
         f"One-way power inside{during}",
@@ -161,7 +161,7 @@ def _computed(
         "Inversion without light over inversion at threshold",
         above[0],
         "1",
-        "from R tau, the density and the mode",
+        "from R τ, the density and the mode",
         SVELTO,
     )
     yield (
@@ -186,5 +186,5 @@ def _computed(
         yield "P_sim", "Its peak power", pulse["peak_w"], "W", how, SVELTO
         yield "t_sim", "Its full width at half maximum", pulse["width_s"], "s", how, SVELTO
         yield "t_build", "Build-up from one photon to its peak", pulse["build_up_s"], "s", how, SVELTO
-    yield "F_sat", "Saturation fluence", fluence[0], "J/m2", "h c / (lambda sigma (1 + kappa))", SIEGMAN
-    yield "I_sat", "Saturation intensity", intensity[0], "W/m2", "F_sat / tau", SIEGMAN
+    yield "F_sat", "Saturation fluence", fluence[0], "J/m2", "h c / (λ σ (1 + κ))", SIEGMAN
+    yield "I_sat", "Saturation intensity", intensity[0], "W/m2", "F_sat / τ", SIEGMAN

@@ -82,10 +82,13 @@ def fit_beam(
     weight = 1.0 / (2.0 * diameter_m * own / size**2)
     design = np.stack([np.ones_like(z), z, z * z], axis=1) * weight[:, None]
     solved, _, rank, _ = np.linalg.lstsq(design, squared * weight, rcond=None)
+    try:
+        covariance = np.linalg.inv(design.T @ design)
+    except np.linalg.LinAlgError:
+        rank = 0
     if rank < 3:
-        raise NoBeam("the distances lie too close together")
+        raise NoBeam("the distances, or the diameters, lie too unevenly to tell three figures from them")
     spare = squared * weight - design @ solved
-    covariance = np.linalg.inv(design.T @ design)
     scatter = float(spare @ spare) / freedom if freedom else 1.0
     covariance *= scatter if uncertainty_m is None else max(1.0, scatter)
     figures = _figures(solved, middle, span, size, wavelength_m)

@@ -149,6 +149,10 @@ def worst_fraction(
     -------
     fraction in 0 to 1, x and y of the centre [m] from the middle of the first pixel
     """
+    size_x, size_y = image.shape[1] * pixel_x_m, image.shape[0] * pixel_y_m
+    if aperture_m >= 2.0 * np.hypot(size_x, size_y):
+        whole = min(1.0, max(0.0, float(image.sum()) / total))
+        return whole, 0.5 * (size_x - pixel_x_m), 0.5 * (size_y - pixel_y_m)
     join_x = max(1, int(aperture_m / pixel_x_m / FINE))
     join_y = max(1, int(aperture_m / pixel_y_m / FINE))
     coarse = _joined(image, join_y, join_x)

@@ -75,6 +75,7 @@ def test_shared_scale_of_the_instrument_enters_in_full() -> None:
         ([0.0, 1.0, 1.0], [1e-3, 2e-3, 2e-3], None, "three distances"),
         ([0.0, 1.0, 2.0], [1e-3, 2e-3, 3.2e-3], None, "scatter open"),
         ([0.0, 1.0, 2.0, 3.0], [1e-3, 2e-3, 2.5e-3, 2.6e-3], None, "no divergence"),
+        ([0.0, 0.1, 0.2, 0.3, 1e6], [1e-3, 1.1e-3, 1.3e-3, 1.5e-3, 3e-5], None, "unevenly|no divergence"),
         ([2.0, 3.0, 4.0, 5.0], [0.3873e-3, 1.4663e-3, 2.4799e-3, 3.4857e-3], None, "no waist"),
     ],
 )

@@ -83,6 +83,11 @@ def test_wide_apertures_on_fine_pixels_join_them_without_harm(scale: int) -> Non
     assert fraction == pytest.approx(1.0 - np.exp(-2.0), rel=5e-4)
 
 
+def test_an_aperture_far_wider_than_the_image_holds_all() -> None:
+    image = spots([(1.5, 1.4)], 1.0)
+    assert worst_fraction(image, 1e-11, 1e-11, 1e-3, float(image.sum()))[0] == 1.0
+
+
 def test_fraction_grows_with_the_aperture() -> None:
     image = spots([(0.7, 0.5), (2.0, 1.5)], 0.4)
     total = moments(image, PIXEL, PIXEL).total
