@@ -15,10 +15,29 @@ from service.contract.problem import NotFound, Problem
 from service.files import DATA
 from service.rules.airspace import airspace_tables
 from service.rules.eyewear import eyewear_tables
+from service.rules.gain_media import gain_media
 from service.rules.materials import materials
 from service.settings import Settings
 from service.sign.tables import sign_tables
-from service.web import api, bulk, exports, health, metrics, pages, report, rules_pages, sign, static, sweep
+from service.web import (
+    api,
+    bounds_api,
+    bounds_pages,
+    bulk,
+    exports,
+    health,
+    measured_pages,
+    metrics,
+    pages,
+    partial_source_pages,
+    profile_pages,
+    report,
+    rules_pages,
+    sign,
+    static,
+    sweep,
+    tolerance_pages,
+)
 from service.web.headers import Envelope
 from service.web.openapi import describe
 from service.web.problems import PlainProblem, problem_response
@@ -34,6 +53,7 @@ def create_app(settings: Settings | None = None) -> FastAPI:
     sign_tables()
     airspace_tables(DATA)
     materials(DATA)
+    gain_media(DATA)
     app = FastAPI(
         title="Blinkline",
         version=__version__,
@@ -42,20 +62,26 @@ def create_app(settings: Settings | None = None) -> FastAPI:
         redoc_url=None,
     )
     app.state.settings = settings or Settings()
-    for router in (
-        api.router,
-        bulk.router,
-        exports.router,
-        health.router,
-        metrics.router,
-        pages.router,
-        report.router,
-        rules_pages.router,
-        sign.router,
-        static.router,
-        sweep.router,
+    for module in (
+        api,
+        bounds_api,
+        bounds_pages,
+        bulk,
+        exports,
+        health,
+        measured_pages,
+        metrics,
+        pages,
+        partial_source_pages,
+        profile_pages,
+        report,
+        rules_pages,
+        sign,
+        static,
+        sweep,
+        tolerance_pages,
     ):
-        app.include_router(router)
+        app.include_router(module.router)
     describe(app)
 
     async def on_problem(request: Request, error: Exception) -> Response:

@@ -16,12 +16,11 @@ __all__ = ["read_model", "read_request"]
 Read = TypeVar("Read", bound=BaseModel)
 
 
-async def _read_body(request: Request) -> bytes:
-    """The body. Raises BodyTooLarge beyond the service's limit, UnsupportedMedia for other types."""
+async def _read_body(request: Request, limit: int) -> bytes:
+    """The body. Raises BodyTooLarge beyond the limit [bytes], UnsupportedMedia for other types."""
     media = request.headers.get("content-type", "").partition(";")[0].strip().lower()
     if media != "application/json" and not media.endswith("+json"):
         raise UnsupportedMedia(f"content-type is {media[:100]!r}; send application/json")
-    limit = request.app.state.settings.body_limit
     parts, size = [], 0
     async for chunk in request.stream():
         size += len(chunk)
@@ -36,6 +35,8 @@ async def read_request(request: Request) -> EvaluationRequest:
     return await read_model(request, EvaluationRequest)
 
 
-async def read_model(request: Request, model: type[Read]) -> Read:
-    """The request of some kind in the body. Raises a Problem that names what is wrong."""
-    return model_of(model, read_json(await _read_body(request)))
+async def read_model(request: Request, model: type[Read], image: bool = False) -> Read:
+    """The request of some kind in the body; `image` says that it may carry one. Raises a Problem."""
+    settings = request.app.state.settings
+    limit = settings.image_limit if image else settings.body_limit
+    return model_of(model, read_json(await _read_body(request, limit)))
