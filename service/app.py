@@ -16,23 +16,30 @@ from service.files import DATA
 from service.register.database import Database, database_url
 from service.rules.airspace import airspace_tables
 from service.rules.eyewear import eyewear_tables
+from service.rules.gain_media import gain_media
 from service.rules.materials import materials
 from service.settings import Settings
 from service.sign.tables import sign_tables
 from service.web import (
     api,
+    bounds_api,
+    bounds_pages,
     bulk,
     differences_page,
     exports,
     guide,
     health,
+    measured_pages,
     metrics,
     pages,
+    partial_source_pages,
+    profile_pages,
     report,
     rules_pages,
     sign,
     static,
     sweep,
+    tolerance_pages,
     trust_api,
     trust_pages,
 )
@@ -69,6 +76,7 @@ def create_app(settings: Settings | None = None) -> FastAPI:
     sign_tables()
     airspace_tables(DATA)
     materials(DATA)
+    gain_media(DATA)
     app = FastAPI(
         title="Blinkline",
         version=__version__,
@@ -80,18 +88,24 @@ def create_app(settings: Settings | None = None) -> FastAPI:
     app.state.register = Database(database_url(app.state.settings.database, app.state.settings.data_dir))
     for module in (
         api,
+        bounds_api,
+        bounds_pages,
         bulk,
         differences_page,
         exports,
         guide,
         health,
+        measured_pages,
         metrics,
         pages,
+        partial_source_pages,
+        profile_pages,
         report,
         rules_pages,
         sign,
         static,
         sweep,
+        tolerance_pages,
         trust_api,
         trust_pages,
         *REGISTER,

@@ -39,7 +39,8 @@ class Settings:
     """What an operator may set.
 
     `host`, `port`: where `blinkline serve` listens. `body_limit`: largest request body read [bytes],
-    `bulk_body_limit` that of `evaluate/bulk`, unpacked. `log`: text or json.
+    `bulk_body_limit` that of `evaluate/bulk`, unpacked, `image_limit` that of calls and forms that carry an
+    image. `log`: text or json.
     For signs: `public_address`: where people reach this service (blank: as the request says);
     `sign_policy`: signal words by the class (`standard`) or DANGER for every 3B and 4 (`strict`);
     `lso_name`, `lso_phone`: laser safety officer of the site.
@@ -56,6 +57,7 @@ class Settings:
     port: int = 8321
     body_limit: int = 1_000_000
     bulk_body_limit: int = 50_000_000
+    image_limit: int = 32_000_000
     log: str = "text"
     public_address: str = ""
     sign_policy: str = "standard"

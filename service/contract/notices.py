@@ -41,6 +41,15 @@ def notices_of(request: EvaluationRequest, evaluation: Evaluation, laser: int) -
 def input_notices(request: EvaluationRequest, exposure_s: list[float]) -> list[Notice]:
     """The notices that need no result; `exposure_s` of each line of the request [s]."""
     found: list[Notice] = []
+    if request.basis == "bound":
+        found.append(
+            Notice(
+                code="bound-not-measured",
+                field="basis",
+                text="Bound, not measured: the figures entered are upper bounds of what the laser can emit. "
+                "Measure it before anything is relaxed because of them.",
+            )
+        )
     for number, (line, seconds) in enumerate(zip(request.lines, exposure_s, strict=True)):
         found += _line_notices(f"lines.{number}", line, seconds)
     return found

@@ -46,6 +46,9 @@ UNITS = {
     "um": "um",
     "km": "km",
     "deg": "degrees",
+    "cm2": "cm2",
+    "cm3": "per cm3",
+    "percent": "%",
 }
 SHOWN = 120
 #: A document lists at most this many errors; the detail counts them all.
@@ -161,10 +164,16 @@ def _request_schema(model: type[BaseModel]) -> dict[str, Any]:
     return {"$defs": {}, **model.model_json_schema()}
 
 
+def _kinds(node: dict[str, Any]) -> list[dict[str, Any]]:
+    """The members of a union, of unions within it too; a node that is none stands alone."""
+    members = node.get("oneOf") or node.get("anyOf")
+    return [kind for m in members for kind in _kinds(m)] if members else [node]
+
+
 def _step(node: dict[str, Any], part: str, model: type[BaseModel]) -> dict[str, Any] | None:
     """Schema of one part of a path: a field, the kind of a union, or an item of a list."""
     definitions = _request_schema(model)["$defs"]
-    kinds = node.get("oneOf") or node.get("anyOf") or [node]
+    kinds = _kinds(node)
     if part in BEAM_KINDS and any(k.get("$ref", "").endswith(BEAM_KINDS[part]) for k in kinds):
         return dict(definitions[BEAM_KINDS[part]])
     tagged = node.get("discriminator", {}).get("mapping", {}).get(part)
@@ -289,7 +298,7 @@ def invalid_request(error: ValidationError, model: type[BaseModel] = EvaluationR
     for item in error.errors(include_url=False)[: 4 * LISTED]:
         kind, path, loc = item["type"], _path(item["loc"]), [str(p) for p in item["loc"]]
         if kind in ("union_tag_invalid", "union_tag_not_found"):
-            path.append("element" if path[:1] == ["bench"] else "mode")
+            path.append("element" if "bench" in path else "mode")
         if kind == "value_error" and path[-1:] == ["beam"]:
             path.append("diameter_mm")
             loc.append("diameter_mm")

@@ -236,6 +236,11 @@ class EvaluationRequest(Strict):
 
     label: str = Field("", max_length=MAX_LABEL, description="Your name for this laser.")
     rules: str = Field("icnirp-2013", max_length=100, description="Rule set id; see GET /api/v1/rules.")
+    basis: Literal["measured", "data_sheet", "bound"] | None = Field(
+        None,
+        description="Where the figures come from: measured, a data sheet, or bounds of a laser that nobody "
+        "has measured; bounds are told with every answer.",
+    )
     exposure_s: float | None = Field(
         None,
         ge=1e-13,

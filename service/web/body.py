@@ -32,14 +32,15 @@ async def read_request(request: Request) -> EvaluationRequest:
     return await read_model(request, EvaluationRequest)
 
 
-async def read_model(request: Request, model: type[Read]) -> Read:
-    """The request of some kind in the body. Raises a Problem that names what is wrong."""
-    return model_of(model, await read_data(request))
+async def read_model(request: Request, model: type[Read], image: bool = False) -> Read:
+    """The request of some kind in the body; `image` says that it may carry one. Raises a Problem."""
+    return model_of(model, await read_data(request, image=image))
 
 
-async def read_data(request: Request) -> Any:
-    """The JSON value in the body. Raises a Problem that names what is wrong."""
+async def read_data(request: Request, *, image: bool = False) -> Any:
+    """The JSON value in the body; `image` says that it may carry one. Raises a Problem."""
     media = request.headers.get("content-type", "").partition(";")[0].strip().lower()
     if media != "application/json" and not media.endswith("+json"):
         raise UnsupportedMedia(f"content-type is {media[:100]!r}; send application/json")
-    return read_json(await read_limited(request, request.app.state.settings.body_limit))
+    settings = request.app.state.settings
+    return read_json(await read_limited(request, settings.image_limit if image else settings.body_limit))

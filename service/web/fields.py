@@ -57,6 +57,10 @@ FIELDS: dict[str, Field] = {
     "label": Field("Name of this laser", "Your own words, up to 200 characters."),
     "place": Field("Where it stands", "Room and bench."),
     "asked_by": Field("Who asks", "Stands on the printed sheet."),
+    "basis": Field(
+        "Where the figures come from",
+        choices=(("measured", "measured"), ("data_sheet", "data sheet"), ("bound", "bound, not measured")),
+    ),
     "rules": Field("Judged by"),
     "look": Field("How long"),
     "exposure_s": Field("Exposure duration", "One exposure, or all of a day together.", "time"),
@@ -161,7 +165,7 @@ FIELDS: dict[str, Field] = {
 
 AID = ("aid_objective_mm", "aid_magnification", "aid_transmittance")
 #: Fields that the request takes as they stand.
-TEXT = ("label", "rules")
+TEXT = ("label", "rules", "basis")
 LOOK = ("look", "exposure_s", "distance_m", "visibility_km", "outdoors")
 TOP = ("label", "place", "asked_by", *TEXT[1:], *LOOK, *AID)
 #: Fields that belong to a kind of emission, of beam, of element; others of the same sort must be blank.

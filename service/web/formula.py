@@ -10,7 +10,7 @@ from markupsafe import Markup, escape
 __all__ = ["formula", "power_of_ten"]
 
 GREEK = {"lambda": "λ", "alpha": "α", "gamma": "γ", "phi": "φ"}
-INDEX = re.compile(r"\b(AEL|LB|C|E|F|T|t|H|d|γ|α|λ|gamma|alpha|z|n)_([A-Za-z0-9]+)\b")
+INDEX = re.compile(r"\b(AEL|LB|C|E|F|P|Q|T|t|H|d|τ|γ|α|λ|gamma|alpha|z|n)_([A-Za-z0-9]+)\b")
 SQUARE_METRE = re.compile(r"\bm2\b")
 GREEK_WORD = re.compile(r"\b(lambda|alpha|gamma|phi)(?=_|\b)")
 EXPONENT = re.compile(r"\b(\d+(?:\.\d+)?)e([+-]?\d+)\b(?=(\^?))")

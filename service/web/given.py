@@ -26,6 +26,8 @@ def setup_given(form: Form, titles: dict[str, str]) -> list[tuple[str, Rows]]:
     rules = form.get("rules", next(iter(titles)))
     named = [(FIELDS[n].label, form.get(n)) for n in ("place", "asked_by") if form.get(n)]
     laser = [("Name", form.get("label", "not named")), *named, ("Rule set", titles.get(rules, rules))]
+    if form.get("basis"):
+        laser.append((FIELDS["basis"].label, _value(form, "basis")))
     parts: list[tuple[str, Rows]] = [("Laser", laser)]
     for k in range(form.lines):
         name = f"Line {k + 1}" if form.lines > 1 else "Emission and beam"

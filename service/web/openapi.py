@@ -16,6 +16,7 @@ from service.contract.report import ReportRequest
 from service.contract.request import EvaluationRequest
 from service.contract.sweep import SweepRequest
 from service.sign.request import SignRequest
+from service.web.bounds_api import BODIES as BOUNDS
 from service.web.bulk import NDJSON
 from service.web.register.described import BODIES as REGISTER_BODIES
 
@@ -28,6 +29,7 @@ BODIES: dict[str, type[BaseModel]] = {
     "/api/v1/evaluate": EvaluationRequest,
     "/api/v1/compare": EvaluationRequest,
     "/api/v1/sign": SignRequest,
+    **BOUNDS,
 }
 #: Bodies that hold an evaluation request beside fields of their own, each with what those may be.
 ENCLOSING: dict[str, tuple[type[BaseModel], dict[str, Any]]] = {
@@ -99,6 +101,8 @@ SIGN_EXAMPLES: dict[str, dict[str, Any]] = {
     },
 }
 
+EXAMPLES_OF = {EvaluationRequest: EXAMPLES, SignRequest: SIGN_EXAMPLES}
+
 
 def _describe_bulk(operation: dict[str, Any], problem: dict[str, Any]) -> None:
     """Parameter, body and answer of the bulk call."""
@@ -159,12 +163,11 @@ def describe(app: FastAPI) -> None:
                 for status in statuses:
                     operation["responses"][status] = problem
                 if path in BODIES:
-                    schema = {"$ref": TEMPLATE.format(model=BODIES[path].__name__)}
-                    examples = SIGN_EXAMPLES if BODIES[path] is SignRequest else EXAMPLES
-                    operation["requestBody"] = {
-                        "required": True,
-                        "content": {"application/json": {"schema": schema, "examples": examples}},
-                    }
+                    body = BODIES[path]
+                    content: dict[str, Any] = {"schema": {"$ref": TEMPLATE.format(model=body.__name__)}}
+                    if body in EXAMPLES_OF:
+                        content["examples"] = EXAMPLES_OF[body]
+                    operation["requestBody"] = {"required": True, "content": {"application/json": content}}
                 if path in ENCLOSING:
                     model, own = ENCLOSING[path]
                     example = {"evaluation": EXAMPLES["continuous"]["value"], **own}

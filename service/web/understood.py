@@ -5,13 +5,15 @@ from __future__ import annotations
 from typing import Any
 
 from service.contract.problem import UNITS
+from service.web.fields import FIELDS
 from service.web.numbers import typeset
 
-__all__ = ["understood"]
+__all__ = ["SHOWN_UNITS", "understood"]
 
 Rows = list[tuple[str, str]]
 
 NAMES = {
+    "basis": "Where the figures come from",
     "wavelength_nm": "Wavelength",
     "mode": "Emission",
     "power_w": "Power",
@@ -38,6 +40,7 @@ NAMES = {
     "to_nm": "to",
 }
 WORDS = {
+    "basis": dict(FIELDS["basis"].choices),
     "mode": {"cw": "continuous wave", "pulse": "single pulse", "train": "pulse train"},
     "level": {"1/e2": "1/e² of the peak", "1/e": "1/e of the peak"},
     "diameter_at": {"waist": "the waist", "exit": "the exit"},
@@ -70,7 +73,7 @@ def understood(inputs: dict[str, Any], titles: dict[str, str]) -> list[tuple[str
             "conventional, line by line" if exposure is None else _value("exposure_s", exposure),
         ),
     ]
-    parts = [("Laser", general)]
+    parts = [("Laser", [*general, *_rows({"basis": inputs.get("basis")})])]
     for k, line in enumerate(lines):
         parts.append((f"Line {k + 1}" if len(lines) > 1 else "Emission and beam", _rows(line)))
     for k, element in enumerate(inputs.get("bench", [])):

@@ -11,7 +11,7 @@ from pydantic import ValidationError
 
 from service.bulk.summary import Summary, summaries, summary_of
 from service.contract.answer import answer
-from service.contract.request import EvaluationRequest
+from service.contract.request import EvaluationRequest, Line
 from tests.web.client import RULES, laser
 from tests.web.test_random_requests import requests
 
@@ -86,7 +86,7 @@ def changed(base: EvaluationRequest, **more: Any) -> EvaluationRequest:
 
 @pytest.mark.parametrize("power_w", [1e-3, 5.0])
 def test_what_stands_in_the_beam_is_not_left_out(power_w: float) -> None:
-    """Benches, aids, haze, viewing distances, fibre ends and open resonators beside direct beams."""
+    """Benches, aids, haze, distances, fibre ends, open resonators and bounds beside direct beams."""
     direct = plain(1064, power_w)
     fibre = laser(1064, {"mode": "cw", "power_w": power_w})
     fibre["lines"][0]["beam"] = {"profile": "fibre_single_mode", "mode_field_diameter_um": 6.0}
@@ -101,6 +101,8 @@ def test_what_stands_in_the_beam_is_not_left_out(power_w: float) -> None:
         EvaluationRequest.model_validate(resonator),
         changed(direct, viewing={"visibility_km": 1.0}),
         changed(direct, viewing={"distance_m": 2.0}),
+        changed(direct, basis="bound"),
+        changed(direct, windows=[{"name": "Door", "distance_m": 2.0}]),
         direct,
     ]
     together = summaries(made, range(len(made)))
@@ -108,6 +110,16 @@ def test_what_stands_in_the_beam_is_not_left_out(power_w: float) -> None:
         assert found == summary_of(answer(request), request.label, k), request
     assert together[0] == {**together[-1], "index": 0}
     assert together[7]["eye"]["at_distance"]["distance_m"] == 2.0
+    assert "bound-not-measured" in together[8]["notices"]
+
+
+def test_every_field_of_a_request_is_known_to_the_passes() -> None:
+    """A field that is not among these has no way into a pass: `batched` must then answer it alone."""
+    alone = {"bench", "viewing"}
+    same = {"label", "rules", "basis", "exposure_s", "lines", "eyewear", "windows"}
+    assert set(EvaluationRequest.model_fields) == alone | same
+    line = {"wavelength_nm", "emission", "output_mirror_reflectance", "beam", "subtense_mrad"}
+    assert set(Line.model_fields) == line
 
 
 def test_the_example_of_the_contract() -> None:

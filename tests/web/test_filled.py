@@ -25,6 +25,7 @@ REQUESTS: dict[str, dict[str, Any]] = {
     **{name: filled.request() for name, filled in FORMS.items()},
     **{name: as_request(f) for name, f in (("train", TRAIN), ("pulse", PULSE), ("two", TWO))},
     "two axes": {"lines": [LINE]},
+    "bounds": {"basis": "bound", "lines": [LINE]},
     "fibres": {"lines": [{**LINE, "beam": FIBRE}, {**LINE, "beam": SINGLE}]},
     "open resonator": {"lines": [{**LINE, "output_mirror_reflectance": 0.95}]},
     "every element": {

@@ -360,6 +360,16 @@ def test_every_input_is_understood_in_words(client: Client) -> None:
             assert any(shown_value(f) == Decimal(repr(value)) for f in re.findall(NUMBER, shown)), value
 
 
+@pytest.mark.parametrize(
+    ("basis", "words"),
+    [("bound", "bound, not measured"), ("data_sheet", "data sheet"), ("measured", "measured")],
+)
+def test_report_says_where_the_figures_come_from(client: Client, basis: str, words: str) -> None:
+    inputs = client.evaluate({**GOOD, "basis": basis})["inputs"]
+    (_, rows), *_ = understood(inputs, {inputs["rules"]: "the rule set"})
+    assert ("Where the figures come from", words) in rows
+
+
 def test_description_names_the_body(client: Client) -> None:
     document = strict_json(client.get("/api/v1/openapi.json").text)
     body = document["paths"][REPORT]["post"]["requestBody"]["content"]["application/json"]
