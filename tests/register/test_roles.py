@@ -73,6 +73,8 @@ OPEN = {
     ("POST", "/api/v1/report"),
     ("POST", "/api/v1/sign"),
     ("POST", "/api/v1/sweep"),
+    ("POST", "/partial-source"),
+    ("POST", "/profile"),
     ("POST", "/sign-in"),
 }
 #: The least role of every other route.
