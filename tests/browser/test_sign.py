@@ -33,7 +33,7 @@ def preview_loaded(page: Page) -> bool:
 
 def test_from_the_evaluation_to_the_sign(page: Page) -> None:
     page.goto(f"/evaluate?{urlencode({'v': '1', **CW}, quote_via=quote)}")
-    page.get_by_role("link", name="Make a sign").click()
+    page.get_by_role("link", name="sign for the door or label").click()
     expect(page.get_by_role("heading", level=1)).to_have_text("Sign for Bench 4 alignment beam")
     assert preview_loaded(page)
 
