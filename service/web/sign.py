@@ -22,6 +22,7 @@ from service.sign.request import SignOptions, SignRequest
 from service.sign.tables import sign_tables
 from service.web.body import read_model
 from service.web.form import Form, address_items
+from service.web.peers import over_tls
 from service.web.problems import PlainProblem
 from service.web.sign_form import LABELS, SignForm, as_form_errors, choices, split
 from service.web.sign_sheet import SetSign, sign_on_sheet
@@ -147,7 +148,10 @@ def _forms(request: Request) -> tuple[Form, SignForm]:
 
 def base_address(request: Request) -> str:
     """The address of this service as people reach it, without a last slash."""
-    return request.app.state.settings.public_address or str(request.base_url).rstrip("/")
+    settings, seen = request.app.state.settings, request.base_url
+    if over_tls(request, settings):
+        seen = seen.replace(scheme="https")
+    return settings.public_address or str(seen).rstrip("/")
 
 
 def _made(request: Request, form: Form, sign_form: SignForm) -> SetSign:

@@ -85,6 +85,17 @@ def test_how_the_sign_looks_is_asked_for_as_on_its_page(web: Web) -> None:
     assert web.get(f"{LASERS}/1/report?colour=red").status_code in (400, 422)
 
 
+def test_the_address_on_a_sign_is_that_of_its_laser(address: str) -> None:
+    """Behind a named proxy that speaks TLS the address says so; from others the header counts nothing."""
+    for proxies, scheme in (("", "http"), ("127.0.0.1", "https")):
+        web = Web(address, proxies=proxies)
+        if not proxies:
+            web.create(laser())
+        told = web.ok(web.get(f"{LASERS}/1/sign", headers={**JSON, "x-forwarded-proto": "https"}))
+        assert told["content"]["address"] == f"{scheme}://127.0.0.1:8321/lasers/1"
+        web.close()
+
+
 def test_a_sign_shows_no_figure_that_nobody_approved(web: Web, monkeypatch: pytest.MonkeyPatch) -> None:
     """Other tables, as if they gave a distance of 7 m; the approved revision has 99.8 m."""
     approved(web)
