@@ -140,7 +140,8 @@ FIELDS: dict[str, Field] = {
     "bench_transmittance": Field("Transmittance", "Blank: 1, nothing is lost.", "share"),
     "bench_incidence_deg": Field("Angle of incidence", "From the normal; blank: 0.", "turn"),
     "bench_polarisation": Field(
-        "Polarisation", choices=(("unpolarised", "unpolarised or unknown"), ("s", "s"), ("p", "p"))
+        "Polarisation",
+        choices=(("s", "s, or unknown: strictest"), ("unpolarised", "unpolarised"), ("p", "p")),
     ),
     "bench_surfaces": Field("Reflecting surfaces", choices=(("1", "one"), ("2", "both sides of a plate"))),
     "bench_viewing_deg": Field("Angle of view", "From the normal of the surface; blank: 0.", "turn"),
