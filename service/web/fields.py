@@ -141,8 +141,7 @@ FIELDS: dict[str, Field] = {
     "bench_incidence_deg": Field("Angle of incidence", "From the normal; blank: 0.", "turn"),
     "bench_polarisation": Field(
         "Polarisation",
-        "Across the plane of incidence (s) reflects most.",
-        choices=(("s", "s, or unknown"), ("unpolarised", "unpolarised"), ("p", "p")),
+        choices=(("s", "s, or unknown: strictest"), ("unpolarised", "unpolarised"), ("p", "p")),
     ),
     "bench_surfaces": Field("Reflecting surfaces", choices=(("1", "one"), ("2", "both sides of a plate"))),
     "bench_viewing_deg": Field("Angle of view", "From the normal of the surface; blank: 0.", "turn"),
