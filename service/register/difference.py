@@ -13,7 +13,7 @@ __all__ = ["Change", "differences", "figures_changed", "figures_differences"]
 #: Figures whose change an LSO has to see.
 WATCHED = (
     *("hazard_classes", "eye_hazard_distance_m", "skin_hazard_distance_m", "optical_density"),
-    *("aided", "stopped", "stopped_skin_hazard_distance_m"),
+    *("aided", "stopped", "stopped_aided", "stopped_skin_hazard_distance_m"),
 )
 #: Distances and densities that differ by less than this share are the same.
 SLACK = 1e-9

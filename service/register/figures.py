@@ -152,6 +152,8 @@ def _figures_of_answer(request: EvaluationRequest, result: EvaluationResult) -> 
         more["aided"] = _eye(result.eye_aided)
     if result.scan is not None:
         more["stopped"] = _eye(result.scan.failure_eye)
+        if result.scan.failure_eye_aided is not None:
+            more["stopped_aided"] = _eye(result.scan.failure_eye_aided)
         more["stopped_skin_hazard_distance_m"] = result.scan.failure_skin.hazard_distance_m
     return found.model_copy(update=more)
 

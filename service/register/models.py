@@ -146,13 +146,16 @@ class Figures(Model):
     stopped: EyeFigures | None = Field(
         None, description="When the sweeping beam stops, without the aid; null where nothing sweeps."
     )
+    stopped_aided: EyeFigures | None = Field(
+        None, description="When the sweeping beam stops, behind the optical aid; null without one of both."
+    )
     stopped_skin_hazard_distance_m: float | None = Field(
         0.0, description="The skin then; 0 = nothing exceeded or nothing sweeps, null = unbounded."
     )
 
     @property
     def _eyes(self) -> list[EyeFigures]:
-        return [case for case in (self.aided, self.stopped) if case is not None]
+        return [case for case in (self.aided, self.stopped, self.stopped_aided) if case is not None]
 
     @property
     def worst_eye_distance_m(self) -> float | None:

@@ -187,6 +187,16 @@ def test_a_sweep_that_stops_counts(web: Web) -> None:
     assert "When the sweep stops" in web.get("/lasers/1", headers={"accept": "text/html"}).text
 
 
+def test_a_sweep_that_stops_before_binoculars_counts(web: Web) -> None:
+    body = laser("BOTH")
+    body["request"]["bench"] = [{"element": "scanner", "angle_deg": 20, "sweeps_hz": 50}]
+    body["request"]["viewing"] = {"aid": {"objective_mm": 50, "magnification": 7}}
+    found = web.create(body)
+    worst = web.ok(web.get(f"{LASERS}/1/evaluation"))["scan"]["failure_eye_aided"]
+    assert found["eye_hazard_distance_m"] == worst["hazard_distance_m"]
+    assert found["optical_density"] == worst["optical_density"]
+
+
 def test_what_has_no_batch_path_is_answered_singly() -> None:
     body = laser("BENCH")["request"]
     body["bench"] = [{"element": "lens", "focal_mm": 50}, {"element": "window", "transmittance": 0.5}]
