@@ -168,11 +168,4 @@ def _problem(index: int, problem: Problem) -> bytes:
 
 
 def _info(rules_id: str) -> RulesInfo:
-    published = rule_set(rules_id).rules
-    return RulesInfo(
-        id=published.id,
-        title=published.title,
-        standing=published.standing,
-        standing_text=published.standing_text,
-        digest=published.digest,
-    )
+    return RulesInfo.of(rule_set(rules_id).rules)

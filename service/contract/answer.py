@@ -168,13 +168,7 @@ def _result(
     classes = hazard_classes(lines)
     steps = bench_steps(request.bench, lines.beams, lines.wavelength_nm)
     return EvaluationResult(
-        rules=RulesInfo(
-            id=published.id,
-            title=published.title,
-            standing=published.standing,
-            standing_text=published.standing_text,
-            digest=published.digest,
-        ),
+        rules=RulesInfo.of(published),
         eye=_target(request, evaluation, "eye"),
         skin=_target(request, evaluation, "skin"),
         inputs=inputs,

@@ -8,6 +8,7 @@ from typing import Literal
 from pydantic import BaseModel, ConfigDict, Field
 
 from service.assess.steps import Step
+from service.rules.ruleset import RuleSet
 
 __all__ = [
     "AtDistance",
@@ -41,6 +42,11 @@ class RulesInfo(Model):
     standing: str
     standing_text: str = Field(description="How its values are known, in plain words.")
     digest: str
+
+    @classmethod
+    def of(cls, rules: RuleSet) -> RulesInfo:
+        """What an answer tells of its rule set."""
+        return cls(**{name: getattr(rules, name) for name in cls.model_fields})
 
 
 class Criterion(Model):

@@ -164,13 +164,7 @@ def sweep(request: SweepRequest) -> SweepAnswer:
         parts = [_part(requests[k : k + size], rules, asked) for k in range(0, len(requests), size)]
     published = rules.rules
     return SweepAnswer(
-        rules=RulesInfo(
-            id=published.id,
-            title=published.title,
-            standing=published.standing,
-            standing_text=published.standing_text,
-            digest=published.digest,
-        ),
+        rules=RulesInfo.of(published),
         sweep=asked,
         values=values,
         exposure_s=[seconds for part in parts for seconds in part.exposure_s],
