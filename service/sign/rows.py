@@ -10,6 +10,7 @@ from typing import Any
 from pydantic import Field
 
 from service.contract.evaluation import EvaluationResult
+from service.contract.eyewear_asked import density_asked, lines_together, places
 from service.contract.result import Model, TargetAnswer
 from service.sign.figures import density, exact, measure, wavelength
 from service.sign.tables import Phrases
@@ -124,16 +125,17 @@ def eyewear(result: EvaluationResult, speech: Speech, figures: list[Figure]) -> 
     """Optical density and scale numbers that each wavelength needs; None where none is needed.
 
     Where lines add, a line's exposure counts as many times as lines add (log10 n more density), so that
-    behind the filter all of them together stay within the limit. An optical aid that was entered counts.
+    behind the filter all of them together stay within the limit. An optical aid that was entered counts,
+    and a sweep counts as stopped.
     """
     lines = []
     for k, need in enumerate(result.protection.lines):
-        asked = _density(result, k)
+        name, asked = density_asked(result, k)
         if asked == 0.0:
             continue
         marks, beyond = _marks(result, k)
         shown = density(exact(asked), speech.decimal)
-        path = f"protection.lines.{need.line}.worst_place.optical_density"
+        path = f"protection.lines.{need.line}.{name}.optical_density"
         figures.append(Figure(path=path, value=asked, unit="1", shown=shown))
         parts = [f"OD ≥ {shown}"]
         parts += [speech.joined("beyond")] if beyond else [marks] if marks else []
@@ -149,32 +151,14 @@ def _label(result: EvaluationResult, key: str, speech: Speech) -> str:
     return " / ".join(dict.fromkeys(phrases))
 
 
-def _gain(result: EvaluationResult, k: int) -> float:
-    """How many times line k's own exposure counts: lines that add, and the optical aid. 1 where neither."""
-    targets = [result.eye] if result.eye_aided is None else [result.eye, result.eye_aided]
-    sums = [s for t in targets for s in t.sums if k in s.lines and s.hazard_ratio > 1.0]
-    together = max((len(s.lines) for s in sums), default=1)
-    own = result.protection.lines[k].worst_place.hazard_ratio
-    aided = max((c.hazard_ratio for t in targets[1:] for c in t.criteria if c.line == k), default=0.0)
-    return together * max(1.0, aided / own if own > 0.0 else 1.0)
-
-
-def _density(result: EvaluationResult, k: int) -> float:
-    """Optical density of line k, raised where it counts more than once."""
-    place, gain = result.protection.lines[k].worst_place, _gain(result, k)
-    if gain == 1.0 or place.hazard_ratio <= 0.0:
-        return place.optical_density
-    return max(place.optical_density, math.log10(gain * place.hazard_ratio))
-
-
 def _marks(result: EvaluationResult, k: int) -> tuple[str, bool]:
     """Scale numbers of line k by mode as marked, D LB5 + IR LB6, and whether one lies beyond the scale."""
     numbers: dict[str, int] = {}
-    gain = _gain(result, k)
-    for scale in result.protection.lines[k].worst_place.scale_numbers:
+    together = lines_together(result, k)
+    for scale in (s for at in places(result, k).values() for s in at.scale_numbers):
         asked = scale.scale_number_needed
-        if gain > 1.0 and scale.hazard_ratio > 0.0:
-            asked = max(asked, math.ceil(round(math.log10(gain * scale.hazard_ratio), 9)))
+        if together > 1 and scale.hazard_ratio > 0.0:
+            asked = max(asked, math.ceil(round(math.log10(together * scale.hazard_ratio), 9)))
         if asked > 0:
             numbers[scale.mode] = max(numbers.get(scale.mode, 0), asked)
     beyond = any(n > HIGHEST_SCALE for n in numbers.values())
@@ -188,7 +172,7 @@ def beyond_every_filter(result: EvaluationResult) -> bool:
 
 def needs_eyewear(result: EvaluationResult) -> bool:
     """Whether some line asks for an optical density."""
-    return any(_density(result, k) > 0.0 for k in range(len(result.protection.lines)))
+    return any(density_asked(result, k)[1] > 0.0 for k in range(len(result.protection.lines)))
 
 
 def distances(
@@ -204,6 +188,8 @@ def distances(
         targets["skin"]["scan.failure_skin"] = result.scan.failure_skin
     if result.eye_aided is not None:
         targets["aided"] = {"eye_aided": result.eye_aided}
+        if result.scan is not None and result.scan.failure_eye_aided is not None:
+            targets["aided"]["scan.failure_eye_aided"] = result.scan.failure_eye_aided
     parts = []
     for name, found in targets.items():
         ends = {path: t.hazard_distance_m for path, t in found.items()}

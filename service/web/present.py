@@ -7,6 +7,7 @@ from typing import Any
 
 from service.assess.steps import limit_expression
 from service.contract.evaluation import EvaluationResult
+from service.contract.eyewear_asked import density_asked, lines_together
 from service.contract.moving import DiffuseAnswer
 from service.contract.result import Criterion, SumOfLines, TargetAnswer, WorkingStep
 from service.rules.eyewear import ScaleRow
@@ -151,8 +152,21 @@ def all_day(spot: DiffuseAnswer) -> str:
 
 def spoken(result: EvaluationResult, words: str) -> str:
     """The answer in a few words, for a line that is read out while somebody types."""
-    eye, skin = (headline(name, t, result, words) for name, t in (("eye", result.eye), ("skin", result.skin)))
-    return f"{eye} {skin} {class_sentence(result)}"
+    found = [headline(name, target, result, words) for name, target in looks(result)]
+    if result.scan is not None:
+        stopped = [("eye", result.scan.failure_eye), ("aided", result.scan.failure_eye_aided)]
+        found += [
+            f"If it stops: {headline(name, target, result, words, stopped=True)}"
+            for name, target in stopped
+            if target is not None
+        ]
+    return f"{' '.join(found)} {class_sentence(result)}"
+
+
+def looks(result: EvaluationResult) -> list[tuple[str, TargetAnswer]]:
+    """Who is judged: the eye, the eye behind an optical aid where one was entered, the skin."""
+    aided = [] if result.eye_aided is None else [("aided", result.eye_aided)]
+    return [("eye", result.eye), *aided, ("skin", result.skin)]
 
 
 def class_sentence(result: EvaluationResult) -> str:
@@ -162,13 +176,21 @@ def class_sentence(result: EvaluationResult) -> str:
 
 def eyewear_sentence(result: EvaluationResult) -> str:
     """What eyewear needs in one sentence, and whether something at hand will do."""
-    needs = []
-    for line in result.protection.lines:
-        place = line.worst_place
-        if place.optical_density > 0.0:
-            needs.append(f"optical density {shown_up(place.optical_density)} at {line.wavelength_nm:g} nm")
+    needs, aided, added = [], False, False
+    for k, line in enumerate(result.protection.lines):
+        place, density = density_asked(result, k)
+        if density > 0.0:
+            needs.append(f"optical density {shown_up(density)} at {line.wavelength_nm:g} nm")
+            aided, added = aided or place == "behind_aid", added or lines_together(result, k) > 1
+    reasons = [
+        *(["behind the optics entered"] if aided else []),
+        *(["with room for the lines that add"] if added else []),
+    ]
+    why = f", {' and '.join(reasons)}" if reasons else ""
     needed = (
-        f"Where the beam is worst it needs {' and '.join(needs)}." if needs else "No line needs a filter."
+        f"Where the beam is worst it needs {' and '.join(needs)}{why}."
+        if needs
+        else "No line needs a filter."
     )
     pairs = result.protection.eyewear
     if not pairs:

@@ -45,10 +45,29 @@ def verdict_blocks(result: EvaluationResult, chart: Chart) -> list[Block]:
     for (name, target), sentence in zip(named_targets(result), chart.sentences, strict=False):
         state = "unsafe" if target.hazard_zone_m else "within"
         blocks.append(verdict(name, sentence.partition(": ")[2].capitalize(), state))
+    if result.scan is not None:
+        cases = {
+            "If it stops, eye": result.scan.failure_eye,
+            "If it stops, skin": result.scan.failure_skin,
+            "If it stops, eye with optical aid": result.scan.failure_eye_aided,
+        }
+        for name, stopped in cases.items():
+            if stopped is not None:
+                state = "open" if stopped.hazard_zone_m else "within"
+                blocks.append(verdict(name, _stopped(stopped), state))
     for n in result.notices:
         if n.code == "skin-longer-exposure":
             blocks.append(verdict("Skin, longer", n.text, "open"))
     return [*blocks, {"kind": "cautions", "items": [printable(text) for text in result.cautions]}]
+
+
+def _stopped(target: TargetAnswer) -> str:
+    """How far a beam that stands still exceeds a limit."""
+    if target.hazard_distance_m == 0.0:
+        return "Exceeds no limit at any distance."
+    far = target.hazard_distance_m
+    reach = "at every distance" if far is None else f"out to {up(far, 'm')}"
+    return f"Unsafe {reach}, {up(target.hazard_ratio)} times the limit."
 
 
 def answer_blocks(result: EvaluationResult, chart: Chart, svg: str) -> list[Block]:
@@ -143,9 +162,11 @@ def _classes(result: EvaluationResult) -> list[Block]:
 def _protection(result: EvaluationResult) -> list[Block]:
     rows = []
     for line in result.protection.lines:
-        for place in (line.worst_place, line.at_distance):
+        name = f"{line.line + 1}: {plain(line.wavelength_nm)} nm"
+        named = ((name, line.worst_place), (f"{name}, behind the optics", line.behind_aid))
+        for text, place in (*named, (name, line.at_distance)):
             if place is not None:
-                rows.append(_need(f"{line.line + 1}: {plain(line.wavelength_nm)} nm", place))
+                rows.append(_need(text, place))
     head = [
         "Line",
         "At",
@@ -154,7 +175,11 @@ def _protection(result: EvaluationResult) -> list[Block]:
         "EN 207 scale number by mode",
         "EN 208, aligning",
     ]
-    blocks = [heading("Eyewear, windows and screens"), table(head, rows, [1.0, 0.7, 0.7, 1.0, 1.7, 1.2])]
+    blocks = [
+        heading("Eyewear, windows and screens"),
+        paragraph(present.eyewear_sentence(result)),
+        table(head, rows, [1.0, 0.7, 0.7, 1.0, 1.7, 1.2]),
+    ]
     for pair in sorted(result.protection.eyewear, key=lambda p: p.rank):
         blocks += _pair(pair)
     if result.protection.windows:

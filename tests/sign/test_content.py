@@ -293,6 +293,29 @@ def test_an_optical_aid_is_told_and_asks_for_more_density() -> None:
     assert rows(content(bare))["distance"] == ["eye: 99.8 m"]
 
 
+def test_a_sweep_seen_through_an_aid_counts_as_if_it_stopped() -> None:
+    """5 W, 532 nm, 1 mrad: 0.25 s allow 18 t^0.75 / t x the 7 mm pupil = 0.97966 mW behind an aid that
+    gathers 49 mm (7 x 7, below its 50): 1/e2 width 0.049 sqrt(-2 / ln(1 - P/5)) = 4.950 m, 4950.37 m away.
+    """
+    aid = {"objective_mm": 50.0, "magnification": 7.0, "transmittance": 1.0}
+    scanner = {"element": "scanner", "angle_deg": 30.0, "sweeps_hz": 100.0}
+    found = evaluated(line(532, cw(5.0)), bench=[scanner], viewing={"aid": aid})
+    shown = rows(content(found))
+    assert shown["distance"][-1] == "eye with optical aid: 4.96 km"
+    # 5 W through the pupil (7 mm, 1/e2 width 2 mm: all but e^-24.5), 49 times as much for the aided eye.
+    (need,) = found.protection.lines
+    assert need.behind_aid is not None
+    asked = math.log10(5.0 / 0.97965568786e-3)
+    assert need.worst_place.optical_density == pytest.approx(asked, abs=1e-6)
+    density = float(shown["eyewear"][0].partition("≥ ")[2].partition(",")[0])
+    assert need.behind_aid.optical_density <= density < need.behind_aid.optical_density + 0.1
+    assert content(found) != content(evaluated(line(532, cw(5.0)), bench=[scanner]))
+    still = evaluated(line(532, cw(5.0)), viewing={"aid": aid})
+    assert {k: shown[k] for k in ("distance", "eyewear")} == {
+        k: rows(content(still))[k] for k in ("distance", "eyewear")
+    }
+
+
 def test_behind_a_diffuser_figures_hold_for_scattered_light_and_say_so() -> None:
     strong = line(532, cw(20.0))
     found = evaluated(strong, bench=[{"element": "diffuser", "reflectance": 0.9}])
