@@ -25,6 +25,7 @@ from service.bulk.findings import find
 from service.bulk.flat import (
     COLUMNS,
     NUMBERS,
+    WORST,
     absent,
     check_columns,
     class_column,
@@ -78,7 +79,9 @@ def evaluate_columns(columns: Mapping[str, Any], *, notices: bool = False) -> di
     `eye_hazard_from_m` [m] (ends of the hazard zone; 0 where nothing is exceeded, infinite where a beam
     never falls below its limit), `eye_hazard_ratio`, `eye_optical_density`, and the governing criterion in
     `eye_line`, `eye_rule`, `eye_tissue`, `eye_effect`, `eye_row`; where a viewing distance is given
-    `eye_ratio_at_distance` and `eye_density_at_distance`, else NaN. The hazard class by scheme in
+    `eye_ratio_at_distance` and `eye_density_at_distance`, else NaN. `worst_eye_hazard_distance_m`,
+    `worst_skin_hazard_distance_m` and `worst_optical_density` are these here; in files of whole requests they
+    count optical aids and sweeps that stop. The hazard class by scheme in
     `class_iec_60825_1_2014` and `class_us_21cfr1040`; `rules` and `rules_digest` tell which tables made the
     row. A row that cannot be used has its reason in `problem` and NaN in every number.
 
@@ -129,7 +132,7 @@ def _blank(count: int) -> dict[str, Column]:
     found: dict[str, Column] = {}
     for name in result_columns():
         target, _, rest = name.partition("_")
-        if target in TARGETS and rest in FLOATS:
+        if name in WORST or (target in TARGETS and rest in FLOATS):
             found[name] = np.full(count, np.nan)
         elif target in TARGETS and rest == "line":
             found[name] = np.full(count, -1, dtype=np.intp)
@@ -171,6 +174,10 @@ def _evaluate_quick(part: dict[str, Column], view: dict[str, Column]) -> NDArray
             }
             for name, value in values.items():
                 view[f"{target}_{name}"][chosen] = value
+        # Nothing sweeps and nobody looks through optics here.
+        eye, skin = (findings.targets[target] for target in ("eye", "skin"))
+        for name, value in zip(WORST, (eye.far_m, skin.far_m, eye.density), strict=True):
+            view[name][chosen] = value
         for scheme in findings.classes:
             view[class_column(scheme)][chosen] = findings.class_names(scheme)
     return quick

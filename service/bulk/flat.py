@@ -12,6 +12,7 @@ from service.rules.ruleset import TARGETS
 __all__ = [
     "COLUMNS",
     "NUMBERS",
+    "WORST",
     "UnknownColumn",
     "absent",
     "check_columns",
@@ -120,6 +121,10 @@ OF_TARGET = (
 )
 
 
+#: The worst case of a row: with an optical aid where one was entered, and as if a sweep stopped.
+WORST = ("worst_eye_hazard_distance_m", "worst_skin_hazard_distance_m", "worst_optical_density")
+
+
 def result_columns() -> list[str]:
     """Names of the columns of results, in their order."""
     return [
@@ -127,6 +132,7 @@ def result_columns() -> list[str]:
         "rules",
         "rules_digest",
         *(f"{target}_{name}" for target in TARGETS for name in OF_TARGET),
+        *WORST,
         *(class_column(scheme) for scheme in schemes()),
         "notices",
         "problem",
@@ -149,10 +155,28 @@ def flat_record(record: Mapping[str, Any]) -> dict[str, Any]:
         if (there := found["at_distance"]) is not None:
             flat[f"{target}_ratio_at_distance"] = there["hazard_ratio"]
             flat[f"{target}_density_at_distance"] = there["optical_density"]
+    flat |= dict(zip(WORST, _worst(record), strict=True))
     flat |= {class_column(scheme): name for scheme, name in record["classes"].items()}
     flat["notices"] = " ".join(record["notices"])
     flat["problem"] = ""
     return flat
+
+
+def _worst(record: Mapping[str, Any]) -> tuple[float, float, float]:
+    """Longest distances [m] of eye and skin, highest density: of aided eyes and stopped sweeps too."""
+    stopped = record["stopped"] or {}
+    eyes = [record["eye"], record["eye_aided"], stopped.get("eye"), stopped.get("eye_aided")]
+    return (
+        _longest(eyes),
+        _longest([record["skin"], stopped.get("skin")]),
+        max(case["optical_density"] for case in eyes if case is not None),
+    )
+
+
+def _longest(cases: list[Mapping[str, Any] | None]) -> float:
+    """The longest of hazard distances [m]; infinite where one has no end."""
+    ends = [case["hazard_distance_m"] for case in cases if case is not None]
+    return math.inf if None in ends else float(max(ends))
 
 
 def problem_text(document: Mapping[str, Any]) -> str:

@@ -23,6 +23,7 @@ __all__ = [
     "Closing",
     "Governing",
     "ProblemRecord",
+    "Stopped",
     "Summary",
     "TargetSummary",
     "batched",
@@ -67,6 +68,16 @@ class TargetSummary(Model):
     at_distance: DistanceSummary | None = Field(description="null = the request names no viewing distance.")
 
 
+class Stopped(Model):
+    """A sweeping beam when it stops: eye, skin, and the eye behind an optical aid."""
+
+    model_config = ConfigDict(extra="forbid")
+
+    eye: TargetSummary
+    skin: TargetSummary
+    eye_aided: TargetSummary | None = Field(description="null = the request names no optical aid.")
+
+
 class Summary(Model):
     """One laser in short."""
 
@@ -78,6 +89,8 @@ class Summary(Model):
     rules_digest: str
     eye: TargetSummary
     skin: TargetSummary
+    eye_aided: TargetSummary | None = Field(description="null = the request names no optical aid.")
+    stopped: Stopped | None = Field(description="null = nothing sweeps.")
     classes: dict[str, str] = Field(description="Hazard class by scheme, the default first.")
     notices: list[str] = Field(description="Codes of the notices; their text is in the full answer.")
 
@@ -146,6 +159,8 @@ def summaries(requests: Sequence[EvaluationRequest], index: Sequence[int]) -> li
                 "rules_digest": digest,
                 "eye": eye,
                 "skin": skin,
+                "eye_aided": None,
+                "stopped": None,
                 "classes": dict(zip(names, each, strict=True)),
                 "notices": notices,
             }
@@ -200,6 +215,7 @@ def _codes(requests: Sequence[EvaluationRequest], findings: Findings) -> list[li
 
 def summary_of(result: EvaluationResult, label: str, index: int) -> dict[str, Any]:
     """The summary of a whole answer."""
+    scan, aided = result.scan, result.eye_aided
     return {
         "index": index,
         "label": label,
@@ -207,6 +223,14 @@ def summary_of(result: EvaluationResult, label: str, index: int) -> dict[str, An
         "rules_digest": result.rules.digest,
         "eye": _target_of(result.eye),
         "skin": _target_of(result.skin),
+        "eye_aided": None if aided is None else _target_of(aided),
+        "stopped": None
+        if scan is None
+        else {
+            "eye": _target_of(scan.failure_eye),
+            "skin": _target_of(scan.failure_skin),
+            "eye_aided": None if scan.failure_eye_aided is None else _target_of(scan.failure_eye_aided),
+        },
         "classes": {c.scheme: c.hazard_class for c in result.classification},
         "notices": list(dict.fromkeys(n.code for n in result.notices)),
     }

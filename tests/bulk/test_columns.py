@@ -69,10 +69,12 @@ def assert_same(found: dict[str, np.ndarray], k: int, body: dict[str, Any]) -> N
         return
     assert found["problem"][k] == ""
     assert found["rules_digest"][k] == result.rules.digest
+    assert found["worst_optical_density"][k] == result.eye.optical_density
     for target in ("eye", "skin"):
         whole = getattr(result, target)
         far = math.inf if whole.hazard_distance_m is None else whole.hazard_distance_m
         assert found[f"{target}_hazard_distance_m"][k] == far
+        assert found[f"worst_{target}_hazard_distance_m"][k] == far
         near = 0.0 if whole.hazard_zone_m is None else whole.hazard_zone_m[0]
         assert found[f"{target}_hazard_from_m"][k] == near
         for name in FLOATS:

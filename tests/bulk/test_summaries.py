@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 import random
 from collections.abc import Iterator
 from typing import Any
@@ -9,6 +10,7 @@ from typing import Any
 import pytest
 from pydantic import ValidationError
 
+from service.bulk.flat import flat_record, result_columns
 from service.bulk.summary import Summary, summaries, summary_of
 from service.contract.answer import answer
 from service.contract.request import EvaluationRequest, Line
@@ -111,6 +113,35 @@ def test_what_stands_in_the_beam_is_not_left_out(power_w: float) -> None:
     assert together[0] == {**together[-1], "index": 0}
     assert together[7]["eye"]["at_distance"]["distance_m"] == 2.0
     assert "bound-not-measured" in together[8]["notices"]
+
+
+def test_aided_eyes_and_stopped_sweeps_are_told() -> None:
+    """5 W, 532 nm, 1 mrad, 1/e2: 0.25 s allow 0.97966 mW through the aperture (18 t^0.75 J/m2, 7 mm).
+
+    Standing still, through a pupil of 7 mm: width 0.007 sqrt(-2 / ln(1 - 0.97966 mW / 5 W)), 707.2 m away;
+    behind 7 x 50 binoculars 0.049 for 0.007: 4950.4 m.
+    """
+    bench = [{"element": "scanner", "angle_deg": 30.0, "sweeps_hz": 100.0}]
+    aid = {"objective_mm": 50.0, "magnification": 7.0}
+    request = changed(plain(532, 5.0), bench=bench, viewing={"aid": aid})
+    (found,) = summaries([request], [0])
+    allowed = 18.0 * 0.25**-0.25 * math.pi / 4 * 7e-3**2
+    across = 0.007 * math.sqrt(-2.0 / math.log1p(-allowed / 5.0))
+    assert found["stopped"]["eye"]["hazard_distance_m"] == pytest.approx(across / 1e-3, rel=1e-5)
+    assert found["stopped"]["eye_aided"]["hazard_distance_m"] == pytest.approx(7 * across / 1e-3, rel=1e-5)
+    assert found["eye"]["hazard_distance_m"] < found["stopped"]["eye"]["hazard_distance_m"]
+    assert found["eye_aided"]["hazard_distance_m"] < found["stopped"]["eye_aided"]["hazard_distance_m"]
+    Summary.model_validate(found)
+    flat = flat_record(found)
+    assert set(flat) <= set(result_columns())
+    assert flat["worst_eye_hazard_distance_m"] == found["stopped"]["eye_aided"]["hazard_distance_m"]
+    assert flat["worst_skin_hazard_distance_m"] == found["stopped"]["skin"]["hazard_distance_m"]
+    assert flat["worst_optical_density"] == pytest.approx(math.log10(5.0 / allowed), abs=1e-6)
+    (bare,) = summaries([plain(532, 5.0)], [0])
+    assert (bare["eye_aided"], bare["stopped"]) == (None, None)
+    assert flat_record(bare)["worst_eye_hazard_distance_m"] == bare["eye"]["hazard_distance_m"]
+    unbounded = {**bare, "eye_aided": {**bare["eye"], "hazard_distance_m": None}}
+    assert flat_record(unbounded)["worst_eye_hazard_distance_m"] == math.inf
 
 
 def test_every_field_of_a_request_is_known_to_the_passes() -> None:

@@ -253,3 +253,15 @@ def test_users_and_tokens_on_the_page(tmp_path: Path) -> None:
     assert web.form("/account", {"step": "revoke-1"}).status_code == 200
     assert web.request("GET", LASERS, by=visitor, headers=bearer).status_code == 401
     web.close()
+
+
+def test_pages_with_figures_carry_the_cautions(filled: Web) -> None:
+    (found,) = filled.ok(filled.get(f"{LASERS}?asset_tag=FULL"))["items"]
+    number = found["id"]
+    for url in (
+        *("/lasers", "/overview", f"/lasers/{number}", f"/lasers/{number}/revisions/1"),
+        f"/lasers/new?{QUERY}",
+    ):
+        text = shown(filled, url).text
+        assert "Never look into a beam" in text, url
+        assert "prevail over anything shown here" in text, url

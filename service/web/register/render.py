@@ -8,6 +8,7 @@ from urllib.parse import quote, urlencode
 from starlette.requests import Request
 from starlette.responses import RedirectResponse, Response
 
+from service.contract.answer import cautions
 from service.contract.problem import Problem
 from service.register.actor import Actor
 from service.register.difference import Change
@@ -49,7 +50,7 @@ def register_page(
         menu=[(a, n) for a, n, p in MENU if actor and actor.may(p)],  # type: ignore[arg-type]
         sign_in=mode,
         problem=problem,
-        **values,
+        **{"cautions": cautions(), "result": None, **values},
     )
     if fresh:
         set_cookie(request, response, FORM_COOKIE, fresh, None)
