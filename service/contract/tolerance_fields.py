@@ -35,7 +35,7 @@ FIBRE = {
 ROUND_US, ELLIPTICAL_US, WAISTS, ASTIGMATIC = 5.0, 300.0, 16.0, 70.0
 #: Time for draws nobody asked for, for those somebody did, and for corners [us].
 USUAL_US, MOST_US, CORNERS_US = 1e7, 6e7, 2e6
-USUAL_DRAWS = 100_000
+USUAL_DRAWS, LEAST_DRAWS = 100_000, 100
 #: So many corners are judged however long it takes.
 LEAST_CORNERS = 250
 ALLOWED = (
@@ -272,12 +272,12 @@ def draws_of(request: ToleranceRequest, behind: Lines) -> int:
     cost = _cost_us(request, behind)
     if request.draws is None:
         return int(min(USUAL_DRAWS, USUAL_US / cost))
-    most = int(MOST_US / cost)
+    most = max(LEAST_DRAWS, int(MOST_US / cost))
     if request.draws > most:
         raise refuse(
             "draws",
             request.draws,
-            f"100 to {most} for this laser",
+            f"{LEAST_DRAWS} to {most} for this laser",
             "so many draws of elliptical beams or several waists take too long for one request",
             "Ask for fewer draws, or leave the number out.",
         )
