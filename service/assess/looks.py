@@ -13,7 +13,7 @@ from service.assess.protection import LineNeed, Pair, PairVerdict, judge, line_n
 from service.assess.viewing import ratios_at, ratios_from, seen_from
 from service.rules.eyewear import EyewearTables
 
-__all__ = ["Look", "behind_aid", "both", "worse"]
+__all__ = ["Look", "both", "worse"]
 
 Floats = NDArray[np.float64]
 
@@ -28,29 +28,38 @@ class Look:
     """One way of looking into a laser, bare or through an aid.
 
     Ratios of the eye's criteria and needs of the lines: at the most hazardous place and, where asked for, at
-    the viewing distance.
+    the viewing distance, with the evaluation whose limits hold there.
     """
 
     evaluation: Evaluation
     ratio: Floats
     worst: list[LineNeed]
+    seen: Evaluation
     ratio_there: Floats | None
     there: list[LineNeed] | None
 
     @classmethod
-    def of(cls, evaluation: Evaluation, distance_m: float | None, tables: EyewearTables) -> Look:
-        """The look at one laser."""
+    def of(
+        cls, evaluation: Evaluation, distance_m: float | None, tables: EyewearTables, aid: Aid | None = None
+    ) -> Look:
+        """The look at one laser, behind the aid with which it was evaluated."""
+        as_given = evaluation
+        if aid is not None:
+            evaluation = _behind_aid(evaluation, aid)
         narrowest = evaluation.lines.beams.narrowest_m()
         ratio = ratios_from(evaluation, evaluation.eye, evaluation.lines.beams.nearest_m)
         worst = line_needs(evaluation, ratio, narrowest, tables, onward=True)
         if distance_m is None:
-            return cls(evaluation, ratio, worst, None, None)
+            return cls(evaluation, ratio, worst, evaluation, None, None)
         places = np.full(narrowest.shape, distance_m)
-        seen = seen_from(evaluation, distance_m)
+        seen = evaluation
+        if as_given.moving is not None:
+            # The spot as it looks from there is made anew, without what the aid adds to its load.
+            seen = seen_from(as_given, distance_m)
+            seen = seen if aid is None else _behind_aid(seen, aid)
         ratio_there = ratios_at(seen, seen.eye, places)
-        return cls(
-            evaluation, ratio, worst, ratio_there, line_needs(seen, ratio_there, places, tables, onward=False)
-        )
+        there = line_needs(seen, ratio_there, places, tables, onward=False)
+        return cls(evaluation, ratio, worst, seen, ratio_there, there)
 
     def judge(self, pair: Pair) -> PairVerdict:
         """The pair at the most hazardous place."""
@@ -60,10 +69,10 @@ class Look:
         """Whether the pair will do at the viewing distance."""
         if self.ratio_there is None or self.there is None:
             return None
-        return judge(pair, self.evaluation, self.ratio_there, self.there).sufficient
+        return judge(pair, self.seen, self.ratio_there, self.there).sufficient
 
 
-def behind_aid(evaluation: Evaluation, aid: Aid) -> Evaluation:
+def _behind_aid(evaluation: Evaluation, aid: Aid) -> Evaluation:
     """An evaluation behind an aid with lines that load eyewear behind it.
 
     The aid narrows the beam M times, so that M^2 is the most by which the irradiance grows.

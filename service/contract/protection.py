@@ -8,7 +8,7 @@ from pydantic import Field
 
 from service.assess.aid import Aid
 from service.assess.evaluate import Evaluation, optical_density
-from service.assess.looks import Look, behind_aid, both, worse
+from service.assess.looks import Look, both, worse
 from service.assess.marking import parse_marking
 from service.assess.protection import (
     Coverage,
@@ -189,7 +189,7 @@ def protection_of(
     """
     tables, distance = eyewear_tables(DATA), request.viewing.distance_m
     bare = Look.of(evaluation, distance, tables)
-    behind = None if aided is None else Look.of(behind_aid(*aided), distance, tables)
+    behind = None if aided is None else Look.of(aided[0], distance, tables, aided[1])
     pairs = [_pair(p) for p in request.eyewear]
     verdicts = [worse(bare.judge(p), None if behind is None else behind.judge(p)) for p in pairs]
     there = [both(bare.enough_there(p), None if behind is None else behind.enough_there(p)) for p in pairs]
@@ -201,7 +201,7 @@ def protection_of(
                 line=n.line,
                 wavelength_nm=n.wavelength_nm,
                 worst_place=_place(n, evaluation, tables),
-                at_distance=None if bare.there is None else _place(bare.there[n.line], evaluation, tables),
+                at_distance=None if bare.there is None else _place(bare.there[n.line], bare.seen, tables),
                 behind_aid=None
                 if behind is None
                 else _place(behind.worst[n.line], behind.evaluation, tables),

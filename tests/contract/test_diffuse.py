@@ -208,3 +208,36 @@ def test_nearer_than_an_eye_can_focus(distance_m: float) -> None:
     inside = min(1.0, (7e-3 / d) ** 2)
     c_e = 1.0 / 0.1 / 1.5
     assert at.hazard_ratio == pytest.approx(inside / (math.pi / 4 * 7e-3**2) / (GLANCE * c_e), rel=1e-6)
+
+
+def test_optics_load_eyewear_at_the_viewing_distance_too() -> None:
+    """The aid narrows the scattered light M times: M^2 is the most by which it loads a filter, 7 x 7 = 49, so
+    that the scale number rises by at most 2 and at least 1 (a decade and a half), as at the nearest place."""
+    pair = [{"name": "Pair", "ranges": [{"from_nm": 500, "to_nm": 560, "marking": "D LB1"}]}]
+    aid = {"objective_mm": 50, "magnification": 7}
+
+    def marks_needed(viewing: dict[str, Any]) -> int:
+        body = {
+            "exposure_s": QUARTER,
+            "lines": [
+                {
+                    "wavelength_nm": 532,
+                    "emission": {"mode": "cw", "power_w": 1e4},
+                    "beam": {"diameter_mm": 5, "divergence_mrad": 0, "level": "1/e"},
+                }
+            ],
+            "bench": [{"element": "diffuser"}],
+            "viewing": viewing,
+            "eyewear": pair,
+        }
+        found = answer(EvaluationRequest.model_validate(body)).protection
+        for number in range(1, 11):
+            pair[0]["ranges"][0]["marking"] = f"D LB{number}"  # type: ignore[index]
+            body["eyewear"] = pair
+            found = answer(EvaluationRequest.model_validate(body)).protection
+            if found.eyewear[0].sufficient_at_distance:
+                return number
+        raise AssertionError(found)
+
+    bare, aided = marks_needed({"distance_m": 1.0}), marks_needed({"distance_m": 1.0, "aid": aid})
+    assert bare + 1 <= aided <= bare + 2
